@@ -1,0 +1,1 @@
+"""The nouns of gatecheck: records, numbers as reported, places, findings, verdicts."""

@@ -1,0 +1,51 @@
+"""What a field of a format admits, said once in its type, for the reader and the JSON Schema alike."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+
+@dataclass(frozen=True, slots=True)
+class Range:
+    """The numbers that a field admits, from `low` to `high`; an end that is `open` is itself excluded."""
+
+    low: float = -math.inf
+    high: float = math.inf
+    low_open: bool = False
+    high_open: bool = False
+
+    def admits(self, value: float) -> bool:
+        """Whether `value` lies in the range."""
+        above = value > self.low if self.low_open else value >= self.low
+        below = value < self.high if self.high_open else value <= self.high
+        return above and below
+
+    def __str__(self) -> str:
+        if math.isinf(self.high):
+            return f"above {self.low:g}" if self.low_open else f"{self.low:g} or more"
+        first = f"above {self.low:g}" if self.low_open else f"{self.low:g}"
+        last = f"below {self.high:g}" if self.high_open else f"{self.high:g}"
+        return f"from {first} to {last}"
+
+
+@dataclass(frozen=True, slots=True)
+class Pattern:
+    """The texts that a field admits: a regular expression for the whole text, and the same in words."""
+
+    regex: str
+    words: str
+
+
+@dataclass(frozen=True, slots=True)
+class OneOrMore:
+    """A list that may also be written as its only member; `most` is the longest that it may be."""
+
+    most: int | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Length:
+    """A list of exactly `size` members."""
+
+    size: int

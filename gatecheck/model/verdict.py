@@ -1,0 +1,151 @@
+"""The verdict: what the gate answers, one list of findings from which everything else follows."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from enum import IntEnum
+from typing import Literal
+
+Outcome = Literal["met", "short", "waived", "does-not-apply", "undecided"]
+Enforce = Literal["block", "note", "off"]
+Standing = Literal["stands", "falls-short", "waived", "undecided"]
+Answer = Literal["stands", "falls-short", "cannot-judge"]
+
+
+class Exit(IntEnum):
+    """The exit statuses of the command."""
+
+    STANDS = 0
+    FALLS_SHORT = 1
+    USAGE = 2
+    CANNOT_JUDGE = 3
+
+
+@dataclass(frozen=True, slots=True, order=True)
+class Place:
+    """A position: path relative to the judged folder, 1-based line, and for notebooks cell and output."""
+
+    path: str
+    line: int = 1
+    cell: int | None = None
+    output: int | None = None
+
+    def __str__(self) -> str:
+        where = f"{self.path}:{self.line}"
+        return where if self.cell is None else f"{where} (cell {self.cell}, output {self.output})"
+
+
+@dataclass(frozen=True, slots=True, order=True)
+class Problem:
+    """Something that could not be read or judged: where, what, and what to do."""
+
+    at: Place
+    message: str
+    advice: str
+
+
+@dataclass(frozen=True, slots=True)
+class Figures:
+    """The evidence in one result, with the assumptions that it rests on.
+
+    `log_likelihood_ratio` is the natural log of the likelihood ratio for `alternative` over no effect;
+    `None` in a number means that it could not be computed, and `note` says why.
+    """
+
+    alternative: str
+    log_likelihood_ratio: float | None
+    prior: float | None
+    prior_from: str
+    false_positive_risk: float | None
+    prior_needed: float | None
+    note: str
+
+
+@dataclass(frozen=True, slots=True)
+class Finding:
+    """What one rule says of one record."""
+
+    rule: str
+    outcome: Outcome
+    enforce: Enforce
+    observed: float | None = None
+    limit: float | None = None
+    message: str = ""
+    remedy: str = ""
+
+    @property
+    def blocks(self) -> bool:
+        """Whether this finding keeps its claim from standing."""
+        return self.enforce == "block" and self.outcome in {"short", "undecided"}
+
+
+@dataclass(frozen=True, slots=True)
+class Judged:
+    """One record with all that the rules say of it."""
+
+    id: str
+    at: Place
+    claim: str | None
+    result: str
+    evidence: Figures | None
+    findings: tuple[Finding, ...]
+    also_at: tuple[Place, ...] = ()
+    counts_now: bool = True
+
+    @property
+    def standing(self) -> Standing:
+        """The standing that the findings give this record."""
+        blocking = {finding.outcome for finding in self.findings if finding.blocks}
+        if "short" in blocking:
+            return "falls-short"
+        if "undecided" in blocking:
+            return "undecided"
+        waived = any(finding.outcome == "waived" for finding in self.findings)
+        return "waived" if waived else "stands"
+
+
+@dataclass(frozen=True, slots=True)
+class PolicyUsed:
+    """The policy that was applied: its name, its digest, and where it came from."""
+
+    name: str
+    digest: str
+    origin: Literal["base", "tree", "built-in", "file"]
+
+
+@dataclass(frozen=True, slots=True)
+class Verdict:
+    """The answer of the gate."""
+
+    policy: PolicyUsed | None
+    judged: tuple[Judged, ...] = ()
+    problems: tuple[Problem, ...] = ()
+    notes: tuple[str, ...] = field(default=())
+
+    @property
+    def claims(self) -> tuple[Judged, ...]:
+        """The records that claim something."""
+        return tuple(one for one in self.judged if one.claim is not None)
+
+    @property
+    def reported(self) -> tuple[Judged, ...]:
+        """The records that report a result and claim nothing."""
+        return tuple(one for one in self.judged if one.claim is None)
+
+    @property
+    def exit(self) -> Exit:
+        """The exit status; what cannot be judged wins over what falls short."""
+        standings = {one.standing for one in self.judged if one.counts_now}
+        if self.problems or "undecided" in standings:
+            return Exit.CANNOT_JUDGE
+        return Exit.FALLS_SHORT if "falls-short" in standings else Exit.STANDS
+
+    @property
+    def answer(self) -> Answer:
+        """The verdict in one word."""
+        words: dict[Exit, Answer] = {Exit.STANDS: "stands", Exit.FALLS_SHORT: "falls-short"}
+        return words.get(self.exit, "cannot-judge")
+
+    def count(self, standing: Standing) -> int:
+        """Return the number of claims with that standing."""
+        return sum(one.standing == standing for one in self.claims)
