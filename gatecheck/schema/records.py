@@ -8,7 +8,7 @@ from typing import Any
 
 from gatecheck.model.numbers import Reported
 from gatecheck.model.record import Estimate, Record, Test
-from gatecheck.schema.read import Fault, read
+from gatecheck.schema.read import Fault, Path, read
 
 _DF_COUNT = {"t": 1, "chi2": 1, "F": 2, "r": 1}
 
@@ -47,7 +47,7 @@ def _of_test(test: Test) -> Iterator[Fault]:
         yield Fault(("test", "statistic"), "is missing beside `value`", advice)
     wanted = _DF_COUNT.get(test.statistic or "")
     if wanted is not None and test.df is not None and len(test.df) != wanted:
-        advice = "give [numerator df, denominator df]" if wanted == 2 else "give one number"  # noqa: PLR2004
+        advice = "give one number" if wanted == 1 else "give [numerator df, denominator df]"
         yield Fault(("test", "df"), f"has {len(test.df)} numbers for the statistic {test.statistic}", advice)
     if test.value is not None:
         yield from _of_value(test.statistic, test.value)
@@ -86,9 +86,13 @@ def _of_estimate(estimate: Estimate) -> Iterator[Fault]:
 
 
 def _not_positive(estimate: Estimate, low: Reported | None, high: Reported | None) -> Iterator[Fault]:
-    named = {("estimate", "value"): estimate.value, ("estimate", "null"): estimate.null}
-    limits = {("estimate", "interval", "low"): low, ("estimate", "interval", "high"): high}
-    for path, number in {**named, **limits}.items():
+    numbers: dict[Path, Reported | None] = {
+        ("estimate", "value"): estimate.value,
+        ("estimate", "null"): estimate.null,
+        ("estimate", "interval", "low"): low,
+        ("estimate", "interval", "high"): high,
+    }
+    for path, number in numbers.items():
         if number is not None and number.high <= 0:
             yield Fault(
                 path,
