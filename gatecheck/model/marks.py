@@ -39,9 +39,10 @@ class Pattern:
 
 @dataclass(frozen=True, slots=True)
 class OneOrMore:
-    """A list that may also be written as its only member; `most` is the longest that it may be."""
+    """A list of `least` to `most` members that may also be written as its only member."""
 
     most: int | None = None
+    least: int = 1
 
 
 @dataclass(frozen=True, slots=True)

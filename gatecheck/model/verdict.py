@@ -91,6 +91,7 @@ class Judged:
     findings: tuple[Finding, ...]
     also_at: tuple[Place, ...] = ()
     counts_now: bool = True
+    alternatives: tuple[Figures, ...] = ()
 
     @property
     def standing(self) -> Standing:
@@ -110,7 +111,7 @@ class PolicyUsed:
 
     name: str
     digest: str
-    origin: Literal["base", "tree", "built-in", "file"]
+    origin: Literal["base", "tree", "built-in"]
 
 
 @dataclass(frozen=True, slots=True)

@@ -86,8 +86,7 @@ class _Reader:
         if not isinstance(found, list):
             return self.fault(path, f"is {shown(found)}, not a list", "write a list in square brackets")
         if len(found) < items.least or len(found) > (items.most or len(found)):
-            wanted = f"{items.least}" if items.least == items.most else f"{items.least} to {items.most}"
-            return self.fault(path, f"has {len(found)} members", f"give {wanted}")
+            return self.fault(path, f"has {len(found)} members", f"give {_wanted(items)}")
         return tuple(self.value(items.member, each, (*path, index)) for index, each in enumerate(found))
 
     def table(self, table: Table, found: Any, path: Path) -> Any:
@@ -107,7 +106,7 @@ class _Reader:
         value = _finite(found)
         if value is None:
             return self.fault(
-                path, f"is {shown(found)}, not a finite number", "give a number, or leave it out"
+                path, f"is {shown(found)}, not a finite number", "give a number or leave it out"
             )
         if number.whole and not value.is_integer():
             return self.fault(path, f"is {shown(found)}, not a whole number", "give a whole number")
@@ -159,6 +158,12 @@ _READ: dict[type, Callable[[_Reader, Any, Any, Path], Any]] = {
     Choice: _Reader.choice,
     Flag: _Reader.flag,
 }
+
+
+def _wanted(items: Items) -> str:
+    if items.most is None:
+        return f"{items.least} or more"
+    return f"{items.least}" if items.least == items.most else f"{items.least} to {items.most}"
 
 
 def _rounded_to_an_end(within: Range, number: Reported) -> bool:

@@ -144,7 +144,7 @@ def _items(member: Any, marks: tuple[Any, ...]) -> Items:
     shape = _shape(*_bare(member))
     lone, length = _mark(marks, OneOrMore), _mark(marks, Length)
     if lone is not None:
-        return Items(shape, least=1, most=lone.most, lone=True)
+        return Items(shape, least=lone.least, most=lone.most, lone=True)
     if length is not None:
         return Items(shape, least=length.size, most=length.size)
     return Items(shape)

@@ -1,0 +1,5 @@
+"""Run the command as `python -m gatecheck`."""
+
+from gatecheck.cli import run
+
+run()

@@ -1,0 +1,208 @@
+"""Records as columns: a struct of arrays over which evidence is weighed and rules are judged."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from gatecheck.model.found import Found
+from gatecheck.model.numbers import Reported
+from gatecheck.model.record import Estimate, Sample, Test
+
+Floats = NDArray[np.float64]
+Booleans = NDArray[np.bool_]
+Integers = NDArray[np.intp]
+
+#: What stands in `statistic` where a record names none; the others are the order of `STATISTICS`.
+NO_STATISTIC = -1
+STATISTICS = ("t", "z", "chi2", "F", "r")
+T, Z, CHI2, F, R = range(5)
+
+_EMPTY_TEST = Test()
+_EMPTY_SAMPLE = Sample()
+_NAN = math.nan
+
+
+@dataclass(frozen=True, slots=True)
+class Interval:
+    """A column of numbers as reported: the value and the ends of the interval that it may stand for."""
+
+    value: Floats
+    low: Floats
+    high: Floats
+
+    @property
+    def known(self) -> Booleans:
+        """Where there is a number."""
+        return np.isfinite(self.value)
+
+
+@dataclass(frozen=True, slots=True)
+class Tests:
+    """The tests, as arrays of shape (n,); nan stands for what a record does not give.
+
+    `statistic` indexes `STATISTICS`. `toward` is -1 where one side, `less`, is tested, else 1: the sign that
+    turns the direction tested into the positive one.
+    """
+
+    statistic: Integers
+    value: Interval
+    df1: Interval
+    df2: Interval
+    p: Interval
+    p_is_raw: Booleans
+    p_is_exact: Booleans
+    one_sided: Booleans
+    toward: Floats
+
+    def is_one_of(self, *statistics: int) -> Booleans:
+        """Where the statistic is one of these."""
+        return np.isin(self.statistic, statistics)
+
+
+@dataclass(frozen=True, slots=True)
+class Estimates:
+    """The estimates, on the scale on which their interval is symmetric and less the value of no effect.
+
+    On a log scale these are natural logarithms of ratios. `null` is the value of no effect as given.
+    """
+
+    value: Interval
+    standard_error: Interval
+    low: Interval
+    high: Interval
+    level: Floats
+    adjusted: Booleans
+    null: Floats
+    log_scale: Booleans
+
+
+@dataclass(frozen=True, slots=True)
+class Samples:
+    """Numbers of units: all of them, in the first and second group, and the number of groups."""
+
+    n: Floats
+    n1: Floats
+    n2: Floats
+    groups: Integers
+
+
+@dataclass(frozen=True, slots=True)
+class Columns:
+    """Records as arrays of shape (n,), one row a record, in the order of `found`."""
+
+    found: tuple[Found, ...]
+    test: Tests
+    estimate: Estimates
+    sample: Samples
+    effect: Floats
+    effect_is_raw: Booleans
+    own_prior: Floats
+    claims: Booleans
+    harm: Booleans
+    no_effect_aim: Booleans
+    estimation_aim: Booleans
+
+
+def columns_of(found: Sequence[Found]) -> Columns:
+    """Return the records `found` as columns, in the same order."""
+    records = [one.record for one in found]
+    return Columns(
+        found=tuple(found),
+        test=_tests([record.test or _EMPTY_TEST for record in records]),
+        estimate=_estimates([record.estimate for record in records]),
+        sample=_samples([record.sample or _EMPTY_SAMPLE for record in records]),
+        effect=_floats([_NAN if r.alternative is None else r.alternative.effect for r in records]),
+        effect_is_raw=_booleans([r.alternative is not None and r.alternative.scale == "raw" for r in records]),
+        own_prior=_floats([_NAN if r.prior is None else r.prior.probability for r in records]),
+        claims=_booleans([r.claim is not None for r in records]),
+        harm=_booleans([r.harm for r in records]),
+        no_effect_aim=_booleans([r.aim in {"equivalence", "noninferiority"} for r in records]),
+        estimation_aim=_booleans([r.aim == "estimation" for r in records]),
+    )
+
+
+def _tests(tests: Sequence[Test]) -> Tests:
+    degrees = [test.df or () for test in tests]
+    return Tests(
+        statistic=np.array([_code(test) for test in tests], np.intp),
+        value=_interval([test.value for test in tests]),
+        df1=_interval([df[0] if df else None for df in degrees]),
+        df2=_interval([df[1] if len(df) > 1 else None for df in degrees]),
+        p=_interval([test.p for test in tests]),
+        p_is_raw=_booleans([test.p_kind == "raw" for test in tests]),
+        p_is_exact=_booleans([test.p_kind in {"exact", "permutation"} for test in tests]),
+        one_sided=_booleans([test.sides == 1 for test in tests]),
+        toward=_floats([-1.0 if test.tail == "less" else 1.0 for test in tests]),
+    )
+
+
+def _estimates(estimates: Sequence[Estimate | None]) -> Estimates:
+    log_scale = _booleans([e is not None and e.scale == "log" for e in estimates])
+    limits = [None if e is None else e.interval for e in estimates]
+    given_null = _interval([None if e is None else e.null for e in estimates]).value
+    null = np.where(np.isfinite(given_null), given_null, np.where(log_scale, 1.0, 0.0))
+
+    def from_null(numbers: Sequence[Reported | None]) -> Interval:
+        ends = _interval(numbers)
+        return Interval(*(_from_null(end, null, log_scale) for end in (ends.value, ends.low, ends.high)))
+
+    return Estimates(
+        value=from_null([None if e is None else e.value for e in estimates]),
+        standard_error=_interval([None if e is None else e.standard_error for e in estimates]),
+        low=from_null([None if limit is None else limit.low for limit in limits]),
+        high=from_null([None if limit is None else limit.high for limit in limits]),
+        level=_floats([_NAN if limit is None else limit.level for limit in limits]),
+        adjusted=_booleans([limit is not None and limit.adjusted for limit in limits]),
+        null=null,
+        log_scale=log_scale,
+    )
+
+
+def _from_null(numbers: Floats, null: Floats, log_scale: Booleans) -> Floats:
+    with np.errstate(divide="ignore", invalid="ignore"):
+        return np.where(log_scale, np.log(numbers) - np.log(null), numbers - null)
+
+
+def _samples(samples: Sequence[Sample]) -> Samples:
+    return Samples(
+        n=_floats([_sample_size(sample) for sample in samples]),
+        n1=_floats([_group_size(sample, 0) for sample in samples]),
+        n2=_floats([_group_size(sample, 1) for sample in samples]),
+        groups=np.array([len(sample.groups) for sample in samples], np.intp),
+    )
+
+
+def _interval(numbers: Sequence[Reported | None]) -> Interval:
+    rounded = [None if number is None else number.as_rounded() for number in numbers]
+    return Interval(
+        _floats([_NAN if number is None else number.value for number in numbers]),
+        _floats([_NAN if number is None else number.low for number in rounded]),
+        _floats([_NAN if number is None else number.high for number in rounded]),
+    )
+
+
+def _code(test: Test) -> int:
+    return NO_STATISTIC if test.statistic is None else STATISTICS.index(test.statistic)
+
+
+def _sample_size(sample: Sample) -> float:
+    if sample.n is not None:
+        return float(sample.n)
+    return float(sum(group.n for group in sample.groups)) if sample.groups else _NAN
+
+
+def _group_size(sample: Sample, position: int) -> float:
+    return float(sample.groups[position].n) if len(sample.groups) > position else _NAN
+
+
+def _floats(values: Sequence[float]) -> Floats:
+    return np.array(values, np.float64)
+
+
+def _booleans(values: Sequence[bool]) -> Booleans:
+    return np.array(values, np.bool_)

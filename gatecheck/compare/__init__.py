@@ -1,0 +1,1 @@
+"""Comparisons: a record against its own figures; facts, not judgements."""

@@ -1,0 +1,227 @@
+"""Evidence: the columns of records weighed under the alternatives and priors that the policy names."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from gatecheck import weigh
+from gatecheck.columns import CHI2, NO_STATISTIC, Booleans, Columns, F, Floats, Integers, R, T, Z
+from gatecheck.policy import AlternativeName, EvidenceSettings
+
+_KINDS = {
+    NO_STATISTIC: -1,
+    T: weigh.Statistic.T,
+    R: weigh.Statistic.T,
+    Z: weigh.Statistic.Z,
+    CHI2: weigh.Statistic.CHI2,
+    F: weigh.Statistic.F,
+}
+_NEARLY = 1e-6
+
+
+@dataclass(frozen=True, slots=True)
+class Statistics:
+    """The statistics as they are weighed, arrays of shape (n,).
+
+    A correlation stands as its t; a one-sided statistic is signed so that the direction tested is positive;
+    one that a record does not give is recovered from its raw p. `log_p` is the natural log of the raw p.
+    """
+
+    kind: Integers
+    value: Floats
+    df1: Floats
+    df2: Floats
+    one_sided: Booleans
+    recovered: Booleans
+    log_p: Floats
+
+
+@dataclass(frozen=True, slots=True)
+class Design:
+    """How the units were laid out: `total` of them in `arms` equal groups."""
+
+    arms: Floats
+    total: Floats
+    two_samples: Booleans
+    one_sample: Booleans
+
+
+@dataclass(frozen=True, slots=True)
+class Evidence:
+    """Evidence of shape (n,): the natural log of the likelihood ratio under the alternative that was chosen.
+
+    `under` holds it for every alternative; nan where a record does not allow it. `alternative` is empty where
+    none could be used. `ncp` is the non-centrality that the design effect stands for.
+    """
+
+    statistics: Statistics
+    design: Design
+    ncp: Floats
+    under: Mapping[AlternativeName, Floats]
+    alternative: tuple[AlternativeName | None, ...]
+    log_likelihood_ratio: Floats
+    prior: Floats
+    prior_is_own: Booleans
+    false_positive_risk: Floats
+
+
+def weigh_columns(columns: Columns, settings: Sequence[EvidenceSettings]) -> Evidence:
+    """Weigh each row of `columns` by the settings in the same position."""
+    statistics = _statistics(columns)
+    design = _design(columns, statistics)
+    ncp = _design_noncentrality(columns, statistics, design)
+    under: dict[AlternativeName, Floats] = {
+        "observed-effect": weigh.observed_effect(
+            statistics.kind, statistics.value, statistics.df1, statistics.df2, statistics.one_sided
+        ),
+        "design-effect": weigh.at_noncentrality(
+            statistics.kind, statistics.value, statistics.df1, statistics.df2, ncp, statistics.one_sided
+        ),
+        "bound": weigh.log_lr_bound(statistics.log_p),
+    }
+    alternative = _choose(columns, under, settings)
+    log_lr = np.array(
+        [np.nan if name is None else under[name][row] for row, name in enumerate(alternative)], np.float64
+    )
+    own = np.isfinite(columns.own_prior)
+    prior = np.where(own, columns.own_prior, np.array([one.prior for one in settings], np.float64))
+    return Evidence(
+        statistics,
+        design,
+        ncp,
+        under,
+        alternative,
+        log_lr,
+        prior,
+        own,
+        weigh.false_positive_risk(log_lr, prior),
+    )
+
+
+def _choose(
+    columns: Columns, under: Mapping[AlternativeName, Floats], settings: Sequence[EvidenceSettings]
+) -> tuple[AlternativeName | None, ...]:
+    """The first alternative of the policy that each record allows.
+
+    A test without a likelihood ratio of its own, such as a rank test, is judged by the bound. A claim of no
+    effect is not backed by evidence for an effect, so none is chosen.
+    """
+
+    def chosen(row: int) -> AlternativeName | None:
+        if columns.no_effect_aim[row]:
+            return None
+        has_ratio = columns.test.statistic[row] != NO_STATISTIC
+        names: tuple[AlternativeName, ...] = settings[row].alternative if has_ratio else ("bound",)
+        return next((name for name in names if np.isfinite(under[name][row])), None)
+
+    return tuple(chosen(row) for row in range(len(columns.found)))
+
+
+def _statistics(columns: Columns) -> Statistics:
+    test = columns.test
+    kind = np.array([_KINDS[code] for code in test.statistic.tolist()], np.intp)
+    signed = test.is_one_of(T, Z, R) & test.one_sided
+    as_r = test.is_one_of(R)
+    given = np.where(as_r, weigh.t_from_r(np.where(as_r, test.value.value, 0.0), test.df1.value), test.value.value)
+    given = np.where(signed, given * test.toward, given)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        # p above a bound ("> 0.05") says too little, p = 0 is no probability that a test can give.
+        usable = np.isfinite(test.p.high) & (test.p.value > 0)
+        reported = np.log(np.where(usable, test.p.value, np.nan))
+    raw = np.where(test.p_is_raw, reported, np.nan)
+    df1, df2 = test.df1.value, test.df2.value
+    recovered = ~np.isfinite(given) & (kind >= 0)
+    value = np.where(recovered, weigh.value_from_log_p(kind, raw, df1, df2, signed), given)
+    log_p = weigh.log_p(kind, value, df1, df2, signed)
+    as_reported = np.where(test.p_is_exact | test.p_is_raw, reported, np.nan)
+    log_p = np.where(np.isfinite(log_p) & ~test.p_is_exact, log_p, as_reported)
+    return Statistics(kind, value, df1, df2, signed, recovered & np.isfinite(value), log_p)
+
+
+def _design(columns: Columns, statistics: Statistics) -> Design:
+    sample, df = columns.sample, columns.test.df1.value
+    on_means = columns.test.is_one_of(T, Z)
+    pairs = (sample.n1 == sample.n2) & _near(df, sample.n1 - 1) & columns.test.is_one_of(T)
+    two_samples = on_means & (sample.groups == 2) & ~pairs  # noqa: PLR2004
+    one_sample = on_means & (pairs | ((sample.groups < 2) & (_near(df, sample.n - 1) | np.isnan(df))))  # noqa: PLR2004
+    spread = statistics.kind == weigh.Statistic.F
+    arms = np.where(two_samples | (spread & (sample.groups > 1)), np.maximum(sample.groups, 1), 1.0)
+    return Design(arms, np.where(pairs, sample.n1, sample.n), two_samples, one_sample)
+
+
+def _near(a: Floats, b: Floats) -> Booleans:
+    near: Booleans = np.abs(a - b) < _NEARLY
+    return near
+
+
+def _design_noncentrality(columns: Columns, statistics: Statistics, design: Design) -> Floats:
+    """The non-centrality of the effect that the study was designed to find; nan where it cannot be told.
+
+    Standardised effects follow the common definitions (Cohen, Statistical Power Analysis for the Behavioral
+    Sciences, 2nd ed., 1988; from memory): d and h over the harmonic size of two groups or the root of one,
+    r through r / sqrt(1 - r^2), chi2 as n w^2, F as n f^2. A raw effect is counted in standard errors.
+    """
+    test, sample, effect = columns.test, columns.sample, columns.effect
+    with np.errstate(divide="ignore", invalid="ignore"):
+        harmonic = sample.n1 * sample.n2 / (sample.n1 + sample.n2)
+        root = np.sqrt(np.where(design.two_samples, harmonic, design.total))
+        ncp = np.where(design.two_samples | design.one_sample, np.abs(effect) * root, np.nan)
+        pairs_of_r = np.where(np.isfinite(sample.n), sample.n, test.df1.value + 2)
+        of_r = np.abs(effect) / np.sqrt(1 - effect**2) * np.sqrt(pairs_of_r)
+        ncp = np.where(test.is_one_of(R), of_r, ncp)
+        ncp = np.where(test.is_one_of(CHI2, F), sample.n * effect**2, ncp)
+        raw = _raw_in_standard_errors(columns, statistics)
+    return np.where(columns.effect_is_raw & ~test.is_one_of(R), raw, ncp)
+
+
+def _raw_in_standard_errors(columns: Columns, statistics: Statistics) -> Floats:
+    estimate, effect = columns.estimate, columns.effect
+    shift = np.where(estimate.log_scale, np.log(effect) - np.log(estimate.null), effect - estimate.null)
+    implied = np.abs(estimate.value.value / statistics.value)
+    error = np.where(estimate.standard_error.known, estimate.standard_error.value, implied)
+    in_errors = np.abs(shift) / error
+    single = columns.test.is_one_of(T, Z)
+    return np.where(
+        single, in_errors, np.where(_one_df(columns) & estimate.standard_error.known, in_errors**2, np.nan)
+    )
+
+
+def _one_df(columns: Columns) -> Booleans:
+    one: Booleans = columns.test.df1.value == 1
+    return columns.test.is_one_of(CHI2, F) & one
+
+
+def why_unweighed(columns: Columns, evidence: Evidence, row: int, settings: EvidenceSettings) -> tuple[str, str]:
+    """Say why row `row` has no likelihood ratio, and what to do about it."""
+    test = columns.found[row].record.test
+    if columns.no_effect_aim[row]:
+        return (
+            "a claim of no effect, or of none worse than a margin, is not backed by evidence for an effect",
+            "evidence for such an aim is not weighed: judge it outside and set this rule to note for its aim",
+        )
+    if test is None or (test.p is None and test.value is None):
+        return "the record gives neither a statistic nor a p-value", "give test.statistic, value, df and p"
+    if test.value is None and test.p is not None and test.p.relation != ">" and test.p.value == 0:
+        return "p is given as 0, which no test gives", "give all its digits, or the statistic with its df"
+    if test.value is None and test.p_kind == "adjusted":
+        return (
+            "its p-value is adjusted for several tests, and evidence is weighed on the raw result",
+            "give the statistic with its df, or the raw p with p_kind raw",
+        )
+    if not np.isfinite(evidence.statistics.value[row]) and evidence.statistics.kind[row] >= 0:
+        return "the statistic cannot be told from what the record gives", "give test.value with test.df"
+    return _why_no_design(columns, row, settings)
+
+
+def _why_no_design(columns: Columns, row: int, settings: EvidenceSettings) -> tuple[str, str]:
+    wanted = " or ".join(settings.alternative)
+    if "design-effect" in settings.alternative and np.isnan(columns.effect[row]):
+        advice = "give alternative: {effect, scale}, as it was planned before the data"
+        return "the record does not say which effect the study was designed to find", advice
+    if "design-effect" in settings.alternative:
+        advice = "give sample.groups with their n, or the effect on the raw scale with estimate.standard_error"
+        return "the planned effect cannot be set against this statistic", advice
+    return f"the record does not allow the alternative {wanted}", "give test.p, or the statistic with its df"

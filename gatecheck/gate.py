@@ -1,0 +1,115 @@
+"""The runner: scan, weigh, compare, judge, tell. Start reading here.
+
+Data flows one way: files become records or problems, records become columns, columns become evidence and facts,
+these become findings, and findings become the verdict, from which everything that is shown follows.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+from pathlib import Path
+
+from gatecheck import git
+from gatecheck.columns import columns_of
+from gatecheck.compare.own_numbers import own_numbers
+from gatecheck.errors import CannotJudge
+from gatecheck.evidence import weigh_columns
+from gatecheck.figures import figures_of
+from gatecheck.model.found import Found, Scan
+from gatecheck.model.verdict import Finding, Judged, Place, Problem, Verdict
+from gatecheck.policies import Standing, standing_policy
+from gatecheck.policy import Policy
+from gatecheck.rules import RULES
+from gatecheck.rules.engine import judge_all
+from gatecheck.rules.rule import Table
+from gatecheck.rules.words import describe_result
+from gatecheck.scan import scan
+
+WHOLE_TREE = Place(".")
+
+
+@dataclass(frozen=True, slots=True)
+class Request:
+    """What is to be judged.
+
+    `policy` names the policy file relative to `root`; `base` is the revision into which a pull request goes:
+    its policy counts. With `only_changed` only claims that are new or changed since `base` decide. Records in
+    `explain` are told in full.
+    """
+
+    root: Path
+    policy: str | None = None
+    base: str | None = None
+    only_changed: bool = False
+    explain: frozenset[str] = field(default=frozenset())
+
+
+def check(request: Request) -> Verdict:
+    """Judge every record below `request.root`; what stops the gate is a problem of the verdict."""
+    try:
+        standing = standing_policy(request.root, request.policy, request.base)
+        if standing.policy is None:
+            return Verdict(standing.used, (), standing.problems, standing.notes)
+        return _check(request, standing, standing.policy)
+    except CannotJudge as stop:
+        return Verdict(None, (), (Problem(WHOLE_TREE, stop.message, stop.advice),))
+
+
+def _check(request: Request, standing: Standing, policy: Policy) -> Verdict:
+    globs = policy.document.scan
+    tree = scan(request.root, globs.include, globs.exclude)
+    table = _table(tree, policy)
+    explained = frozenset(row for row, one in enumerate(tree.found) if one.record.id in request.explain)
+    findings = judge_all(RULES, table, explain=explained)
+    unchanged = _unchanged_since_base(request, policy, tree.found) if request.only_changed else frozenset()
+    judged = tuple(
+        _judged(table, row, findings[row], in_full=row in explained, unchanged=unchanged)
+        for row in range(len(tree.found))
+    )
+    problems = (*tree.problems, *_too_few(tree, policy))
+    return Verdict(standing.used, judged, problems, standing.notes)
+
+
+def _table(tree: Scan, policy: Policy) -> Table:
+    applied = tuple(policy.for_record(one.record, one.at.path) for one in tree.found)
+    columns = columns_of(tree.found)
+    evidence = weigh_columns(columns, [each.evidence for each in applied])
+    return Table(columns, evidence, own_numbers(columns, evidence), applied)
+
+
+def _judged(
+    table: Table, row: int, findings: Sequence[Finding], *, in_full: bool, unchanged: frozenset[str]
+) -> Judged:
+    one = table.columns.found[row]
+    chosen, others = figures_of(table, row, in_full=in_full)
+    return Judged(
+        id=one.record.id,
+        at=one.at,
+        claim=one.record.claim,
+        result=describe_result(one.record),
+        evidence=chosen,
+        findings=tuple(findings),
+        also_at=one.also_at,
+        counts_now=one.record.id not in unchanged,
+        alternatives=others,
+    )
+
+
+def _unchanged_since_base(request: Request, policy: Policy, found: Sequence[Found]) -> frozenset[str]:
+    """The ids whose documents are the same at the base; `--only-changed` without a base changes nothing."""
+    if request.base is None:
+        return frozenset()
+    globs = policy.document.scan
+    base = scan(request.root, globs.include, globs.exclude, git.resolve(request.root, request.base))
+    before: Mapping[str, str] = {one.record.id: one.digest for one in base.found}
+    return frozenset(one.record.id for one in found if before.get(one.record.id) == one.digest)
+
+
+def _too_few(tree: Scan, policy: Policy) -> tuple[Problem, ...]:
+    least = policy.document.at_least
+    if len(tree.found) >= least:
+        return ()
+    seen = f"{len(tree.found)} records in {tree.files} files, and the policy wants at least {least}"
+    advice = "see with `gatecheck survey` what was found; check scan.include and scan.exclude of the policy"
+    return (Problem(WHOLE_TREE, f"the tree holds {seen}", advice),)

@@ -1,0 +1,104 @@
+"""Which policy stands: that of the base, of the tree, or the built-in one where there is none."""
+
+from __future__ import annotations
+
+import json
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any
+
+from gatecheck import git
+from gatecheck.errors import CannotJudge
+from gatecheck.model.verdict import Place, PolicyUsed, Problem
+from gatecheck.policy import STARTING_POLICY, Document, Policy, read_policy
+from gatecheck.rules import RULES
+from gatecheck.scan.one_file import OneFile, read_one
+from gatecheck.schema.read import Fault
+
+POLICY_FILE = "gatecheck.yaml"
+WAIVERS_FILE = "gatecheck.waivers.yaml"
+_SETTINGS = {rule.name: rule.settings for rule in RULES}
+_ALWAYS_ON = frozenset(rule.name for rule in RULES if rule.always_on)
+
+
+@dataclass(frozen=True, slots=True)
+class Standing:
+    """The policy that stands, where it came from, and what the summary must say of it."""
+
+    policy: Policy | None
+    used: PolicyUsed | None
+    problems: tuple[Problem, ...] = ()
+    notes: tuple[str, ...] = ()
+
+
+def standing_policy(root: Path, named: str | None, base: str | None) -> Standing:
+    """Return the policy for the tree at `root`.
+
+    `named` is the policy file relative to `root`, else it is `gatecheck.yaml`. With `base` the file is read as
+    it stands at that revision: a pull request does not change the policy that it is judged by.
+
+    Raises
+    ------
+    CannotJudge
+        A named policy is not there, the base is not known, or git fails.
+    """
+    path = named or POLICY_FILE
+    revision = None if base is None else git.resolve(root, base)
+    file = read_one(root, path, revision)
+    notes = (*_note_on_waivers(root), *_notes_on_base(root, path, revision, file))
+    if file is not None:
+        return _from_file(file, revision, notes)
+    if named is not None:
+        where = "" if base is None else f" at {git.safe(base)}"
+        raise CannotJudge(f"there is no policy {git.safe(named)}{where}", "name a policy file that is there")
+    note = f"No {POLICY_FILE} is here, so the built-in starting policy applies; `gatecheck start` writes one."
+    return Standing(read_own_policy(STARTING_POLICY)[0], _used(STARTING_POLICY, _digest_of_starting()), (), (*notes, note))
+
+
+def read_own_policy(document: Any) -> tuple[Policy | None, tuple[Fault, ...]]:
+    """Read a parsed policy by the rules that there are; see `read_policy`."""
+    return read_policy(document, _SETTINGS, _ALWAYS_ON)
+
+
+def _from_file(file: OneFile, revision: str | None, notes: tuple[str, ...]) -> Standing:
+    if file.document is None:
+        return Standing(None, None, file.problems, notes)
+    policy, faults = read_own_policy(file.document.value)
+    if policy is None:
+        locate = file.document.locate
+        problems = tuple(_problem(fault, Place(file.path, locate(fault.path))) for fault in faults)
+        return Standing(None, None, problems, notes)
+    used = PolicyUsed(policy.document.name, file.digest, "tree" if revision is None else "base")
+    return Standing(policy, used, (), notes)
+
+
+def _problem(fault: Fault, place: Place) -> Problem:
+    field = f"{fault.field} " if fault.path else "the policy "
+    return Problem(place, f"{field}{fault.message}", fault.advice)
+
+
+def _note_on_waivers(root: Path) -> tuple[str, ...]:
+    if read_one(root, WAIVERS_FILE) is None:
+        return ()
+    return (f"This version reads no waivers, so none in {WAIVERS_FILE} applies.",)
+
+
+def _notes_on_base(root: Path, path: str, revision: str | None, at_base: OneFile | None) -> tuple[str, ...]:
+    if revision is None:
+        return ()
+    in_tree = read_one(root, path)
+    if (in_tree and in_tree.digest) == (at_base and at_base.digest):
+        return ()
+    what = "new" if at_base is None else "removed" if in_tree is None else "changed"
+    return (f"The policy {git.safe(path)} is {what} here; what counts is the base, {revision[:12]}.",)
+
+
+def _used(document: Document, digest: str) -> PolicyUsed:
+    return PolicyUsed(document["name"], digest, "built-in")
+
+
+def _digest_of_starting() -> str:
+    import hashlib  # noqa: PLC0415  # costs start-up time, and a tree with a policy does not need it
+
+    canonical = json.dumps(STARTING_POLICY, sort_keys=True, separators=(",", ":"))
+    return f"sha256:{hashlib.sha256(canonical.encode()).hexdigest()}"

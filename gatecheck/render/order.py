@@ -1,0 +1,81 @@
+"""Which parts of a verdict are shown, and in what order: the same in every format."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+
+from gatecheck.model.verdict import Finding, Judged, Place, Problem, Verdict
+
+_OUTCOMES = ("short", "undecided", "waived", "met", "does-not-apply")
+_WITHOUT = -1
+
+PlaceKey = tuple[str, int, int, int]
+
+
+def place_key(place: Place) -> PlaceKey:
+    """Return what places sort by; a file comes before its own cells."""
+    cell = _WITHOUT if place.cell is None else place.cell
+    output = _WITHOUT if place.output is None else place.output
+    return place.path, place.line, cell, output
+
+
+def by_place(judged: Iterable[Judged]) -> list[Judged]:
+    """Return the records by place, then id."""
+    return sorted(judged, key=lambda one: (place_key(one.at), one.id, one.result, one.claim or ""))
+
+
+def problems_by_place(problems: Iterable[Problem]) -> list[Problem]:
+    """Return the problems by place, then text."""
+    return sorted(problems, key=lambda one: (place_key(one.at), one.message, one.advice))
+
+
+def by_rule(findings: Iterable[Finding]) -> list[Finding]:
+    """Return the findings by rule."""
+    return sorted(findings, key=lambda one: (one.rule, outcome_rank(one), one.message, one.remedy))
+
+
+def outcome_rank(finding: Finding) -> int:
+    """Return 0 for the worst outcome, and more for better ones."""
+    return _OUTCOMES.index(finding.outcome)
+
+
+def blocking_findings(one: Judged) -> list[Finding]:
+    """Return the findings that keep the record from standing, worst first."""
+    return sorted(by_rule(finding for finding in one.findings if finding.blocks), key=outcome_rank)
+
+
+def noted_findings(one: Judged) -> list[Finding]:
+    """Return the findings that the policy only notes although they are short or undecided, worst first."""
+    noted = (finding for finding in one.findings if finding.enforce == "note" and outcome_rank(finding) <= 1)
+    return sorted(by_rule(noted), key=outcome_rank)
+
+
+def waived_findings(one: Judged) -> list[Finding]:
+    """Return the findings that a waiver covers."""
+    return by_rule(finding for finding in one.findings if finding.outcome == "waived")
+
+
+def is_blocked(one: Judged) -> bool:
+    """Whether the record falls short or is undecided."""
+    return one.standing in {"falls-short", "undecided"}
+
+
+def blocked(verdict: Verdict, *, counting: bool = True) -> list[Judged]:
+    """Return the records, claimed or not, that are kept from standing: those that fall short come first."""
+    held = (one for one in verdict.judged if is_blocked(one) and one.counts_now is counting)
+    return sorted(by_place(held), key=lambda one: one.standing == "undecided")
+
+
+def standing(verdict: Verdict) -> list[Judged]:
+    """Return the claims that stand."""
+    return by_place(one for one in verdict.claims if one.standing == "stands")
+
+
+def with_waiver(verdict: Verdict) -> list[Judged]:
+    """Return the records that pass by a waiver."""
+    return by_place(one for one in verdict.judged if one.standing == "waived")
+
+
+def without_claim(verdict: Verdict) -> list[Judged]:
+    """Return the records that claim nothing and are not blocked or waived."""
+    return by_place(one for one in verdict.reported if one.standing == "stands")

@@ -1,0 +1,203 @@
+"""The verdict as Markdown, for the summary page of a build and for review."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass
+
+from gatecheck.model.shown import percent
+from gatecheck.model.verdict import Figures, Finding, Judged, Verdict
+from gatecheck.render import order, words
+from gatecheck.render.text import cut, markdown, plain
+
+#: A page above 1 MiB is dropped whole by the build services; this leaves a margin.
+BUDGET = 900 * 1024
+LONGEST_TEXT = 2000
+_LONGEST_NAME = 200
+
+_HOW_TO_READ = (
+    "How to read this: a p-value says how surprising the data would be if there were no effect. "
+    "The false positive risk says how probable it is that there is no effect, given the data and the prior, "
+    "which is the probability of a real effect before the data. "
+    "A p just below 0.05 can leave a risk far above 5 %. "
+    "The prior needed is the prior at which the risk would come down to what the policy asks.\n\n"
+)
+_BLOCKED_HEAD = (
+    "| Claim | Result | False positive risk | Prior needed | The policy allows |\n| --- | --- | --- | --- | --- |\n"
+)
+_FIGURES_HEAD = (
+    "| Record | Alternative | Prior | Likelihood ratio | False positive risk | Prior needed |\n"
+    "| --- | --- | --- | --- | --- | --- |\n"
+)
+
+
+@dataclass(frozen=True, slots=True)
+class _Section:
+    """Entries between a head and a foot; the first texts of all entries stand before their second ones."""
+
+    head: str
+    entries: list[tuple[str, str]]
+    foot: str = ""
+
+    def text(self, kept: int) -> str:
+        shown = self.entries[:kept]
+        first, second = "".join(entry[0] for entry in shown), "".join(entry[1] for entry in shown)
+        return f"{self.head}{first}\n{second}{self.foot}" if shown else ""
+
+    def that_fit(self, room: int) -> int:
+        room -= _size(self.head) + _size(self.foot) + 1
+        for kept, entry in enumerate(self.entries):
+            room -= _size(entry[0]) + _size(entry[1])
+            if room < 0:
+                return kept
+        return len(self.entries)
+
+
+def summary(verdict: Verdict, budget: int = BUDGET) -> str:
+    """Return the verdict as Markdown of at most `budget` bytes, worst first.
+
+    The headline, the cautions and the policy always stand; a budget below 4 KiB may be too small for them.
+    Where entries had to be left out, the last line says how many.
+    """
+    head, tail = f"## {markdown(words.headline(verdict))}\n\n", _closing(verdict)
+    sections = [section for section in _sections(verdict) if section.entries]
+    entries = sum(len(section.entries) for section in sections)
+    room = budget - _size(head) - _size(tail) - _size(_left_out(entries))
+    texts, shown = [], 0
+    for section in sections:
+        kept = section.that_fit(room)
+        texts.append(section.text(kept))
+        shown += kept
+        # What matters less must not stand where what matters more had no room.
+        room = room - _size(texts[-1]) if kept == len(section.entries) else 0
+    return head + "".join(texts) + tail + _left_out(entries - shown)
+
+
+def _sections(verdict: Verdict) -> list[_Section]:
+    held = order.blocked(verdict)
+    explained = any(one.evidence is not None for one in held)
+    return [
+        _Section(
+            "### Could not be read or judged\n\n",
+            [
+                (_line(f"{words.where(one.at)}: {words.problem(one)}"), "")
+                for one in order.problems_by_place(verdict.problems)
+            ],
+        ),
+        _Section((_HOW_TO_READ if explained else "") + _BLOCKED_HEAD, [(_row(one), _held(one)) for one in held]),
+        _Section("### Notes\n\n", [(_line(note), "") for note in verdict.notes]),
+        _folded("Waived", ((one, order.waived_findings(one)) for one in order.with_waiver(verdict))),
+        _folded(
+            "Noted, without effect on the verdict",
+            ((one, order.noted_findings(one)) for one in order.by_place(verdict.judged)),
+        ),
+        _folded_results("Short or undecided, but unchanged", order.blocked(verdict, counting=False)),
+        _folded_results("Standing", order.standing(verdict)),
+        _folded_results("Reported without a claim", order.without_claim(verdict)),
+        _details(
+            "The evidence and its assumptions",
+            [(_figures(one, one.evidence), "") for one in order.by_place(verdict.judged) if one.evidence],
+            _FIGURES_HEAD,
+        ),
+    ]
+
+
+def _details(title: str, entries: list[tuple[str, str]], head: str = "") -> _Section:
+    opening = f"<details>\n<summary>{title} ({len(entries)})</summary>\n\n{head}"
+    return _Section(opening, entries, "</details>\n\n")
+
+
+def _folded(title: str, found: Iterable[tuple[Judged, list[Finding]]]) -> _Section:
+    said = [f"{one.id}: {words.found(finding)}" for one, findings in found for finding in findings]
+    return _details(title, [(_line(text), "") for text in said])
+
+
+def _folded_results(title: str, judged: list[Judged]) -> _Section:
+    return _details(title, [(_line(f"{one.id}: {_result(one)}"), "") for one in judged])
+
+
+def _result(one: Judged) -> str:
+    claim = f"{words.sentence(one.claim)} " if one.claim is not None else ""
+    return f"{claim}{words.result(one)}"
+
+
+def _line(text: str) -> str:
+    return f"- {_md(text)}\n"
+
+
+def _row(one: Judged) -> str:
+    risk, needed = "unknown", "unknown"
+    if one.evidence is not None:
+        risk, needed = _risk(one, one.evidence), _needed(one, one.evidence)
+        risk += f", at a prior of {words.probability(one.evidence.prior)}"
+    return _cells([f"{one.claim or 'Nothing is claimed.'} ({one.id})", one.result, risk, needed, _allowed(one)])
+
+
+def _risk(one: Judged, figures: Figures) -> str:
+    return words.probability(figures.false_positive_risk, words.limit_of(one, words.RISK_RULE))
+
+
+def _needed(one: Judged, figures: Figures) -> str:
+    return words.probability(figures.prior_needed, words.limit_of(one, words.PRIOR_RULE))
+
+
+def _cells(cells: list[str]) -> str:
+    return f"| {' | '.join(map(_md, cells))} |\n"
+
+
+def _allowed(one: Judged) -> str:
+    known = {words.RISK_RULE: "risk up to", words.PRIOR_RULE: "prior needed up to"}
+    allowed = []
+    for finding in order.by_rule(one.findings):
+        if finding.rule in known and finding.limit is not None and finding.outcome != "does-not-apply":
+            allowed.append(f"{known[finding.rule]} {percent(finding.limit, finding.limit)}")
+        elif finding.blocks:
+            allowed.append(f"{words.rule_words(finding.rule).lower()}: see below")
+    return "; ".join(allowed)
+
+
+def _held(one: Judged) -> str:
+    state = "Cannot be decided" if one.standing == "undecided" else "Short of the policy"
+    claim = f"Claim: {words.sentence(one.claim or words.NO_CLAIM)} In {words.places(one)}."
+    findings = "".join(map(_finding, order.blocking_findings(one)))
+    return f"### {_md(one.id)}\n\n{state}. {_md(claim)}\n\n{findings}\n"
+
+
+def _finding(finding: Finding) -> str:
+    said = words.with_remedy(words.message(finding), finding.remedy)
+    return f"- **{_md(words.rule_words(finding.rule))}:** {_md(said)}\n"
+
+
+def _figures(one: Judged, figures: Figures) -> str:
+    return _cells(
+        [
+            one.id,
+            words.alternative_words(figures.alternative),
+            words.probability(figures.prior) + (f" ({figures.prior_from})" if figures.prior_from else ""),
+            words.likelihood_ratio(figures.log_likelihood_ratio),
+            _risk(one, figures),
+            _needed(one, figures),
+        ],
+    )
+
+
+def _closing(verdict: Verdict) -> str:
+    policy = markdown(cut(plain(words.policy_used(verdict.policy)), _LONGEST_NAME))
+    return (
+        "<details>\n<summary>What was not checked, what standing means, and the policy</summary>\n\n"
+        f"- {words.NOT_CHECKED}\n- {words.CAUTION}\n- {policy}\n\n</details>\n"
+    )
+
+
+def _left_out(entries: int) -> str:
+    if not entries:
+        return ""
+    return f"\nLeft out for length: {words.count(entries, 'entry', 'entries')}. The JSON verdict holds them all.\n"
+
+
+def _md(text: str) -> str:
+    return markdown(cut(plain(text), LONGEST_TEXT))
+
+
+def _size(text: str) -> int:
+    return len(text.encode())

@@ -1,0 +1,235 @@
+"""The sentences that every format for people shares. They may hold text from records: clean them before use."""
+
+from __future__ import annotations
+
+import math
+
+from gatecheck.model.shown import decimal, percent
+from gatecheck.model.verdict import Figures, Finding, Judged, Place, PolicyUsed, Problem, Verdict
+from gatecheck.render.order import blocked, blocking_findings, place_key
+
+RISK_RULE = "false-positive-risk"
+PRIOR_RULE = "prior-needed"
+
+NO_CLAIM = "none; this rule holds for every result that is reported"
+NOT_CHECKED = (
+    "Not checked: the quality of the data, whether the design supports cause and effect, blinding, "
+    "and whether the records tell all that was tried."
+)
+CAUTION = (
+    "Standing means consistent with this team's policy; it does not mean true, important or safe to act on. "
+    "Every risk rests on a prior and an alternative that people chose. "
+    "Falling short is a statement about a record, not about a person. "
+    "In matters of health and safety, local rules and licensed practice decide."
+)
+
+_ALTERNATIVES = {
+    "observed-effect": "the effect as observed",
+    "design-effect": "the effect that the study was designed to find",
+    "default-prior": "a default prior on the size of the effect",
+    "bound": "the alternative that favours the claim most",
+}
+_OUTCOMES = {
+    "met": "met",
+    "short": "short of the policy",
+    "waived": "short of the policy, and waived",
+    "does-not-apply": "does not apply",
+    "undecided": "cannot be decided",
+}
+_ENFORCED = {"block": "", "note": "; the policy only notes it", "off": "; the policy leaves it off"}
+_ORIGINS = {
+    "base": "from the base revision",
+    "tree": "from the judged tree",
+    "built-in": "built in, as the tree has no policy of its own",
+}
+_SHORT_DIGEST = len("sha256:") + 12
+
+_EVEN = math.log(1.05)
+_FEW, _HUNDRED, _MILLION = 3.0, 100.0, 1e6
+
+
+def count(number: int, one: str, many: str | None = None) -> str:
+    """Return `number` with its noun, such as ``1 claim`` and ``2 claims``."""
+    return f"{number} {one if number == 1 else many or f'{one}s'}"
+
+
+def headline(verdict: Verdict) -> str:
+    """Return the verdict in one sentence with its counts."""
+    leads = {"stands": _all_stand, "falls-short": _falls_short, "cannot-judge": _cannot_judge}
+    clauses = [*leads[verdict.answer](verdict), *_rest(verdict)]
+    return "; ".join(clause for clause in clauses if clause) + "."
+
+
+def _all_stand(verdict: Verdict) -> list[str]:
+    claims, stand = len(verdict.claims), verdict.count("stands")
+    if not claims:
+        reported = count(len(verdict.reported), "result is", "results are")
+        return [f"Nothing falls short: {reported} reported and nothing is claimed"]
+    if stand == claims == 1:
+        return ["Stands: the only claim meets the policy"]
+    if not stand:
+        return [f"Nothing blocks: none of {count(claims, 'claim')} meets the policy"]
+    return [f"Stands: {'all' if stand == claims else f'{stand} of'} {claims} claims meet the policy"]
+
+
+def _falls_short(verdict: Verdict) -> list[str]:
+    return [f"Falls short of the policy: {_share(verdict, 'falls-short')}", _stand(verdict)]
+
+
+def _cannot_judge(verdict: Verdict) -> list[str]:
+    reasons = []
+    if verdict.problems:
+        reasons.append(count(len(verdict.problems), "problem"))
+    if undecided := _share(verdict, "undecided"):
+        reasons.append(f"{undecided} undecided")
+    short = _share(verdict, "falls-short")
+    return [
+        f"Cannot judge: {' and '.join(reasons)}",
+        f"{short} short of the policy" if short else "",
+        _stand(verdict),
+    ]
+
+
+def _share(verdict: Verdict, standing: str) -> str:
+    held = [one for one in blocked(verdict) if one.standing == standing]
+    claims, total = sum(one.claim is not None for one in held), len(verdict.claims)
+    reported = len(held) - claims
+    parts = ["the only claim" if total == 1 else f"{claims} of {total} claims"] if claims else []
+    parts += [count(reported, "result without a claim", "results without a claim")] if reported else []
+    return " and ".join(parts)
+
+
+def _stand(verdict: Verdict) -> str:
+    stand = verdict.count("stands")
+    if stand:
+        return count(stand, "stands", "stand")
+    return "none stands" if len(verdict.claims) > 1 else ""
+
+
+def _rest(verdict: Verdict) -> list[str]:
+    waived = sum(one.standing == "waived" for one in verdict.judged)
+    unchanged = len(blocked(verdict, counting=False))
+    return [
+        count(waived, "is waived", "are waived") if waived else "",
+        count(unchanged, "is short or undecided", "are short or undecided") + " but unchanged, and not counted"
+        if unchanged
+        else "",
+    ]
+
+
+def where(place: Place) -> str:
+    """Return a place in words."""
+    if place.cell is None:
+        return f"{place.path}, line {place.line}"
+    output = "" if place.output is None else f", output {place.output}"
+    return f"{place.path}, line {place.line} (cell {place.cell}{output})"
+
+
+def places(one: Judged) -> str:
+    """Return where a record stands, and where else."""
+    also = (f"; also in {where(place)}" for place in sorted(one.also_at, key=place_key))
+    return where(one.at) + "".join(also)
+
+
+def rule_words(rule: str) -> str:
+    """Return the name of a rule as the beginning of a sentence."""
+    words = rule.replace("-", " ")
+    return words[:1].upper() + words[1:]
+
+
+def outcome_words(finding: Finding) -> str:
+    """Return what the finding says, in words, and whether the policy acts on it."""
+    return _OUTCOMES[finding.outcome] + _ENFORCED[finding.enforce]
+
+
+def found(finding: Finding) -> str:
+    """Return the message of a finding behind the name of its rule."""
+    return f"{rule_words(finding.rule)}: {message(finding)}"
+
+
+def message(finding: Finding) -> str:
+    """Return the message of a finding as a sentence; its outcome where it has none."""
+    return sentence(finding.message or outcome_words(finding))
+
+
+def problem(one: Problem) -> str:
+    """Return what a problem is and what to do."""
+    return with_remedy(sentence(one.message), one.advice)
+
+
+def with_remedy(said: str, remedy: str) -> str:
+    """Return what was `said`, then what would mend it where that is known."""
+    return f"{said} To mend: {sentence(remedy)}" if remedy else said
+
+
+def sentence(text: str) -> str:
+    """Return `text` with a full stop where it has no end of its own."""
+    # Blanks alone: what else Python strips is a control character, and must be seen.
+    bare = text.strip(" \t\r\n")
+    return bare if not bare or bare.endswith((".", "!", "?")) else f"{bare}."
+
+
+def result(one: Judged) -> str:
+    """Return the result of a record with its risk, and what keeps it from standing."""
+    value = risk(one)
+    held = "".join(f" {found(finding)}" for finding in blocking_findings(one))
+    return f"{sentence(one.result + (f'; {value}' if value else ''))}{held}"
+
+
+def limit_of(one: Judged, rule: str) -> float | None:
+    """Return the limit that the policy sets for a rule on this record."""
+    return next((finding.limit for finding in one.findings if finding.rule == rule), None)
+
+
+def probability(value: float | None, limit: float | None = None) -> str:
+    """Return a probability in percent, or that it is unknown."""
+    return "unknown" if value is None else percent(value, limit)
+
+
+def alternative_words(alternative: str) -> str:
+    """Return the alternative in words."""
+    return _ALTERNATIVES.get(alternative, alternative)
+
+
+def risk(one: Judged) -> str:
+    """Return the false positive risk of a record with its assumptions, or nothing where none was computed."""
+    figures = one.evidence
+    if figures is None or figures.false_positive_risk is None:
+        return ""
+    value = percent(figures.false_positive_risk, limit_of(one, RISK_RULE))
+    chosen = f"prior {probability(figures.prior)}, against {alternative_words(figures.alternative)}"
+    return f"false positive risk {value} ({chosen})"
+
+
+def likelihood_ratio(log_ratio: float | None) -> str:
+    """Return a natural log likelihood ratio as odds in words, with the log itself."""
+    if log_ratio is None or math.isnan(log_ratio):
+        return "unknown"
+    if abs(log_ratio) < _EVEN:
+        favours = "about even"
+    else:
+        side = "for an effect over none" if log_ratio > 0 else "for no effect over one"
+        favours = f"{_odds(abs(log_ratio))} to 1 {side}"
+    return f"{favours} (natural log {decimal(log_ratio)})"
+
+
+def _odds(log_ratio: float) -> str:
+    if log_ratio >= math.log(_MILLION):
+        return "above 1,000,000"
+    ratio = math.exp(log_ratio)
+    if ratio < _FEW:
+        return f"about {ratio:.2g}"
+    return f"about {ratio:.0f}" if ratio < _HUNDRED else f"about {float(f'{ratio:.1e}'):,.0f}"
+
+
+def assumptions(figures: Figures) -> str:
+    """Return on what the figures rest."""
+    origin = f" ({figures.prior_from})" if figures.prior_from else ""
+    return f"against {alternative_words(figures.alternative)}, prior {probability(figures.prior)}{origin}"
+
+
+def policy_used(policy: PolicyUsed | None) -> str:
+    """Return which policy was applied."""
+    if policy is None:
+        return "Policy: none could be read."
+    return f"Policy: {policy.name} ({_ORIGINS[policy.origin]}; {policy.digest[:_SHORT_DIGEST]})."

@@ -1,0 +1,71 @@
+"""The rule engine: three answers for each row, and words only where they are needed."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from gatecheck.columns import Floats
+from gatecheck.model.verdict import Finding
+from gatecheck.policy import RuleSettings
+from gatecheck.rules.rule import Judgement, Rule, Table
+
+Row = tuple[Finding, ...]
+
+
+def judge_all(rules: Sequence[Rule], table: Table, *, explain: frozenset[int] = frozenset()) -> list[Row]:
+    """Judge every row of `table` by every rule that is on for it; findings stand in the order of `rules`.
+
+    Rows in `explain` carry words for every outcome, the others for what falls short or is undecided.
+    """
+    found: list[list[Finding]] = [[] for _ in table.applied]
+    for rule in rules:
+        for row, finding in _judge(rule, table, explain):
+            found[row].append(finding)
+    return [tuple(each) for each in found]
+
+
+def _judge(rule: Rule, table: Table, explain: frozenset[int]) -> list[tuple[int, Finding]]:
+    settings = [applied.rules.get(rule.name) for applied in table.applied]
+    bound = table.columns.claims if rule.claims_only else np.ones(len(settings), np.bool_)
+    rows = [row for row, each in enumerate(settings) if each is not None and bound[row]]
+    if not rows:
+        return []
+    judging = _Judging(rule, table, settings)
+    return [(row, judging.finding(row, wordy=row in explain)) for row in rows]
+
+
+class _Judging:
+    """One rule at work on a table."""
+
+    def __init__(self, rule: Rule, table: Table, settings: Sequence[RuleSettings | None]) -> None:
+        self.rule = rule
+        self.table = table
+        self.settings = settings
+        self.exempt = [(each.rows(table, settings), each.because) for each in rule.exempt]
+        self.known = [np.isfinite(need.column(table)) for need in rule.needs]
+        self.judgement: Judgement = rule.judge(table, settings)
+
+    def finding(self, row: int, *, wordy: bool) -> Finding:
+        """What the rule says of one row: exempt first, then undecided, then short or met."""
+        enforce = (self.settings[row] or RuleSettings()).enforce
+        for rows, because in self.exempt:
+            if rows[row]:
+                return Finding(self.rule.name, "does-not-apply", enforce, message=because)
+        for need, known in zip(self.rule.needs, self.known, strict=True):
+            if not known[row]:
+                said = need.missing(self.table, row)
+                return Finding(self.rule.name, "undecided", enforce, None, None, said.message, said.remedy)
+        short = bool(self.judgement.short[row])
+        observed, limit = _at(self.judgement.observed, row), _at(self.judgement.limit, row)
+        if not (short or wordy):
+            return Finding(self.rule.name, "met", enforce, observed, limit)
+        said = self.rule.explain(self.table, row, self.settings[row], self.judgement)
+        if not short:
+            return Finding(self.rule.name, "met", enforce, observed, limit, said.message)
+        return Finding(self.rule.name, "short", enforce, observed, limit, said.message, said.remedy)
+
+
+def _at(column: Floats | None, row: int) -> float | None:
+    return None if column is None else float(column[row])

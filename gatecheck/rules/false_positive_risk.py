@@ -1,0 +1,63 @@
+"""Rule `false-positive-risk`: the risk that there is no effect, given the result as observed, is small enough.
+
+The risk is 1 / (1 + LR p / (1 - p)), with the likelihood ratio LR of the result as observed (never of "a result
+at least as extreme") and the prior probability p of a real effect. Settings: `limit`, the largest risk that the
+policy allows; `include_harm`, whether safety outcomes are held to it too.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Annotated
+
+from gatecheck import weigh
+from gatecheck.model.record import OpenProbability
+from gatecheck.model.shown import percent
+from gatecheck.policy import RuleSettings
+from gatecheck.rules.mending import tell_mending, tell_prior_to_defend, would_do
+from gatecheck.rules.rule import Judgement, Rule, Said, Table, setting
+from gatecheck.rules.weighed import EXEMPT, LOG_LIKELIHOOD_RATIO
+from gatecheck.rules.words import tell_alternative, tell_odds, tell_prior, tell_result
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Settings(RuleSettings):
+    """The risk of having no effect that a claim may leave."""
+
+    limit: Annotated[OpenProbability, "largest false positive risk allowed"]
+    include_harm: Annotated[bool, "hold safety outcomes to this limit too"] = False
+
+
+def judge(table: Table, settings: Sequence[Settings | None]) -> Judgement:
+    """Short where the risk is above the limit."""
+    risk, limit = table.evidence.false_positive_risk, setting(settings, "limit")
+    short = risk > limit
+    return Judgement(short, risk, limit, would_do(table, short, weigh.log_lr_needed(table.evidence.prior, limit)))
+
+
+def explain(table: Table, row: int, settings: Settings, judgement: Judgement) -> Said:
+    """What the result leaves as risk, what the policy allows, and what would mend it."""
+    columns, evidence = table.columns, table.evidence
+    log_lr, risk = float(evidence.log_likelihood_ratio[row]), float(evidence.false_positive_risk[row])
+    ratio = f" (the data fit {tell_odds(log_lr)})" if log_lr < 0 else ""
+    message = (
+        f"{tell_result(columns, evidence, row)} leaves a false positive risk of {percent(risk, settings.limit)} "
+        f"at {tell_prior(columns, evidence, row)}, {tell_alternative(columns, evidence, row)}{ratio}; "
+        f"the policy allows {percent(settings.limit, settings.limit)}."
+    )
+    target = float(weigh.log_lr_needed(evidence.prior[row], settings.limit))
+    defend = tell_prior_to_defend(table, row, settings.limit)
+    return Said(message, f"{defend[0].upper()}{defend[1:]}. {tell_mending(table, row, target, judgement)}")
+
+
+RULE = Rule(
+    name="false-positive-risk",
+    asks="the risk that there is no effect, given the result as observed, is within the limit",
+    settings=Settings,
+    judge=judge,
+    explain=explain,
+    needs=(LOG_LIKELIHOOD_RATIO,),
+    exempt=EXEMPT,
+    claims_only=True,
+)

@@ -1,0 +1,77 @@
+"""What would mend a claim that falls short of an evidence limit, in numbers."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+
+from gatecheck import weigh
+from gatecheck.columns import Booleans, Floats
+from gatecheck.model.shown import percent
+from gatecheck.rules.rule import Judgement, Table
+from gatecheck.rules.words import tell_n, tell_wording
+
+_LARGEST_TOLD = 1e8
+
+
+def would_do(table: Table, short: Booleans, target_log_lr: Floats) -> Floats:
+    """The least number of units per group at the effect observed, or at the effect planned.
+
+    Computed where a row is `short`; nan elsewhere, where it cannot be told, and where no larger sample helps.
+    """
+    statistics, design = table.evidence.statistics, table.evidence.design
+    by_plan = np.array([name == "design-effect" for name in table.evidence.alternative], np.bool_)
+    by_bound = np.array([name == "bound" for name in table.evidence.alternative], np.bool_)
+    ncp = np.where(statistics.kind == weigh.Statistic.F, table.evidence.ncp / statistics.df1, table.evidence.ncp)
+    rows = np.flatnonzero(short & ~by_bound)
+    n = np.full(short.shape, np.nan)
+    n[rows] = weigh.n_to_stand(
+        statistics.kind[rows],
+        np.where(by_plan, ncp, statistics.value)[rows],
+        statistics.df1[rows],
+        statistics.df2[rows],
+        design.total[rows],
+        design.arms[rows],
+        target_log_lr[rows],
+        one_sided=statistics.one_sided[rows],
+    )
+    return np.where(n * design.arms > design.total, n, np.nan)
+
+
+def tell_mending(table: Table, row: int, target_log_lr: float, judgement: Judgement) -> str:
+    """The sample or the p that would do, and the wording that the evidence allows as it stands."""
+    evidence = table.evidence
+    wording = tell_wording(evidence.false_positive_risk[row], evidence.log_likelihood_ratio[row])
+    told = _what_would_do(table, row, target_log_lr, judgement)
+    return f"{told}; {wording}." if told else f"{wording[0].upper()}{wording[1:]}."
+
+
+def tell_prior_to_defend(table: Table, row: int, risk: float) -> str:
+    """How sure one would have to be beforehand for that risk."""
+    needed = float(weigh.prior_needed(table.evidence.log_likelihood_ratio[row], risk))
+    return f"one would have to be {percent(needed)} sure beforehand"
+
+
+def _what_would_do(table: Table, row: int, target_log_lr: float, judgement: Judgement) -> str:
+    alternative = table.evidence.alternative[row]
+    if alternative == "bound":
+        p = math.exp(float(weigh.log_p_for_bound(target_log_lr)))
+        return f"A p-value of {_rounded_down(p)} or less would do"
+    n = math.nan if judgement.would_do is None else float(judgement.would_do[row])
+    if not n < _LARGEST_TOLD:
+        return ""
+    sample = table.record(row).sample
+    told = tell_n(table.evidence, row, n, sample.unit if sample else None)
+    if alternative == "design-effect":
+        return f"Where the planned effect comes out as planned, {told} would do"
+    return (
+        f"If the effect is really this large, {told} would do (an effect found significant is more often too "
+        "large than too small: plan on the smallest effect of interest)"
+    )
+
+
+def _rounded_down(p: float) -> str:
+    """Two digits that are no more than `p`, so that what is told to do does."""
+    unit = 10.0 ** (math.floor(math.log10(p)) - 1)
+    return f"{math.floor(p / unit) * unit:.2g}"

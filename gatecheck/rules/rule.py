@@ -1,0 +1,90 @@
+"""What a rule is: its needs, an outcome for all rows at once, and a message for one row."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+
+from gatecheck.columns import Booleans, Columns, Floats
+from gatecheck.compare.own_numbers import Agreement
+from gatecheck.evidence import Evidence
+from gatecheck.model.record import Record
+from gatecheck.policy import Applied, RuleSettings
+
+
+@dataclass(frozen=True, slots=True)
+class Table:
+    """All that rules see: columns, evidence, facts and what the policy asks of each row."""
+
+    columns: Columns
+    evidence: Evidence
+    own_numbers: tuple[Agreement, ...]
+    applied: tuple[Applied, ...]
+
+    def record(self, row: int) -> Record:
+        """The record of that row."""
+        return self.columns.found[row].record
+
+
+@dataclass(frozen=True, slots=True)
+class Judgement:
+    """A rule's outcome for all rows: where it falls short, and what was observed against which limit.
+
+    `would_do` is the least number of units per group that would mend a row, for the rules that can tell it.
+    """
+
+    short: Booleans
+    observed: Floats | None = None
+    limit: Floats | None = None
+    would_do: Floats | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Said:
+    """What is said of one row: what was found and is wanted, and what would mend it."""
+
+    message: str
+    remedy: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Exemption:
+    """Rows to which a rule does not apply, and why."""
+
+    rows: Callable[[Table, Sequence[Any]], Booleans]
+    because: str
+
+
+@dataclass(frozen=True, slots=True)
+class Need:
+    """A column without which a rule cannot judge a row, and what is said where it is missing."""
+
+    column: Callable[[Table], Floats]
+    missing: Callable[[Table, int], Said]
+
+
+@dataclass(frozen=True, slots=True)
+class Rule:
+    """One rule of a reporting policy.
+
+    `settings` is the type of its settings; its functions get the settings of all rows, with `None` where the
+    rule is off. `claims_only` rules say nothing of a record that claims nothing.
+    """
+
+    name: str
+    asks: str
+    settings: type[RuleSettings]
+    judge: Callable[[Table, Sequence[Any]], Judgement]
+    explain: Callable[[Table, int, Any, Judgement], Said]
+    needs: tuple[Need, ...] = ()
+    exempt: tuple[Exemption, ...] = ()
+    claims_only: bool = False
+    always_on: bool = False
+
+
+def setting(settings: Sequence[Any], name: str) -> Floats:
+    """One number of the settings as a column; nan where the rule is off."""
+    return np.array([np.nan if each is None else getattr(each, name) for each in settings], np.float64)

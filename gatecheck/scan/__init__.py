@@ -1,0 +1,91 @@
+"""Scan: find the records in a tree by what they declare themselves to be, and name all that cannot be read.
+
+Only a file whose suffix has a reader, and which the globs name, is looked at; only one whose bytes hold the
+declaring key is parsed. What is parsed and turns out to be something else is passed over in silence.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator, Sequence
+from pathlib import Path
+
+from gatecheck.git import Entry
+from gatecheck.globs import matches
+from gatecheck.model.found import Found, Scan
+from gatecheck.model.verdict import Problem
+from gatecheck.scan.candidates import is_pointer, looks_declared, may_declare
+from gatecheck.scan.documents import judged
+from gatecheck.scan.readers import READERS, suffix_of
+from gatecheck.scan.readers.document import Document
+from gatecheck.scan.tree import Unread, contents, listed
+from gatecheck.scan.twins import position, settled
+from gatecheck.scan.unread import as_text, of_files, of_folders, of_links, of_long, of_pointer, of_unmerged
+
+#: A longer file that declares something is not parsed, in bytes.
+LONGEST_PARSED = 32 << 20
+
+
+def scan(root: Path, include: Sequence[str], exclude: Sequence[str], revision: str | None = None) -> Scan:
+    """Find the records below `root`.
+
+    In a git repository the tracked files and the untracked ones that are not ignored are read; a folder in no
+    repository is walked. With `revision` the files are those of that commit.
+
+    Parameters
+    ----------
+    root
+        The folder to judge; all places are relative to it.
+    include, exclude
+        Globs of paths relative to `root`: a file is read if one of the first names it and none of the second.
+    revision
+        The commit to read in place of the work tree.
+
+    Raises
+    ------
+    CannotJudge
+        `root` is no folder, git fails, or the revision is not known.
+    """
+    tree = listed(root, revision)
+    wanted = [entry for entry in tree.entries if suffix_of(entry.path) in READERS]
+    wanted = [entry for entry in wanted if matches(include, entry.path) and not matches(exclude, entry.path)]
+    outcomes: list[Found | Problem] = []
+    unread_files: list[tuple[Entry, Unread]] = []
+    read: set[str] = set()
+    for entry, content in contents(tree, [entry for entry in wanted if entry.kind in {"file", "unmerged"}]):
+        if isinstance(content, Unread):
+            unread_files.append((entry, content))
+        else:
+            read.add(entry.path)
+            outcomes.extend(_of_file(entry, content, include))
+    links = [entry for entry in wanted if entry.kind == "link"]
+    links += [entry for entry, unread in unread_files if unread.why == "link"]
+    found, clashes = settled(one for one in outcomes if isinstance(one, Found))
+    problems = (
+        *(one for one in outcomes if isinstance(one, Problem)),
+        *clashes,
+        *of_files(unread_files),
+        *of_links(tree, links, read),
+        *of_folders(tree, include, exclude),
+    )
+    in_order = sorted(dict.fromkeys(problems), key=lambda one: (position(one.at), one.message))
+    return Scan(found, tuple(in_order), len(read))
+
+
+def _of_file(entry: Entry, content: bytes, include: Sequence[str]) -> Iterable[Found | Problem]:
+    if may_declare(content):
+        return _of_candidate(entry, content)
+    return of_pointer(as_text(entry.path), include) if is_pointer(content) else ()
+
+
+def _of_candidate(entry: Entry, content: bytes) -> Iterator[Found | Problem]:
+    path, suffix = as_text(entry.path), suffix_of(entry.path)
+    ours = looks_declared(suffix, content)
+    if entry.kind == "unmerged" or len(content) > LONGEST_PARSED:
+        if ours:
+            yield (of_unmerged(path) if entry.kind == "unmerged" else of_long(path, len(content), LONGEST_PARSED))
+        return
+    for one in READERS[suffix](path, content):
+        if isinstance(one, Document):
+            yield from judged(one)
+        elif ours:
+            yield one

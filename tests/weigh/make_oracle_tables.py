@@ -1,0 +1,148 @@
+"""Write the reference tables in ``tables/`` from the 50-digit oracle.
+
+Run ``python tests/weigh/make_oracle_tables.py`` from the root of the repository; it takes a few minutes. The grids
+are fixed, so that a second run writes the same bytes. They hold ordinary values, corners of the domain, and both
+sides of every place where the package changes its method. Numbers stand with all the digits of a double, results
+with 25 digits.
+"""
+
+from __future__ import annotations
+
+import csv
+import itertools
+import math
+from collections.abc import Callable, Iterator
+from pathlib import Path
+
+import mpmath as mp
+import oracle
+
+TABLES = Path(__file__).parent / "tables"
+JUST_BELOW, JUST_ABOVE = 1 - 1e-9, 1 + 1e-9
+Row = tuple[float, ...]
+
+
+def below(x: float) -> float:
+    """Return the double before ``x``."""
+    return math.nextafter(x, 0.0)
+
+
+T_DF_SWITCHES = [12.0, 20.0, 40.0, 100.0, 200.0, 500.0]
+T_DF = [
+    *(1.0, 1.5, 2.0, 3.7, 5.0, 8.0, 10.0),
+    *(df for switch in T_DF_SWITCHES for df in (below(switch), switch)),
+    *(30.0, 57.3, 1e3, 1e4, 1e5, 1e6, 1e7),
+]
+T_SIZE = [1e-6, 1e-3, 0.1, 1.0, 2.1, 5.0, 8.0, 20.0, 40.0, 300.0, 1e4]
+
+
+def t_rows() -> Iterator[Row]:
+    """t, df, ncp, one-sided."""
+    for (i, t), (j, df) in itertools.product(enumerate(T_SIZE), enumerate(T_DF)):
+        others = [2.83, 0.3, t + 3, 40.0, 0.7 * t, 1e-6]
+        one, other = others[(i + j) % 6], others[(i + j + 3) % 6]
+        cases = ((t, t, 0), (t, t, 1), (-t, t, 1), (t, one, 0), (t, other, 1), (t, -one, 1))
+        yield from ((signed_t, df, ncp, side) for signed_t, ncp, side in cases)
+    yield from t_switches()
+    yield from [(5.0, 1000.0, -2.83, 0), (5.0, 1000.0, -2.83, 1), (1e4, 1.0, 1e4, 1), (1e-6, 1e7, 1e-6, 0)]
+    yield from [(0.0, df, ncp, side) for df in (1.0, 30.0, 1e6) for ncp in (0.0, 2.0, -2.0) for side in (0, 1)]
+
+
+def t_switches() -> Iterator[Row]:
+    """Few degrees of freedom: both sides of the arguments where the method changes."""
+    for t, df, side in itertools.product((0.5, 2.0, 9.0), (1.0, 2.5, 7.0, 11.5), (0, 1)):
+        for mu in (math.sqrt(200), math.sqrt(0.4 / (df + 1)), 1000.0):
+            ncp = mu * math.sqrt(t * t + df) / t
+            signs = (1, -1) if side else (1,)
+            yield from ((t, df, sign * ncp * shift, side) for shift in (JUST_BELOW, JUST_ABOVE) for sign in signs)
+
+
+def z_rows() -> Iterator[Row]:
+    """z, ncp, one-sided."""
+    for z, ncp, side in itertools.product(
+        (0.0, 1e-6, 0.5, -1.96, 4.0, -38.0), (0.0, 1e-6, 2.0, -2.8, 38.0), (0, 1)
+    ):
+        yield (z, ncp, side)
+
+
+def chi2_rows() -> Iterator[Row]:
+    """x, df, ncp."""
+    sizes = [1e-12, 1e-3, 0.5, 1.0, 3.84, 10.0, 30.0, 100.0, 700.0, 1e4, 1e6, 1e8]
+    dfs = [0.5, 1.0, 1.7, 2.0, 3.0, 4.0, 5.0, 10.0, 30.0, below(42.0), 42.0, 100.0, 1e3, 1e5, 1e6]
+    for x, df in itertools.product(sizes, dfs):
+        yield from ((x, df, ncp) for ncp in (x, 1.0, x / 2, 25.0))
+    for x, df, shift in itertools.product((0.4, 4.0, 90.0), dfs, (JUST_BELOW, JUST_ABOVE)):
+        yield from ((x, df, product / x * shift) for product in (16.0, 1e8))
+    yield from [(0.0, 3.0, 2.0), (5.0, 3.0, 0.0), (0.0, 1.0, 0.0)]
+
+
+def f_rows() -> Iterator[Row]:
+    """F, df1, df2, ncp."""
+    sizes = [1e-6, 0.1, 0.5, 1.0, 2.0, 4.0, 10.0, 50.0, 1e3, 1e5]
+    df1s = [0.6, 1.0, 1.7, 2.0, 3.0, 5.0, 10.0, 50.0, 300.0, 1000.0]
+    df2s = [1.0, 2.0, 5.0, 20.0, 57.3, 200.0, 1e4, 1e7]
+    for (i, f), (j, df1), df2 in itertools.product(enumerate(sizes), enumerate(df1s), df2s):
+        yield (f, df1, df2, df1 * f)
+        yield (f, df1, df2, (1.0, df1 * f / 2, 30.0)[(i + j) % 3])
+    for f, df1, df2 in itertools.product((0.7, 3.0), (2.0, 10.0, 300.0), (2.0, 57.3, 1e4)):
+        a, b = (df1 + df2) / 2, df1 / 2
+        modes = [mode * (b + mode) / (a + mode) for mode in (5, 15, 35, 80)]
+        for x in (0.05 * b / a, *modes, 200.0, (a + 15) ** 2):
+            ncp = 2 * x * (df2 + df1 * f) / (df1 * f)
+            yield from ((f, df1, df2, ncp * shift) for shift in (JUST_BELOW, JUST_ABOVE))
+
+
+def p_z_rows() -> Iterator[Row]:
+    """z, one-sided."""
+    sizes = (0.0, 1e-9, 1e-3, 0.5, 1.96, 5.0, 12.0, 37.6, 100.0, 1e4)
+    yield from ((sign * z, side) for z in sizes for sign in (1, -1) for side in (0, 1))
+
+
+def p_t_rows() -> Iterator[Row]:
+    """t, df, one-sided."""
+    sizes = (1e-8, 1e-3, 0.5, 0.7, 1.0, 2.1, 6.0, 9.0, 40.0, 1e4)
+    dfs = (1.0, 1.5, 3.7, 12.0, 30.0, 57.3, 500.0, 1e5, 1e7)
+    yield from ((t, df, 0) for t in sizes for df in dfs)
+    yield from ((sign * t, df, 1) for t in (1e-8, 0.5, 2.1, 40.0) for df in (1.0, 30.0, 1e7) for sign in (1, -1))
+
+
+def p_chi2_rows() -> Iterator[Row]:
+    """x, df."""
+    dfs = (0.5, 1.0, 2.0, 3.0, 10.0, 57.3, 1e3, 1e6)
+    for df in dfs:
+        yield from ((df * ratio, df) for ratio in (1e-3, 0.5, 0.99, 1.01, 1.4, 3.0, 20.0))
+        yield from ((df + distance * math.sqrt(2 * df), df) for distance in (2.0, 8.5, 9.5, 40.0))
+
+
+def p_f_rows() -> Iterator[Row]:
+    """F, df1, df2."""
+    sizes = (1e-3, 0.5, 0.95, 1.05, 1.5, 2.5, 10.0, 300.0, 1e5)
+    yield from itertools.product(sizes, (0.6, 1.0, 3.0, 10.0, 1000.0), (1.0, 5.0, 57.3, 1e3, 1e6))
+
+
+Source = tuple[Callable[..., mp.mpf], Callable[[], Iterator[Row]], tuple[str, ...]]
+SOURCES: dict[str, Source] = {
+    "log_lr_t": (oracle.log_lr_t, t_rows, ("t", "df", "ncp", "one_sided")),
+    "log_lr_z": (oracle.log_lr_z, z_rows, ("z", "ncp", "one_sided")),
+    "log_lr_chi2": (oracle.log_lr_chi2, chi2_rows, ("x", "df", "ncp")),
+    "log_lr_f": (oracle.log_lr_f, f_rows, ("f", "df1", "df2", "ncp")),
+    "log_p_t": (oracle.log_p_t, p_t_rows, ("t", "df", "one_sided")),
+    "log_p_z": (oracle.log_p_z, p_z_rows, ("z", "one_sided")),
+    "log_p_chi2": (oracle.log_p_chi2, p_chi2_rows, ("x", "df")),
+    "log_p_f": (oracle.log_p_f, p_f_rows, ("f", "df1", "df2")),
+}
+
+
+def main() -> None:
+    """Write all tables."""
+    TABLES.mkdir(exist_ok=True)
+    for name, (function, rows, columns) in SOURCES.items():
+        with (TABLES / f"{name}.csv").open("w", newline="") as file:
+            writer = csv.writer(file, lineterminator="\n")
+            writer.writerow([*columns, "result"])
+            for row in rows():
+                writer.writerow([*(repr(float(x)) for x in row), mp.nstr(function(*row), 25)])
+
+
+if __name__ == "__main__":
+    main()
