@@ -63,6 +63,22 @@ def test_changed_code_has_no_commit(repository: Path) -> None:
     assert origin("analysis/worms.py") == {"code": "analysis/worms.py"}
 
 
+def test_changed_code_has_no_commit_from_a_folder_below(repository: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    (repository / "analysis" / "worms.py").write_text("print('more')\n", encoding="utf-8")
+    monkeypatch.chdir(repository / "analysis")
+    assert origin("worms.py") == {"code": "analysis/worms.py"}
+
+
+def test_changes_of_other_code_do_not_count(repository: Path) -> None:
+    """The name of the file is taken as it is, although git would read a pattern in it."""
+    (repository / "analysis" / "w*.py").write_text("", encoding="utf-8")
+    git("add", ".")
+    git("commit", "--quiet", "--message", "Add a file with an odd name")
+    (repository / "analysis" / "worms.py").write_text("print('more')\n", encoding="utf-8")
+    expected = {"code": "analysis/w*.py", "commit": git("rev-parse", "HEAD")}
+    assert origin("analysis/w*.py") == expected
+
+
 def test_new_code_has_no_commit(repository: Path) -> None:
     (repository / "new [1].py").write_text("", encoding="utf-8")
     assert origin("new [1].py") == {"code": "new [1].py"}

@@ -89,6 +89,13 @@ def test_p_that_underflowed_becomes_a_bound() -> None:
     assert with_sides({"statistic": "chi2", "value": 5000.0, "df": 1, "p": 0.0})["p"] == "<1e-300"
 
 
+def test_p_that_underflowed_by_another_route() -> None:
+    """One library still gives a tiny number where another gives 0."""
+    tail = float(stats.norm.sf(37.5))
+    assert 0 < tail < 1e-300
+    assert with_sides({"statistic": "z", "value": 37.5, "p": 0.0})["p"] == "<1e-300"
+
+
 def test_sides_that_were_given_stay() -> None:
     test = {"statistic": "z", "value": -2.0, "p": float(stats.norm.cdf(-2.0)), "sides": 2}
     assert with_sides(test) == test
