@@ -161,7 +161,7 @@ def _explain(parsed: argparse.Namespace) -> int:
     if verdict.problems:
         _tell(account(verdict, _width()))
         return Exit.CANNOT_JUDGE
-    raise _Usage(f"there is no record {ascii(parsed.id)}; `gatecheck survey` lists those that there are")
+    raise _Usage(f"there is no record {parsed.id!a}; `gatecheck survey` lists those that there are")
 
 
 def _schema(parsed: argparse.Namespace) -> int:
@@ -181,7 +181,7 @@ def _start(parsed: argparse.Namespace) -> int:
 def _split_write(text: str) -> tuple[str, str]:
     form, equals, path = text.partition("=")
     if form not in FORMATS or not equals or not path:
-        raise _Usage(f"--write takes FORMAT=PATH with a format of {', '.join(FORMATS)}, not {ascii(text)}")
+        raise _Usage(f"--write takes FORMAT=PATH with a format of {', '.join(FORMATS)}, not {text!a}")
     return form, path
 
 
@@ -200,7 +200,7 @@ def _write(path: str, text: str) -> None:
     try:
         Path(path).write_bytes(text.encode("utf-8"))
     except OSError as error:
-        raise _Usage(f"cannot write {ascii(path)}: {error.strerror}") from None
+        raise _Usage(f"cannot write {path!a}: {error.strerror}") from None
 
 
 def _width() -> int:

@@ -17,7 +17,10 @@ _USUAL_RISK = 0.05
 _ERRS = {
     "observed-effect": "errs in favour of the claim: hardly any effect fits the data better than the one observed",
     "design-effect": "right if the effect is as planned; a smaller or larger true effect gives another figure",
-    "bound": "errs in favour of the claim: the most that a broad class of alternatives can give for this p",
+    "bound": (
+        "errs in favour of the claim: the most that alternatives spread smoothly about no effect give for this p "
+        "(a single one picked after the data can give more)"
+    ),
 }
 
 

@@ -52,7 +52,8 @@ def standing_policy(root: Path, named: str | None, base: str | None) -> Standing
         where = "" if base is None else f" at {git.safe(base)}"
         raise CannotJudge(f"there is no policy {git.safe(named)}{where}", "name a policy file that is there")
     note = f"No {POLICY_FILE} is here, so the built-in starting policy applies; `gatecheck start` writes one."
-    return Standing(read_own_policy(STARTING_POLICY)[0], _used(STARTING_POLICY, _digest_of_starting()), (), (*notes, note))
+    policy, _ = read_own_policy(STARTING_POLICY)
+    return Standing(policy, _used(STARTING_POLICY, _digest_of_starting()), (), (*notes, note))
 
 
 def read_own_policy(document: Any) -> tuple[Policy | None, tuple[Fault, ...]]:

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass
+from functools import partial
 
 from gatecheck.model.shown import percent
-from gatecheck.model.verdict import Figures, Finding, Judged, Verdict
+from gatecheck.model.verdict import Figures, Finding, Judged, Problem, Verdict
 from gatecheck.render import order, words
 from gatecheck.render.text import cut, markdown, plain
 
@@ -31,26 +32,30 @@ _FIGURES_HEAD = (
 )
 
 
+#: An entry is written only where there may be room for it: what stands above all seconds, and its second text.
+_Entry = Callable[[], tuple[str, str]]
+
+
 @dataclass(frozen=True, slots=True)
 class _Section:
     """Entries between a head and a foot; the first texts of all entries stand before their second ones."""
 
     head: str
-    entries: list[tuple[str, str]]
+    entries: list[_Entry]
     foot: str = ""
 
-    def text(self, kept: int) -> str:
-        shown = self.entries[:kept]
-        first, second = "".join(entry[0] for entry in shown), "".join(entry[1] for entry in shown)
-        return f"{self.head}{first}\n{second}{self.foot}" if shown else ""
-
-    def that_fit(self, room: int) -> int:
+    def that_fit(self, room: int) -> tuple[str, int]:
+        """Return the text of at most `room` bytes, and the number of entries in it."""
         room -= _size(self.head) + _size(self.foot) + 1
-        for kept, entry in enumerate(self.entries):
-            room -= _size(entry[0]) + _size(entry[1])
+        shown: list[tuple[str, str]] = []
+        for entry in self.entries:
+            texts = entry()
+            room -= _size(texts[0]) + _size(texts[1])
             if room < 0:
-                return kept
-        return len(self.entries)
+                break
+            shown.append(texts)
+        first, second = "".join(texts[0] for texts in shown), "".join(texts[1] for texts in shown)
+        return (f"{self.head}{first}\n{second}{self.foot}" if shown else ""), len(shown)
 
 
 def summary(verdict: Verdict, budget: int = BUDGET) -> str:
@@ -65,11 +70,11 @@ def summary(verdict: Verdict, budget: int = BUDGET) -> str:
     room = budget - _size(head) - _size(tail) - _size(_left_out(entries))
     texts, shown = [], 0
     for section in sections:
-        kept = section.that_fit(room)
-        texts.append(section.text(kept))
+        text, kept = section.that_fit(room)
+        texts.append(text)
         shown += kept
         # What matters less must not stand where what matters more had no room.
-        room = room - _size(texts[-1]) if kept == len(section.entries) else 0
+        room = room - _size(text) if kept == len(section.entries) else 0
     return head + "".join(texts) + tail + _left_out(entries - shown)
 
 
@@ -79,13 +84,10 @@ def _sections(verdict: Verdict) -> list[_Section]:
     return [
         _Section(
             "### Could not be read or judged\n\n",
-            [
-                (_line(f"{words.where(one.at)}: {words.problem(one)}"), "")
-                for one in order.problems_by_place(verdict.problems)
-            ],
+            [partial(_problem, one) for one in order.problems_by_place(verdict.problems)],
         ),
-        _Section((_HOW_TO_READ if explained else "") + _BLOCKED_HEAD, [(_row(one), _held(one)) for one in held]),
-        _Section("### Notes\n\n", [(_line(note), "") for note in verdict.notes]),
+        _Section((_HOW_TO_READ if explained else "") + _BLOCKED_HEAD, [partial(_held, one) for one in held]),
+        _Section("### Notes\n\n", [partial(_line, note) for note in verdict.notes]),
         _folded("Waived", ((one, order.waived_findings(one)) for one in order.with_waiver(verdict))),
         _folded(
             "Noted, without effect on the verdict",
@@ -96,40 +98,48 @@ def _sections(verdict: Verdict) -> list[_Section]:
         _folded_results("Reported without a claim", order.without_claim(verdict)),
         _details(
             "The evidence and its assumptions",
-            [(_figures(one, one.evidence), "") for one in order.by_place(verdict.judged) if one.evidence],
+            [partial(_figures, one, one.evidence) for one in order.by_place(verdict.judged) if one.evidence],
             _FIGURES_HEAD,
         ),
     ]
 
 
-def _details(title: str, entries: list[tuple[str, str]], head: str = "") -> _Section:
+def _details(title: str, entries: list[_Entry], head: str = "") -> _Section:
     opening = f"<details>\n<summary>{title} ({len(entries)})</summary>\n\n{head}"
     return _Section(opening, entries, "</details>\n\n")
 
 
 def _folded(title: str, found: Iterable[tuple[Judged, list[Finding]]]) -> _Section:
-    said = [f"{one.id}: {words.found(finding)}" for one, findings in found for finding in findings]
-    return _details(title, [(_line(text), "") for text in said])
+    return _details(title, [partial(_finding_of, one, finding) for one, findings in found for finding in findings])
 
 
 def _folded_results(title: str, judged: list[Judged]) -> _Section:
-    return _details(title, [(_line(f"{one.id}: {_result(one)}"), "") for one in judged])
+    return _details(title, [partial(_result, one) for one in judged])
 
 
-def _result(one: Judged) -> str:
+def _line(text: str) -> tuple[str, str]:
+    return f"- {_md(text)}\n", ""
+
+
+def _problem(one: Problem) -> tuple[str, str]:
+    return _line(f"{words.where(one.at)}: {words.problem(one)}")
+
+
+def _finding_of(one: Judged, finding: Finding) -> tuple[str, str]:
+    return _line(f"{one.id}: {words.found(finding)}")
+
+
+def _result(one: Judged) -> tuple[str, str]:
     claim = f"{words.sentence(one.claim)} " if one.claim is not None else ""
-    return f"{claim}{words.result(one)}"
-
-
-def _line(text: str) -> str:
-    return f"- {_md(text)}\n"
+    return _line(f"{one.id}: {claim}{words.result(one)}")
 
 
 def _row(one: Judged) -> str:
-    risk, needed = "unknown", "unknown"
+    risk = needed = words.UNKNOWN
     if one.evidence is not None:
         risk, needed = _risk(one, one.evidence), _needed(one, one.evidence)
-        risk += f", at a prior of {words.probability(one.evidence.prior)}"
+        # A risk without its prior misleads.
+        risk += "" if risk == words.UNKNOWN else f", at prior {words.prior(one.evidence)}"
     return _cells([f"{one.claim or 'Nothing is claimed.'} ({one.id})", one.result, risk, needed, _allowed(one)])
 
 
@@ -156,11 +166,11 @@ def _allowed(one: Judged) -> str:
     return "; ".join(allowed)
 
 
-def _held(one: Judged) -> str:
+def _held(one: Judged) -> tuple[str, str]:
     state = "Cannot be decided" if one.standing == "undecided" else "Short of the policy"
     claim = f"Claim: {words.sentence(one.claim or words.NO_CLAIM)} In {words.places(one)}."
     findings = "".join(map(_finding, order.blocking_findings(one)))
-    return f"### {_md(one.id)}\n\n{state}. {_md(claim)}\n\n{findings}\n"
+    return _row(one), f"### {_md(one.id)}\n\n{state}. {_md(claim)}\n\n{findings}\n"
 
 
 def _finding(finding: Finding) -> str:
@@ -168,17 +178,17 @@ def _finding(finding: Finding) -> str:
     return f"- **{_md(words.rule_words(finding.rule))}:** {_md(said)}\n"
 
 
-def _figures(one: Judged, figures: Figures) -> str:
-    return _cells(
-        [
-            one.id,
-            words.alternative_words(figures.alternative),
-            words.probability(figures.prior) + (f" ({figures.prior_from})" if figures.prior_from else ""),
-            words.likelihood_ratio(figures.log_likelihood_ratio),
-            _risk(one, figures),
-            _needed(one, figures),
-        ],
-    )
+def _figures(one: Judged, figures: Figures) -> tuple[str, str]:
+    origin = f" ({figures.prior_from})" if figures.prior_from else ""
+    cells = [
+        one.id,
+        words.alternative_words(figures.alternative),
+        words.prior(figures) + origin,
+        words.likelihood_ratio(figures.log_likelihood_ratio),
+        _risk(one, figures),
+        _needed(one, figures),
+    ]
+    return _cells(cells), ""
 
 
 def _closing(verdict: Verdict) -> str:

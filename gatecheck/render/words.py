@@ -11,6 +11,7 @@ from gatecheck.render.order import blocked, blocking_findings, place_key
 RISK_RULE = "false-positive-risk"
 PRIOR_RULE = "prior-needed"
 
+UNKNOWN = "unknown"
 NO_CLAIM = "none; this rule holds for every result that is reported"
 NOT_CHECKED = (
     "Not checked: the quality of the data, whether the design supports cause and effect, blinding, "
@@ -24,10 +25,10 @@ CAUTION = (
 )
 
 _ALTERNATIVES = {
-    "observed-effect": "the effect as observed",
-    "design-effect": "the effect that the study was designed to find",
-    "default-prior": "a default prior on the size of the effect",
-    "bound": "the alternative that favours the claim most",
+    "observed-effect": "against the effect as observed",
+    "design-effect": "against the effect that the study was designed to find",
+    "bound": "by the calibration -e p ln p of its p-value",
+    "none": "against no alternative",
 }
 _OUTCOMES = {
     "met": "met",
@@ -183,11 +184,16 @@ def limit_of(one: Judged, rule: str) -> float | None:
 
 def probability(value: float | None, limit: float | None = None) -> str:
     """Return a probability in percent, or that it is unknown."""
-    return "unknown" if value is None else percent(value, limit)
+    return UNKNOWN if value is None else percent(value, limit)
+
+
+def prior(figures: Figures) -> str:
+    """Return the prior as a probability, the way in which policies and records give it."""
+    return UNKNOWN if figures.prior is None else f"{figures.prior:.4g}"
 
 
 def alternative_words(alternative: str) -> str:
-    """Return the alternative in words."""
+    """Return in words against what the evidence was weighed."""
     return _ALTERNATIVES.get(alternative, alternative)
 
 
@@ -197,14 +203,14 @@ def risk(one: Judged) -> str:
     if figures is None or figures.false_positive_risk is None:
         return ""
     value = percent(figures.false_positive_risk, limit_of(one, RISK_RULE))
-    chosen = f"prior {probability(figures.prior)}, against {alternative_words(figures.alternative)}"
+    chosen = f"prior {prior(figures)}, {alternative_words(figures.alternative)}"
     return f"false positive risk {value} ({chosen})"
 
 
 def likelihood_ratio(log_ratio: float | None) -> str:
     """Return a natural log likelihood ratio as odds in words, with the log itself."""
     if log_ratio is None or math.isnan(log_ratio):
-        return "unknown"
+        return UNKNOWN
     if abs(log_ratio) < _EVEN:
         favours = "about even"
     else:
@@ -224,8 +230,8 @@ def _odds(log_ratio: float) -> str:
 
 def assumptions(figures: Figures) -> str:
     """Return on what the figures rest."""
-    origin = f" ({figures.prior_from})" if figures.prior_from else ""
-    return f"against {alternative_words(figures.alternative)}, prior {probability(figures.prior)}{origin}"
+    origin = f", set by the {figures.prior_from}" if figures.prior_from else ""
+    return f"{alternative_words(figures.alternative)}, prior {prior(figures)}{origin}"
 
 
 def policy_used(policy: PolicyUsed | None) -> str:

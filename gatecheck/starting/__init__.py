@@ -26,7 +26,7 @@ def start(folder: Path) -> tuple[str, ...]:
         `folder` is no folder, or cannot be written.
     """
     if not folder.is_dir():
-        raise CannotJudge(f"{ascii(str(folder))} is not a folder", "name the folder to start in")
+        raise CannotJudge(f"{str(folder)!a} is not a folder", "name the folder to start in")
     done = tuple(_write(folder / place, place, _TEMPLATES / name) for place, name in FILES.items())
     return (*done, "Next: `gatecheck weigh`, then put the records of your own analyses in place of the example.")
 

@@ -48,12 +48,8 @@ def n_to_stand(  # noqa: PLR0913, PLR0917  # one argument a column of the result
     ndarray of float64
         Broadcast shape; a whole number, or nan where no number up to 1e9 serves or an input is missing.
     """
-    columns = np.broadcast_arrays(
-        *(
-            np.asarray(column, dtype=np.float64)
-            for column in (kind, value, df1, df2, n_total, groups, target_log_lr, one_sided)
-        )
-    )
+    given = (kind, value, df1, df2, n_total, groups, target_log_lr, one_sided)
+    columns = np.broadcast_arrays(*(np.asarray(column, dtype=np.float64) for column in given))
     with np.errstate(all="ignore"):
         least = _bisect(*(column.ravel() for column in columns))
     return least.reshape(columns[0].shape)

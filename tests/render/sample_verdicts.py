@@ -15,7 +15,7 @@ DRAINAGE = Judged(
         alternative="observed-effect",
         log_likelihood_ratio=1.6213,
         prior=0.5,
-        prior_from="the policy",
+        prior_from="policy",
         false_positive_risk=0.1650,
         prior_needed=0.7897,
         note="The effect as observed is a favourable choice; against the designed effect the risk is higher.",
@@ -46,8 +46,8 @@ DRAINAGE = Judged(
     ),
     also_at=(Place("notebooks/drainage.ipynb", 210, 7, 1),),
     alternatives=(
-        Figures("design-effect", 1.3403, 0.5, "the policy", 0.2074, 0.83, ""),
-        Figures("default-prior", 0.708, 0.5, "the policy", 0.33, 0.9, ""),
+        Figures("design-effect", 1.3403, 0.5, "policy", 0.2074, 0.83, ""),
+        Figures("bound", 0.708, 0.5, "policy", 0.33, 0.9, ""),
     ),
 )
 LIMING = Judged(
@@ -55,7 +55,7 @@ LIMING = Judged(
     at=Place("results/liming.json", 2),
     claim="Liming raises soil pH.",
     result="two-sample t(58) = 6.1, p < 0.0001; mean difference 0.61 (95 % interval 0.41 to 0.81)",
-    evidence=Figures("observed-effect", 15.2, 0.5, "the policy", 2.5e-7, 4.8e-6, ""),
+    evidence=Figures("observed-effect", 15.2, 0.5, "policy", 2.5e-7, 4.8e-6, ""),
     findings=(Finding("false-positive-risk", "met", "block", 2.5e-7, 0.05),),
 )
 MULCH = Judged(
@@ -63,7 +63,7 @@ MULCH = Judged(
     at=Place("results/mulch.json", 2),
     claim="Mulch keeps topsoil moister than bare ground.",
     result="Welch t(41.3) = 3.9, p = 0.0004",
-    evidence=Figures("design-effect", 6.1, 0.3, "the plan plans/mulch.yaml", 0.0022, 0.04, ""),
+    evidence=Figures("design-effect", 6.1, 0.3, "record", 0.0022, 0.04, ""),
     findings=(Finding("false-positive-risk", "met", "block", 0.0022, 0.05),),
 )
 ROWS = Judged(
@@ -71,7 +71,7 @@ ROWS = Judged(
     at=Place("results/rows.json", 2),
     claim="Wider rows lower mildew",
     result="rank sum U = 88, p = 0.02",
-    evidence=Figures("observed-effect", None, 0.5, "the policy", None, None, "A rank sum has no such ratio."),
+    evidence=Figures("none", None, 0.5, "policy", None, None, "A rank sum has no such ratio."),
     findings=(
         Finding(
             "false-positive-risk",
@@ -89,7 +89,7 @@ SHADE = Judged(
     at=Place("results/shade.json", 2),
     claim="Shade lowers yield.",
     result="two-sample t(20) = 2.3, p = 0.032",
-    evidence=Figures("observed-effect", 1.7, 0.5, "the policy", 0.15, 0.78, ""),
+    evidence=Figures("observed-effect", 1.7, 0.5, "policy", 0.15, 0.78, ""),
     findings=(
         Finding(
             "false-positive-risk",

@@ -5,7 +5,7 @@ from __future__ import annotations
 from pathlib import Path
 
 import pytest
-from sample_verdicts import BOTH, BROKEN, BY_NAME, DRAINAGE, FALLS_SHORT, OLD, POLICY
+from render.sample_verdicts import BOTH, BROKEN, BY_NAME, DRAINAGE, FALLS_SHORT, OLD, POLICY
 
 from gatecheck.model.found import Found, Scan
 from gatecheck.model.record import Record
@@ -79,7 +79,7 @@ def test_explain_a_record_without_claim_message_and_origin_of_the_prior() -> Non
         "  Claim    nothing claimed\n"
         "  Place    a.json, line 1\n\n"
         "Evidence\n\n"
-        "  Against the alternative that favours the claim most, prior unknown:\n"
+        "  By the calibration -e p ln p of its p-value, prior unknown:\n"
         "  Ratio    likelihood ratio unknown\n"
         "  Risk     false positive risk unknown; prior needed unknown\n\n"
         "Rules\n\n"

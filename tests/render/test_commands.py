@@ -5,7 +5,7 @@ from __future__ import annotations
 from pathlib import Path
 
 import pytest
-from sample_verdicts import BROKEN, BY_NAME, OLD, POLICY
+from render.sample_verdicts import BROKEN, BY_NAME, OLD, POLICY
 
 from gatecheck.model.verdict import Enforce, Finding, Judged, Outcome, Place, Problem, Verdict
 from gatecheck.render import RENDERERS

@@ -8,7 +8,7 @@ from typing import Any
 
 import jsonschema
 import pytest
-from sample_verdicts import BOTH, BY_NAME, DRAINAGE, FALLS_SHORT, OLD, POLICY, SLOPE
+from render.sample_verdicts import BOTH, BY_NAME, DRAINAGE, FALLS_SHORT, OLD, POLICY, SLOPE
 
 from gatecheck.model.verdict import Figures, Finding, Judged, Place, Verdict
 from gatecheck.render import RENDERERS

@@ -6,7 +6,7 @@ import re
 from pathlib import Path
 
 import pytest
-from sample_verdicts import BROKEN, BY_NAME, DRAINAGE, POLICY
+from render.sample_verdicts import BROKEN, BY_NAME, DRAINAGE, POLICY
 
 from gatecheck.model.verdict import Finding, Judged, Place, Problem, Verdict
 from gatecheck.render import RENDERERS
@@ -32,7 +32,7 @@ def test_the_table_says_what_the_policy_allows() -> None:
     assert DRAINAGE.evidence is not None
     one = Judged("a", Place("a.json"), "It grows.", "t = 2", DRAINAGE.evidence, findings)
     assert (
-        "| It grows. (a) | t = 2 | 17 %, at a prior of 50 % | 79 % | risk up to 5 %; numbers agree: see below |\n"
+        "| It grows. (a) | t = 2 | 17 %, at prior 0.5 | 79 % | risk up to 5 %; numbers agree: see below |\n"
     ) in summary(Verdict(POLICY, (one,)))
 
 

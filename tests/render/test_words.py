@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 import pytest
-from sample_verdicts import BROKEN, DRAINAGE, OLD, POLICY, ROWS, SLOPE, WEEDS
+from render.sample_verdicts import BROKEN, DRAINAGE, OLD, POLICY, ROWS, SLOPE, WEEDS
 
 from gatecheck.model.verdict import Finding, Judged, Outcome, Place, PolicyUsed, Problem, Verdict
 from gatecheck.render import words
@@ -84,7 +84,7 @@ def test_places() -> None:
 
 
 def test_a_risk_comes_with_its_assumptions_or_not_at_all() -> None:
-    assert words.risk(DRAINAGE) == "false positive risk 17 % (prior 50 %, against the effect as observed)"
+    assert words.risk(DRAINAGE) == "false positive risk 17 % (prior 0.5, against the effect as observed)"
     assert not words.risk(ROWS)
     assert not words.risk(SLOPE)
 

@@ -16,7 +16,8 @@ DEEPEST = 64
 MEDIA_TYPE = "application/vnd.gatecheck.record+json"
 
 _LONGEST_WHOLE = 400
-_CONFLICT = re.compile(r"^<{7} .*?^>{7} ", re.MULTILINE | re.DOTALL)
+_OURS = re.compile(r"^<{7} ", re.MULTILINE)
+_THEIRS = re.compile(r"^>{7} ", re.MULTILINE)
 _SAVE = "save the file as UTF-8"
 _UNKNOWN = "leave the field out where it is unknown"
 
@@ -81,10 +82,10 @@ def decoded(content: bytes) -> str:
 
 def conflict(text: str) -> Broken | None:
     """Return where `text` holds an unresolved merge, if it does."""
-    found = _CONFLICT.search(text)
-    if found is None:
+    ours = _OURS.search(text)
+    if ours is None or _THEIRS.search(text, ours.end()) is None:
         return None
-    line = text.count("\n", 0, found.start()) + 1
+    line = text.count("\n", 0, ours.start()) + 1
     return Broken(line, "holds the conflict markers of a merge", "resolve the merge, and take the markers out")
 
 

@@ -1,0 +1,33 @@
+"""Write the expected texts of the sample verdicts anew; look at the difference before you commit it.
+
+Run `python tests/render/make_expected.py` after a format changed on purpose.
+"""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+
+sys.path.insert(0, str(Path(__file__).parents[1]))
+
+from render.sample_verdicts import BY_NAME, DRAINAGE, FALLS_SHORT  # noqa: E402  # found by the path set above
+
+from gatecheck.render import RENDERERS, account, explain  # noqa: E402
+
+EXPECTED = Path(__file__).parent / "expected"
+
+
+def texts() -> dict[str, str]:
+    """Every expected text by the name of its file."""
+    made = {"explain-drainage.txt": explain(FALLS_SHORT, DRAINAGE.id, 80)}
+    for name, verdict in BY_NAME.items():
+        made |= {f"account-{name}-{width}.txt": account(verdict, width) for width in (80, 140)}
+        made[f"summary-{name}.md"] = RENDERERS["summary"](verdict)
+        made[f"annotations-{name}.txt"] = RENDERERS["annotations"](verdict)
+    return made
+
+
+if __name__ == "__main__":
+    for file, text in texts().items():
+        if (EXPECTED / file).exists():
+            (EXPECTED / file).write_text(text, encoding="utf-8")
