@@ -39,6 +39,7 @@ _OF_ANOTHER_REPOSITORY = {
 }
 _OWNER = re.compile(r"detected dubious ownership in repository at '([^\n]*)'")
 _LISTED = re.compile(r"(?:\?|([A-Z]) ([0-7]{6}) ([0-9a-f]+) ([0-3])(?=\t))[ \t]([^\0]+)\0")
+_CLOSED = "could not open directory"
 _NO_REPOSITORY = "fatal: not a git repository (or any"
 _LONGEST = 200
 _CHUNK = 1 << 20
@@ -98,7 +99,10 @@ def list_files(folder: Path) -> tuple[Entry, ...]:
         Git fails.
     """
     command = ("ls-files", "-z", "-t", "-s", "-c", "-o", "--exclude-standard")
-    output = os.fsdecode(_checked(folder, "ls-files", *_run(folder, *command)))
+    status, listed, error = _run(folder, *command)
+    output = os.fsdecode(_checked(folder, "ls-files", status, listed, error))
+    if _CLOSED in error:  # of which git only warns, and leaves its files out
+        raise CannotJudge(f"git cannot open every folder of {safe(str(folder))}", "mend their permissions")
     entries: dict[str, Entry] = {}
     for tag, mode, object_id, stage, path in _LISTED.findall(output):
         if not tag:

@@ -3,6 +3,11 @@
 from __future__ import annotations
 
 import pytest
+from hypothesis import settings
+
+# How long an example takes on a busy machine says nothing about what it shows.
+settings.register_profile("without a deadline", deadline=None)
+settings.load_profile("without a deadline")
 
 
 @pytest.fixture(autouse=True)

@@ -74,7 +74,10 @@ def test_the_formats_offered_are_those_that_there_are() -> None:
 @pytest.mark.parametrize(
     ("arguments", "sentence"),
     [
-        (["weigh", ".", "--write", "xml=a"], "--write takes FORMAT=PATH with a format of json, summary, annotations"),
+        (
+            ["weigh", ".", "--write", "xml=a"],
+            "--write takes FORMAT=PATH with a format of json, summary, annotations",
+        ),
         (["weigh", ".", "--write", "json"], "not 'json'"),
         (["weigh", ".", "--write", "json="], "not 'json='"),
         (["weigh", ".", "--only-changed"], "--only-changed needs --base: say since which revision"),
@@ -173,9 +176,7 @@ def test_schema_prints_the_published_schema(capsys: pytest.CaptureFixture[str], 
     assert (status, json.loads(out)["title"]) == (0, f"{kind}/1")
 
 
-def test_start_writes_a_policy_and_a_record_that_stand(
-    tmp_path: Path, capsys: pytest.CaptureFixture[str]
-) -> None:
+def test_start_writes_a_policy_and_a_record_that_stand(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     """A repository that was just started passes, and a second start overwrites nothing."""
     status, out, _ = said(capsys, "start", str(tmp_path))
     assert (status, out.splitlines()[:2]) == (
@@ -247,7 +248,9 @@ def test_the_width_follows_a_terminal_within_limits(monkeypatch: pytest.MonkeyPa
     assert widths == [40, 100, 140]
 
 
-def test_the_module_runs_as_the_command(monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]) -> None:
+def test_the_module_runs_as_the_command(
+    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
     monkeypatch.setattr(sys, "argv", ["gatecheck", "--version"])
 
     with pytest.raises(SystemExit, match="0"):

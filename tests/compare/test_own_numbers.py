@@ -25,8 +25,6 @@ def with_test(**test: Any) -> Document:
     return drainage(**BARE, test={"name": "a test", **test})
 
 
-
-
 @pytest.mark.parametrize(
     "test",
     [
@@ -296,12 +294,10 @@ def test_a_figure_changed_beyond_rounding_is_caught(
     """Every one of 400 results with one figure changed is found (p where it stays a probability)."""
     part, name = field.split("__")
     faulty = [
-        drainage(
-            **{
-                **{key: record[key] for key in ("id", "test", "estimate")},
-                part: {**record[part], name: record[part][name] * factor},
-            }
-        )
+        drainage(**{
+            **{key: record[key] for key in ("id", "test", "estimate")},
+            part: {**record[part], name: record[part][name] * factor},
+        })
         for record in real_results
         if name != "p" or record[part][name] * factor <= 1
     ]

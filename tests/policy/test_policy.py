@@ -85,7 +85,10 @@ def applied(overrides: list[Document], path: str = "results/a.json", **record: A
             ("for[0].evidence.alternative", "asks for default-prior, which this version does not weigh", None),
         ),
         ({"evidence": {"prior": 0}}, ("evidence.prior", "is 0, outside its range", None)),
-        ({"at_least": "1"}, ("at_least", "is the text '1', where only a number is meant", "write 1 without quotes")),
+        (
+            {"at_least": "1"},
+            ("at_least", "is the text '1', where only a number is meant", "write 1 without quotes"),
+        ),
         ({"gatecheck": "record/1"}, ("gatecheck", "is 'record/1'", "known: policy/1")),
     ],
 )

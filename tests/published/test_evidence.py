@@ -456,7 +456,7 @@ R_EXAMPLE_F = [
 
 
 @pytest.mark.parametrize(("name", "f", "df1", "df2", "p", "printed"), R_EXAMPLE_F)
-def test_published_p_values_of_f(  # noqa: PLR0917  # one argument a column
+def test_published_p_values_of_f(  # one argument a column
     name: str, f: float, df1: float, df2: float, p: float, printed: float | None
 ) -> None:
     result = float(np.exp(weigh.log_p_f(f, df1, df2)))

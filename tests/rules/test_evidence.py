@@ -50,9 +50,7 @@ def made(**changes: Any) -> Document:
         ),
     ],
 )
-def test_each_statistic_is_weighed_at_its_observed_effect(
-    tmp_path: Path, test: Document, expected: Any
-) -> None:
+def test_each_statistic_is_weighed_at_its_observed_effect(tmp_path: Path, test: Document, expected: Any) -> None:
     figures = evidence(tmp_path, made(test={"name": "a test", **test}))
 
     assert figures["alternative"] == "observed-effect"
@@ -116,8 +114,10 @@ def test_a_statistic_is_recovered_from_its_raw_p(tmp_path: Path, test: Document,
         ),
         # A raw effect is counted in standard errors, reported or implied.
         (
-            {"estimate": {"measure": "d", "value": 4.2, "unit": "g", "standard_error": 1.9},
-             "alternative": {"effect": 5, "scale": "raw"}},
+            {
+                "estimate": {"measure": "d", "value": 4.2, "unit": "g", "standard_error": 1.9},
+                "alternative": {"effect": 5, "scale": "raw"},
+            },
             5 / 1.9,
         ),
         (
@@ -141,7 +141,7 @@ def test_a_statistic_is_recovered_from_its_raw_p(tmp_path: Path, test: Document,
             (math.log(2) / 0.3) ** 2,
         ),
     ],
-)  # fmt: skip
+)
 def test_the_planned_effect_becomes_a_noncentrality(tmp_path: Path, changes: Document, ncp: float) -> None:
     """Common definitions of standardised effects (Cohen 1988, from memory)."""
     record = drainage(**{"estimate": ..., **changes})
@@ -178,8 +178,18 @@ def test_the_first_alternative_that_the_record_allows_is_taken(tmp_path: Path) -
 @pytest.mark.parametrize(
     ("changes", "policy", "why", "advice"),
     [
-        ({"test": ...}, POLICY, "the record gives neither a statistic nor a p-value", "Give test.statistic, value, df and p."),
-        ({"test": {"name": "t"}}, POLICY, "the record gives neither a statistic nor a p-value", "Give test.statistic, value, df and p."),
+        (
+            {"test": ...},
+            POLICY,
+            "the record gives neither a statistic nor a p-value",
+            "Give test.statistic, value, df and p.",
+        ),
+        (
+            {"test": {"name": "t"}},
+            POLICY,
+            "the record gives neither a statistic nor a p-value",
+            "Give test.statistic, value, df and p.",
+        ),
         (
             {"test": {"name": "t", "statistic": "t", "df": 34, "p": 0}},
             POLICY,

@@ -6,9 +6,9 @@ from pathlib import Path
 from typing import Any
 
 import pytest
-from support import POLICY, changed, drainage, judge
+from support import POLICY, Document, changed, drainage, judge
 
-RULE = {"reported-in-full": {}}
+RULE: Document = {"reported-in-full": {}}
 IN_FULL = changed(POLICY, rules=RULE)
 
 
@@ -58,7 +58,13 @@ def test_what_is_missing_is_named_with_its_field(
         {"sample__n": ...},
         {"estimate__scale": "log", "estimate__unit": ..., "estimate__null": 1},
         {
-            "test": {"name": "one-way analysis of variance", "statistic": "F", "value": 4.76, "df": [2, 45], "p": 0.0133},
+            "test": {
+                "name": "one-way analysis of variance",
+                "statistic": "F",
+                "value": 4.76,
+                "df": [2, 45],
+                "p": 0.0133,
+            },
             "estimate": ...,
         },
         {"test": {"name": "chi-squared", "statistic": "chi2", "value": 7.81, "df": 3, "p": 0.05}, "estimate": ...},

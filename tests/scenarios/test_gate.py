@@ -66,13 +66,17 @@ def test_an_unreadable_record_wins_over_one_that_falls_short_and_both_are_told(t
 @pytest.mark.parametrize(
     ("text", "line", "message"),
     [
-        ("gatecheck: policy/1\nrules:\n  false-positive-risk: {limit: 5}\n", 3, "rules.false-positive-risk.limit is 5, outside its range"),
+        (
+            "gatecheck: policy/1\nrules:\n  false-positive-risk: {limit: 5}\n",
+            3,
+            "rules.false-positive-risk.limit is 5, outside its range",
+        ),
         ("gatecheck: policy/1\nrules: [\n", 3, None),
         ("- 1\n", 1, "the policy is a list, not an object"),
         ("gatecheck: policy/1\n---\ngatecheck: policy/1\n", 1, "holds 2 documents"),
         ("", 1, None),
     ],
-)  # fmt: skip
+)
 def test_a_broken_policy_judges_nothing(tmp_path: Path, text: str, line: int, message: str | None) -> None:
     write_tree(tmp_path, drainage(), policy=None)
     (tmp_path / "gatecheck.yaml").write_text(text, encoding="utf-8")
@@ -228,9 +232,7 @@ def test_no_order_of_files_changes_a_verdict(tmp_path: Path) -> None:
     (tmp_path / "alone").mkdir()
     (tmp_path / "among").mkdir()
     alone = judge(tmp_path / "alone", drainage()).claim()
-    others = [
-        drainage(id=f"o/{number}", test__value=1 + number, test__p=..., estimate=...) for number in range(8)
-    ]
+    others = [drainage(id=f"o/{number}", test__value=1 + number, test__p=..., estimate=...) for number in range(8)]
     among = judge(tmp_path / "among", *others, drainage()).claim()
 
     assert {**among, "at": None} == {**alone, "at": None}

@@ -59,7 +59,7 @@ def _faulty(random_: random.Random) -> Any:
         if isinstance(inner, dict | list) and inner and random_.random() < 0.8:
             place = inner
             continue
-        odd = [None, True, -1, 0, 0.5, 1, 36.0, 2.5, "x", "", "0.5", "<0.001", [], {}, [1, 2], ["a"]]
+        odd: list[Any] = [None, True, -1, 0, 0.5, 1, 36.0, 2.5, "x", "", "0.5", "<0.001", [], {}, [1, 2], ["a"]]
         place[key] = random_.choice(odd)
         return document
 
@@ -86,7 +86,10 @@ def test_reader_and_schema_agree_on_generated_records() -> None:
         ({"rules": {"no-such-rule": {}}}, False),
         ({"rules": {"numbers-agree": None}}, True),
         ({"at_least": -1}, False),
-        ({"for": [{"match": {"status": "exploratory"}, "rules": {"false-positive-risk": {"enforce": "note"}}}]}, True),
+        (
+            {"for": [{"match": {"status": "exploratory"}, "rules": {"false-positive-risk": {"enforce": "note"}}}]},
+            True,
+        ),
         ({"for": [{"rules": {}}]}, False),
         ({"evidence": {"prior": 1}}, False),
     ],

@@ -110,7 +110,10 @@ def test_all_faults_are_told_at_once() -> None:
             {"provenance": {"software": []}},
             ("provenance.software", "is a list, not an object", "write keys with their values"),
         ),
-        ({"gatecheck": "record/9"}, ("gatecheck", "is 'record/9'", "the nearest known one is record/1 (known: record/1)")),
+        (
+            {"gatecheck": "record/9"},
+            ("gatecheck", "is 'record/9'", "the nearest known one is record/1 (known: record/1)"),
+        ),
     ],
 )
 def test_each_fault_says_what_to_do(changes: dict[str, Any], fault: tuple[str, str, str]) -> None:

@@ -51,7 +51,7 @@ def test_chi_squared_and_its_p_value_are_inverse(df: float) -> None:
 @pytest.mark.parametrize("df2", [1.0, 3.0, 57.3, 1e3, 1e6, np.inf])
 def test_f_and_its_p_value_are_inverse(df1: float, df2: float) -> None:
     f = weigh.f_from_log_p(LOG_P, df1, df2)
-    assert_returns(f, weigh.log_p_f(np.where(np.isfinite(f), f, 1.0), df1, df2), 1e-12)
+    assert_returns(f, weigh.log_p_f(np.where(np.isfinite(f), f, 1.0), df1, df2), 1e-10)
 
 
 @given(t=st.floats(1e-6, 1e4), df=st.floats(1, 1e7), one_sided=st.booleans())
