@@ -151,9 +151,7 @@ def _explain(parsed: argparse.Namespace) -> int:
     from gatecheck.gate import Request, check  # noqa: PLC0415
     from gatecheck.render import account, explain  # noqa: PLC0415
 
-    request = Request(
-        Path(parsed.folder), _policy_path(parsed), parsed.base, explain=frozenset([parsed.id])
-    )
+    request = Request(Path(parsed.folder), _policy_path(parsed), parsed.base, explain=frozenset([parsed.id]))
     verdict = check(request)
     if any(one.id == parsed.id for one in verdict.judged):
         _tell(explain(verdict, parsed.id, _width()))

@@ -62,7 +62,8 @@ def _check(request: Request, standing: Standing, policy: Policy) -> Verdict:
     table = _table(tree, policy)
     explained = frozenset(row for row, one in enumerate(tree.found) if one.record.id in request.explain)
     findings = judge_all(RULES, table, explain=explained)
-    unchanged = _unchanged_since_base(request, policy, tree.found) if request.only_changed else frozenset()
+    since = request.base if request.only_changed else None
+    unchanged = frozenset() if since is None else _unchanged(request.root, since, policy, tree.found)
     judged = tuple(
         _judged(table, row, findings[row], in_full=row in explained, unchanged=unchanged)
         for row in range(len(tree.found))
@@ -96,12 +97,10 @@ def _judged(
     )
 
 
-def _unchanged_since_base(request: Request, policy: Policy, found: Sequence[Found]) -> frozenset[str]:
-    """The ids whose documents are the same at the base; `--only-changed` without a base changes nothing."""
-    if request.base is None:
-        return frozenset()
+def _unchanged(root: Path, since: str, policy: Policy, found: Sequence[Found]) -> frozenset[str]:
+    """The ids whose documents are the same at the revision `since`."""
     globs = policy.document.scan
-    base = scan(request.root, globs.include, globs.exclude, git.resolve(request.root, request.base))
+    base = scan(root, globs.include, globs.exclude, git.resolve(root, since))
     before: Mapping[str, str] = {one.record.id: one.digest for one in base.found}
     return frozenset(one.record.id for one in found if before.get(one.record.id) == one.digest)
 

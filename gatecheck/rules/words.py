@@ -11,6 +11,25 @@ from gatecheck.model.record import Record, Sample, Test
 
 _SUGGESTIVE = 0.20
 _FEW_DIGITS = 4
+_LARGEST_LOG_ODDS = 60.0
+#: Endings of units and of their plurals (common usage); the first that fits is taken.
+_PLURALS = {
+    "mouse": "mice",
+    "mice": "mice",
+    "child": "children",
+    "children": "children",
+    "person": "people",
+    "people": "people",
+    "ss": "sses",
+    "s": "s",
+    "x": "xes",
+    "ch": "ches",
+    "sh": "shes",
+    "ay": "ays",
+    "ey": "eys",
+    "oy": "oys",
+    "y": "ies",
+}
 
 
 def describe_result(record: Record) -> str:
@@ -40,10 +59,13 @@ def tell_sample(sample: Sample | None) -> str:
 
 
 def plural(unit: str | None) -> str:
-    """The unit in the plural: `plot` becomes `plots`; a unit that is unknown is just units."""
+    """The unit in the plural; one that is given in the plural stays, and one that is unknown is just units."""
     if unit is None:
         return "units"
-    return unit if unit.endswith("s") else f"{unit}s"
+    for singular, many in _PLURALS.items():
+        if unit.endswith(singular):
+            return unit.removesuffix(singular) + many
+    return f"{unit}s"
 
 
 def tell_number(number: Reported | None) -> str:
@@ -92,9 +114,10 @@ def tell_wording(risk: float, log_likelihood_ratio: float) -> str:
 
 def tell_odds(log_likelihood_ratio: float) -> str:
     """A likelihood ratio in words."""
-    size = math.exp(min(abs(log_likelihood_ratio), 60))
     toward = "an effect over none" if log_likelihood_ratio >= 0 else "no effect over one"
-    return f"about {size:.3g} to 1 for {toward}"
+    if abs(log_likelihood_ratio) > _LARGEST_LOG_ODDS:
+        return f"more than 1e+26 to 1 for {toward}"
+    return f"about {math.exp(abs(log_likelihood_ratio)):.3g} to 1 for {toward}"
 
 
 def tell_n(evidence: Evidence, row: int, n: float, unit: str | None) -> str:

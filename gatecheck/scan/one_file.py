@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
 
 from gatecheck import git
 from gatecheck.errors import CannotJudge
 from gatecheck.model.verdict import Place, Problem
+from gatecheck.scan.flaws import flaws_of
 from gatecheck.scan.readers import READERS, suffix_of
 from gatecheck.scan.readers.document import Document
 
@@ -38,15 +40,24 @@ def read_one(root: Path, path: str, revision: str | None = None) -> OneFile | No
     digest = f"sha256:{hashlib.sha256(content).hexdigest()}"
     reader = READERS.get(suffix_of(path))
     if reader is None:
-        problem = Problem(Place(path), "has a suffix that no reader knows", "name it .yaml, .yml or .json")
+        problem = Problem(Place(path), "the file has a suffix that no reader knows", "name it .yaml, .yml or .json")
         return OneFile(path, digest, None, (problem,))
     outcomes = reader(path, content)
     problems = tuple(one for one in outcomes if isinstance(one, Problem))
     documents = [one for one in outcomes if isinstance(one, Document)]
-    if len(documents) == 1 and not problems:
-        return OneFile(path, digest, documents[0], ())
-    amiss = Problem(Place(path), f"holds {len(documents)} documents", "write one document")
-    return OneFile(path, digest, None, problems or (amiss,))
+    if len(documents) != 1 and not problems:
+        problems = (Problem(Place(path), f"the file holds {len(documents)} documents", "write one document"),)
+    problems = problems or tuple(_flaws(documents[0]))
+    return OneFile(path, digest, None if problems else documents[0], problems)
+
+
+def _flaws(document: Document) -> Iterator[Problem]:
+    """What no field may be, such as a key that stands twice, told before the document is read."""
+    for flaw in flaws_of(document.value)[0]:
+        where = Place(document.place.path, document.locate(flaw.path))
+        yield Problem(
+            where, f"{flaw.field} {flaw.message}" if flaw.path else f"the file {flaw.message}", flaw.advice
+        )
 
 
 def _content(root: Path, path: str) -> bytes | None:

@@ -7,7 +7,7 @@ from typing import Any
 
 from gatecheck.model.marks import Range
 from gatecheck.model.numbers import REPORTED_PATTERN
-from gatecheck.schema.shapes import Choice, Flag, Form, Items, Number, Part, Shape, Table, Text, form_of
+from gatecheck.schema.shapes import Choice, Flag, Form, Items, Number, Part, Shape, Text, form_of
 
 DIALECT = "https://json-schema.org/draft/2020-12/schema"
 
@@ -49,9 +49,8 @@ def _schema(shape: Shape) -> dict[str, Any]:
             return {"type": "string"} | ({"pattern": shape.pattern.regex} if shape.pattern else {})
         case Items():
             return _items(shape)
-        case Table():
-            member = True if shape.member is None else _schema(shape.member)
-            return {"type": "object", "additionalProperties": member}
+    member = True if shape.member is None else _schema(shape.member)
+    return {"type": "object", "additionalProperties": member}
 
 
 def _items(items: Items) -> dict[str, Any]:

@@ -15,6 +15,7 @@ from gatecheck.schema.shapes import Choice, Flag, Form, Items, Number, Shape, Ta
 
 Path = tuple[str | int, ...]
 _SHOWN = 40
+_FEW_FAULTS = 20
 _MISSING = object()
 M = TypeVar("M")
 
@@ -78,7 +79,10 @@ class _Reader:
         return _MISSING if self.faults else form.makes(**values)
 
     def unknown_key(self, path: Path, known: Iterable[str]) -> None:
-        self.fault(path, "is no known key", nearest_advice(str(path[-1]), known))
+        # To look for the nearest word takes time, which a document of unknown keys alone must not multiply.
+        few = len(self.faults) < _FEW_FAULTS
+        advice = nearest_advice(str(path[-1]), known) if few else f"known: {', '.join(sorted(known))}"
+        self.fault(path, "is no known key", advice)
 
     def items(self, items: Items, found: Any, path: Path) -> Any:
         if items.lone and not isinstance(found, list):
@@ -105,9 +109,7 @@ class _Reader:
             return self.fault(path, f"is the text {shown(found)}, where only a number is meant", advice)
         value = _finite(found)
         if value is None:
-            return self.fault(
-                path, f"is {shown(found)}, not a finite number", "give a number or leave it out"
-            )
+            return self.fault(path, f"is {shown(found)}, not a finite number", "give a number or leave it out")
         if number.whole and not value.is_integer():
             return self.fault(path, f"is {shown(found)}, not a whole number", "give a whole number")
         if not number.within.admits(value):

@@ -64,9 +64,7 @@ def _of_value(statistic: str | None, value: Reported) -> Iterator[Fault]:
 
 def _of_p(test: Test) -> Iterator[Fault]:
     if test.resamples is not None and test.p_kind != "permutation":
-        yield Fault(
-            ("test", "resamples"), "is given where p_kind is not permutation", "set p_kind: permutation"
-        )
+        yield Fault(("test", "resamples"), "is given where p_kind is not permutation", "set p_kind: permutation")
 
 
 def _of_estimate(estimate: Estimate) -> Iterator[Fault]:

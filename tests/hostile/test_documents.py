@@ -292,8 +292,8 @@ def all_of(suffix: str, content: bytes) -> list[Found | Problem]:
     return [each for one in read for each in (judged(one) if isinstance(one, Document) else [one])]
 
 
-WORDS = b"""gatecheck "gatecheck": "record/1" gatecheck:record/1 { } [ ] : , " \\ud800 - ? &a *a << !!int | 1e400 NaN .nan
---- "cells": "outputs": "data": "application/vnd.gatecheck.record+json": null 0x %YAML"""
+WORDS = b"""gatecheck "gatecheck": "record/1" gatecheck:record/1 { } [ ] : , " \\ud800 - ? &a *a << !!int | 1e400
+NaN .nan --- "cells": "outputs": "data": "application/vnd.gatecheck.record+json": null 0x %YAML"""
 PIECES = st.sampled_from([*WORDS.split(), b"\n", b" ", b"\0", b"\xff", b"\xef\xbb\xbf", b"\xff\xfe", b"\n---\n"])
 
 

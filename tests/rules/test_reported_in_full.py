@@ -6,7 +6,9 @@ from pathlib import Path
 from typing import Any
 
 import pytest
-from support import POLICY, Document, changed, drainage, judge
+from support import POLICY, Document, changed, drainage, judge, write_tree
+
+from gatecheck.cli import main
 
 RULE: Document = {"reported-in-full": {}}
 IN_FULL = changed(POLICY, rules=RULE)
@@ -97,3 +99,11 @@ def test_a_result_without_a_claim_is_held_to_it_too(tmp_path: Path) -> None:
     assert answer.status == 1
     assert [each["rule"] for each in answer.claim()["rules"]] == ["numbers-agree", "reported-in-full"]
     assert answer.verdict["counts"]["reported-falling-short"] == 1
+
+
+def test_what_is_met_is_explained_too(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    write_tree(tmp_path, drainage(), policy=IN_FULL)
+
+    assert main(["explain", "drainage/earthworm-biomass", str(tmp_path)]) == 0
+
+    assert "nothing that guidelines ask for is missing." in " ".join(capsys.readouterr().out.split())

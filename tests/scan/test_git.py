@@ -204,6 +204,16 @@ def test_a_failure_to_list_is_no_empty_list(git: Git, root: Path) -> None:
     assert refusal(list_files, root).message.startswith(f"git ls-files failed in {root}: ")
 
 
+def test_a_folder_that_git_cannot_open_is_no_empty_one(root: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Git warns of it and ends with status 0; these words are those of git 2.39.5."""
+    (root / "git").write_text("#!/bin/sh\necho \"warning: could not open directory 'x/': Permission denied\" >&2\n")
+    (root / "git").chmod(0o755)
+    monkeypatch.setenv("PATH", f"{root}:{os.environ['PATH']}")
+    error = refusal(list_files, root)
+    assert error.message == f"git cannot open every folder of {root}"
+    assert error.advice == "mend their permissions"
+
+
 def test_a_failure_without_a_word_gives_its_status(root: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     (root / "git").write_text("#!/bin/sh\nexit 7\n")
     (root / "git").chmod(0o755)

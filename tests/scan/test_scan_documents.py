@@ -392,6 +392,15 @@ def test_what_is_broken_and_not_ours_is_passed_over(root: Path, write: Write, co
     assert silent(root, write, "package.json", content)
 
 
+def test_very_many_markers_that_open_and_never_close(root: Path, write: Write) -> None:
+    """They are no merge, and looking for the end of each would take hours."""
+    content = '{"gatecheck": "record/1",\n' + "<<<<<<< a\n" * 200_000
+    assert problem(root, write, "a.json", content)[:2] == (
+        "a.json:2",
+        "the text is no JSON: Expecting property name enclosed in double quotes",
+    )
+
+
 def test_a_broken_line_hides_no_other(root: Path, write: Write) -> None:
     good = json.dumps(record("good")).encode()
     write("a.jsonl", b'{"gatecheck": "record/1", "id": \n' + good + b'\n{"id": "\xff"}\n[1, 2\n{"other": 1}\n')

@@ -73,7 +73,12 @@ def test_an_unreadable_record_wins_over_one_that_falls_short_and_both_are_told(t
         ),
         ("gatecheck: policy/1\nrules: [\n", 3, None),
         ("- 1\n", 1, "the policy is a list, not an object"),
-        ("gatecheck: policy/1\n---\ngatecheck: policy/1\n", 1, "holds 2 documents"),
+        (
+            "gatecheck: policy/1\nrules:\n  numbers-agree: {}\n  numbers-agree: {}\n",
+            4,
+            "rules.numbers-agree is given twice",
+        ),
+        ("gatecheck: policy/1\n---\ngatecheck: policy/1\n", 1, "the file holds 2 documents"),
         ("", 1, None),
     ],
 )
@@ -102,7 +107,7 @@ def test_a_named_policy_is_used_and_must_be_there(tmp_path: Path, capsys: pytest
 
     assert (named.status, named.verdict["policy"]["name"]) == (0, "loosened policy")
     assert (missing.status, problems(missing.verdict)) == (3, [(".", 1, "there is no policy no.yaml")])
-    assert problems(other.verdict) == [("policy.toml", 1, "has a suffix that no reader knows")]
+    assert problems(other.verdict) == [("policy.toml", 1, "the file has a suffix that no reader knows")]
     assert capsys.readouterr().out == ""
 
 

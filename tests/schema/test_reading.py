@@ -8,6 +8,7 @@ import pytest
 from support import drainage
 
 from gatecheck.model.marks import Range
+from gatecheck.policy import Match
 from gatecheck.schema.read import field_name, read, shown
 from gatecheck.schema.records import read_record
 from gatecheck.schema.shapes import form_of
@@ -191,6 +192,15 @@ def test_fields_that_contradict_each_other(changes: dict[str, Any], fault: tuple
     assert faults_of(drainage(**changes)) == [fault]
 
 
+def test_many_unknown_keys_are_told_without_the_nearest_word_to_each() -> None:
+    faults = faults_of(drainage(**{f"claim{number}": 1 for number in range(30)}))
+
+    assert [advice.startswith("the nearest known one is claim (known: aim,") for _, _, advice in faults] == (
+        [True] * 20 + [False] * 10
+    )
+    assert faults[-1][2].startswith("known: aim, aliases, alternative, claim,")
+
+
 def test_a_bare_record_and_open_intervals_are_in_order() -> None:
     assert faults_of({"gatecheck": "record/1", "id": "a"}) == []
     assert faults_of(drainage(estimate__interval={"level": 0.9, "high": 8})) == []
@@ -240,3 +250,11 @@ def test_a_model_with_a_type_that_no_format_uses_is_refused() -> None:
     assert read(dataclasses.make_dataclass("Open", [("rules", dict[str, Any])]), {"rules": 3})[1][0].message == (
         "is 3, not an object"
     )
+
+
+def test_a_list_without_an_upper_end_says_how_many_it_needs() -> None:
+    _, faults = read(Match, {"id": []})
+
+    assert [(fault.field, fault.message, fault.advice) for fault in faults] == [
+        ("id", "has 0 members", "give 1 or more")
+    ]
