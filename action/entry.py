@@ -1,7 +1,7 @@
 """One run of the gate in a build: install it, find the base, weigh once, and write what the build shows.
 
-The judged repository is data. Python runs isolated from it, with neither the working directory nor PYTHONPATH among the
-places where it looks for modules, and no text from it reaches the log outside the annotations, which are made safe.
+The judged repository is data. Python runs isolated from it: it looks for modules neither in the working directory
+nor along PYTHONPATH. No text from it reaches the log outside the annotations, which are made safe.
 """
 
 from __future__ import annotations
@@ -21,7 +21,7 @@ from base_commit import CANNOT_JUDGE, StopError, find_base
 _PROJECT = Path(__file__).resolve().parents[1]
 _USAGE = 2
 _COUNTS = ("claims", "stands", "falls-short", "undecided", "waived")
-_PLACED = re.compile(r"^(::(?:error|warning|notice) file=)(?:\./)?", re.MULTILINE)
+_PLACED = re.compile(r"^(::(?:error|warning|notice) file=)", re.MULTILINE)
 
 
 def main() -> None:

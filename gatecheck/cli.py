@@ -5,12 +5,15 @@ from __future__ import annotations
 import argparse
 import os
 import sys
-from collections.abc import Callable, Sequence
-from pathlib import Path
 
 from gatecheck import __version__
 from gatecheck.errors import CannotJudge
-from gatecheck.model.verdict import Exit
+from gatecheck.model.exit import Exit
+
+TYPE_CHECKING = False  # a type checker reads it as true; `typing` itself would cost start-up time
+if TYPE_CHECKING:
+    from collections.abc import Callable, Sequence
+    from pathlib import Path
 
 FORMATS = ("json", "summary", "annotations")
 KINDS = ("record", "plan", "policy", "waivers", "verdict")
@@ -126,7 +129,7 @@ def _weigh(parsed: argparse.Namespace) -> int:
     from gatecheck.gate import Request, check  # noqa: PLC0415  # loads numpy, which --help does without
     from gatecheck.render import RENDERERS, account  # noqa: PLC0415
 
-    verdict = check(Request(Path(parsed.folder), _policy_path(parsed), parsed.base, parsed.only_changed))
+    verdict = check(Request(_folder(parsed), _policy_path(parsed), parsed.base, parsed.only_changed))
     if not writes:
         _tell(account(verdict, _width()))
     for form, path in writes:
@@ -139,11 +142,11 @@ def _survey(parsed: argparse.Namespace) -> int:
     from gatecheck.render import survey  # noqa: PLC0415
     from gatecheck.scan import scan  # noqa: PLC0415
 
-    standing = standing_policy(Path(parsed.folder), None, None)
+    standing = standing_policy(_folder(parsed), None, None)
     if standing.policy is None:
         raise CannotJudge("the policy cannot be read", "see `gatecheck weigh` for what is wrong with it")
     globs = standing.policy.document.scan
-    _tell(survey(scan(Path(parsed.folder), globs.include, globs.exclude), _width()))
+    _tell(survey(scan(_folder(parsed), globs.include, globs.exclude), _width()))
     return Exit.STANDS
 
 
@@ -151,7 +154,7 @@ def _explain(parsed: argparse.Namespace) -> int:
     from gatecheck.gate import Request, check  # noqa: PLC0415
     from gatecheck.render import account, explain  # noqa: PLC0415
 
-    request = Request(Path(parsed.folder), _policy_path(parsed), parsed.base, explain=frozenset([parsed.id]))
+    request = Request(_folder(parsed), _policy_path(parsed), parsed.base, explain=frozenset([parsed.id]))
     verdict = check(request)
     if any(one.id == parsed.id for one in verdict.judged):
         _tell(explain(verdict, parsed.id, _width()))
@@ -172,7 +175,7 @@ def _schema(parsed: argparse.Namespace) -> int:
 def _start(parsed: argparse.Namespace) -> int:
     from gatecheck.starting import start  # noqa: PLC0415
 
-    _tell("".join(f"{line}\n" for line in start(Path(parsed.folder))))
+    _tell("".join(f"{line}\n" for line in start(_folder(parsed))))
     return Exit.STANDS
 
 
@@ -183,18 +186,26 @@ def _split_write(text: str) -> tuple[str, str]:
     return form, path
 
 
+def _folder(parsed: argparse.Namespace) -> Path:
+    from pathlib import Path  # noqa: PLC0415  # --help does without
+
+    return Path(parsed.folder)
+
+
 def _policy_path(parsed: argparse.Namespace) -> str | None:
     """The policy as a path relative to the folder, which is how it can also be read at a revision."""
     if parsed.policy is None:
         return None
     relative: str = os.path.relpath(parsed.policy, parsed.folder)
-    return Path(relative).as_posix()
+    return relative.replace(os.sep, "/")
 
 
 def _write(path: str, text: str) -> None:
     if path == "-":
         _tell(text)
         return
+    from pathlib import Path  # noqa: PLC0415  # --help does without
+
     try:
         Path(path).write_bytes(text.encode("utf-8"))
     except OSError as error:

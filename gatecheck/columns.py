@@ -4,18 +4,19 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
-from numpy.typing import NDArray
 
 from gatecheck.model.found import Found
 from gatecheck.model.numbers import Reported
 from gatecheck.model.record import Estimate, Sample, Test
+from gatecheck.model.struct import struct
 
-Floats = NDArray[np.float64]
-Booleans = NDArray[np.bool_]
-Integers = NDArray[np.intp]
+# What numpy.typing calls NDArray; that module costs more start-up time than all of this one.
+Floats = np.ndarray[Any, np.dtype[np.float64]]
+Booleans = np.ndarray[Any, np.dtype[np.bool_]]
+Integers = np.ndarray[Any, np.dtype[np.intp]]
 
 #: What stands in `statistic` where a record names none; the others are the order of `STATISTICS`.
 NO_STATISTIC = -1
@@ -27,7 +28,7 @@ _EMPTY_SAMPLE = Sample()
 _NAN = math.nan
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Interval:
     """A column of numbers as reported: the value and the ends of the interval that it may stand for."""
 
@@ -41,7 +42,7 @@ class Interval:
         return np.isfinite(self.value)
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Tests:
     """The tests, as arrays of shape (n,); nan stands for what a record does not give.
 
@@ -64,7 +65,7 @@ class Tests:
         return np.isin(self.statistic, statistics)
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Estimates:
     """The estimates, on the scale on which their interval is symmetric and less the value of no effect.
 
@@ -81,7 +82,7 @@ class Estimates:
     log_scale: Booleans
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Samples:
     """Numbers of units: all of them, in the first and second group, and the number of groups."""
 
@@ -91,7 +92,7 @@ class Samples:
     groups: Integers
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Columns:
     """Records as arrays of shape (n,), one row a record, in the order of `found`."""
 
@@ -164,7 +165,7 @@ def _estimates(estimates: Sequence[Estimate | None]) -> Estimates:
 
 
 def _from_null(numbers: Floats, null: Floats, log_scale: Booleans) -> Floats:
-    with np.errstate(divide="ignore", invalid="ignore"):
+    with np.errstate(all="ignore"):
         return np.where(log_scale, np.log(numbers) - np.log(null), numbers - null)
 
 

@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
 
 import numpy as np
 
 from gatecheck import weigh
 from gatecheck.columns import CHI2, NO_STATISTIC, Booleans, Columns, F, Floats, Integers, R, T, Z
+from gatecheck.model.struct import struct
 from gatecheck.policy import AlternativeName, EvidenceSettings
 
 _KINDS = {
@@ -22,7 +22,7 @@ _KINDS = {
 _NEARLY = 1e-6
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Statistics:
     """The statistics as they are weighed, arrays of shape (n,).
 
@@ -39,7 +39,7 @@ class Statistics:
     log_p: Floats
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Design:
     """How the units were laid out: `total` of them in `arms` equal groups."""
 
@@ -49,7 +49,7 @@ class Design:
     one_sample: Booleans
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Evidence:
     """Evidence of shape (n,): the natural log of the likelihood ratio under the alternative that was chosen.
 
@@ -127,7 +127,7 @@ def _statistics(columns: Columns) -> Statistics:
     as_r = test.is_one_of(R)
     given = np.where(as_r, weigh.t_from_r(np.where(as_r, test.value.value, 0.0), test.df1.value), test.value.value)
     given = np.where(signed, given * test.toward, given)
-    with np.errstate(divide="ignore", invalid="ignore"):
+    with np.errstate(all="ignore"):
         # p above a bound ("> 0.05") says too little, p = 0 is no probability that a test can give.
         usable = np.isfinite(test.p.high) & (test.p.value > 0)
         reported = np.log(np.where(usable, test.p.value, np.nan))
@@ -135,9 +135,10 @@ def _statistics(columns: Columns) -> Statistics:
     df1, df2 = test.df1.value, test.df2.value
     recovered = ~np.isfinite(given) & (kind >= 0)
     value = np.where(recovered, weigh.value_from_log_p(kind, raw, df1, df2, signed), given)
-    log_p = weigh.log_p(kind, value, df1, df2, signed)
-    as_reported = np.where(test.p_is_exact | test.p_is_raw, reported, np.nan)
-    log_p = np.where(np.isfinite(log_p) & ~test.p_is_exact, log_p, as_reported)
+    from_statistic = weigh.log_p(kind, value, df1, df2, signed)
+    # A raw p is that of its statistic, in all its digits; an exact or resampled one is its own.
+    own = np.isfinite(reported) & (test.p_is_exact | (test.p_is_raw & np.isnan(from_statistic)))
+    log_p = np.where(own, reported, from_statistic)
     return Statistics(kind, value, df1, df2, signed, recovered & np.isfinite(value), log_p)
 
 
@@ -165,7 +166,7 @@ def _design_noncentrality(columns: Columns, statistics: Statistics, design: Desi
     r through r / sqrt(1 - r^2), chi2 as n w^2, F as n f^2. A raw effect is counted in standard errors.
     """
     test, sample, effect = columns.test, columns.sample, columns.effect
-    with np.errstate(divide="ignore", invalid="ignore"):
+    with np.errstate(all="ignore"):
         harmonic = sample.n1 * sample.n2 / (sample.n1 + sample.n2)
         root = np.sqrt(np.where(design.two_samples, harmonic, design.total))
         ncp = np.where(design.two_samples | design.one_sample, np.abs(effect) * root, np.nan)

@@ -1,4 +1,4 @@
-"""The evidence of one row as figures with their assumptions, for the verdict."""
+"""Evidence as figures with their assumptions, for the verdict."""
 
 from __future__ import annotations
 
@@ -9,7 +9,7 @@ import numpy as np
 from gatecheck import weigh
 from gatecheck.model.shown import percent
 from gatecheck.model.verdict import Figures
-from gatecheck.policy import AlternativeName
+from gatecheck.policy import AlternativeName, Applied
 from gatecheck.rules.rule import Table
 from gatecheck.rules.weighed import tell_unweighed
 
@@ -24,47 +24,56 @@ _ERRS = {
 }
 
 
-def figures_of(table: Table, row: int, *, in_full: bool) -> tuple[Figures | None, tuple[Figures, ...]]:
-    """The figures under the alternative that was chosen, and `in_full` also those under every other one.
+class FigureTable:
+    """The figures of a table, computed for all rows under each alternative at once."""
 
-    A record that claims nothing and has no evidence has no figures.
-    """
-    chosen = table.evidence.alternative[row]
-    others: tuple[AlternativeName, ...] = tuple(
-        name for name, column in table.evidence.under.items() if name != chosen and np.isfinite(column[row])
-    )
-    rest = tuple(_figures(table, row, name) for name in others) if in_full else ()
-    if chosen is not None:
-        return _figures(table, row, chosen), rest
-    if not table.columns.claims[row]:
-        return None, rest
-    prior, prior_from = _prior(table, row)
-    return Figures("none", None, prior, prior_from, None, None, tell_unweighed(table, row).message), rest
+    def __init__(self, table: Table) -> None:
+        self.table = table
+        self.risk_wanted = [_risk_wanted(applied) for applied in table.applied]
+        under = table.evidence.under
+        self.risk = {
+            name: weigh.false_positive_risk(log_lr, table.evidence.prior) for name, log_lr in under.items()
+        }
+        self.needed = {name: weigh.prior_needed(log_lr, self.risk_wanted) for name, log_lr in under.items()}
+
+    def of_row(self, row: int, *, in_full: bool) -> tuple[Figures | None, tuple[Figures, ...]]:
+        """The figures under the alternative that was chosen, and `in_full` also those under every other one.
+
+        A record that claims nothing and has no evidence has no figures.
+        """
+        chosen = self.table.evidence.alternative[row]
+        rest = tuple(self._under(row, name) for name in self._others(row)) if in_full else ()
+        if chosen is not None:
+            return self._under(row, chosen), rest
+        if not self.table.columns.claims[row]:
+            return None, rest
+        why = tell_unweighed(self.table, row).message
+        return Figures("none", None, *self._prior(row), None, None, why), rest
+
+    def _others(self, row: int) -> list[AlternativeName]:
+        evidence = self.table.evidence
+        chosen = evidence.alternative[row]
+        return [name for name, column in evidence.under.items() if name != chosen and np.isfinite(column[row])]
+
+    def _under(self, row: int, alternative: AlternativeName) -> Figures:
+        evidence, wanted = self.table.evidence, self.risk_wanted[row]
+        recovered = " The statistic was recovered from p." if evidence.statistics.recovered[row] else ""
+        return Figures(
+            alternative,
+            float(evidence.under[alternative][row]),
+            *self._prior(row),
+            float(self.risk[alternative][row]),
+            float(self.needed[alternative][row]),
+            f"{_ERRS[alternative]}; the prior needed is for a risk of {percent(wanted, wanted)}.{recovered}",
+        )
+
+    def _prior(self, row: int) -> tuple[float, str]:
+        evidence = self.table.evidence
+        return float(evidence.prior[row]), "record" if evidence.prior_is_own[row] else "policy"
 
 
-def _figures(table: Table, row: int, alternative: AlternativeName) -> Figures:
-    log_lr = float(table.evidence.under[alternative][row])
-    prior, prior_from = _prior(table, row)
-    risk = _risk_wanted(table, row)
-    recovered = " The statistic was recovered from p." if table.evidence.statistics.recovered[row] else ""
-    return Figures(
-        alternative,
-        log_lr,
-        prior,
-        prior_from,
-        float(weigh.false_positive_risk(log_lr, prior)),
-        float(weigh.prior_needed(log_lr, risk)),
-        f"{_ERRS[alternative]}; the prior needed is for a risk of {percent(risk, risk)}.{recovered}",
-    )
-
-
-def _prior(table: Table, row: int) -> tuple[float, str]:
-    return float(table.evidence.prior[row]), "record" if table.evidence.prior_is_own[row] else "policy"
-
-
-def _risk_wanted(table: Table, row: int) -> float:
+def _risk_wanted(applied: Applied) -> float:
     """The risk for which the prior needed is told: the policy's, else the usual one."""
-    rules = table.applied[row].rules
-    wanted = getattr(rules.get("prior-needed"), "risk", math.nan)
-    limit = getattr(rules.get("false-positive-risk"), "limit", math.nan)
+    wanted = getattr(applied.rules.get("prior-needed"), "risk", math.nan)
+    limit = getattr(applied.rules.get("false-positive-risk"), "limit", math.nan)
     return float(next((risk for risk in (wanted, limit) if math.isfinite(risk)), _USUAL_RISK))

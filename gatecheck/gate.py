@@ -7,7 +7,7 @@ these become findings, and findings become the verdict, from which everything th
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import field
 from pathlib import Path
 
 from gatecheck import git
@@ -15,9 +15,10 @@ from gatecheck.columns import columns_of
 from gatecheck.compare.own_numbers import own_numbers
 from gatecheck.errors import CannotJudge
 from gatecheck.evidence import weigh_columns
-from gatecheck.figures import figures_of
+from gatecheck.figures import FigureTable
 from gatecheck.model.found import Found, Scan
-from gatecheck.model.verdict import Finding, Judged, Place, Problem, Verdict
+from gatecheck.model.struct import struct
+from gatecheck.model.verdict import Figures, Finding, Judged, Place, Problem, Verdict
 from gatecheck.policies import Standing, standing_policy
 from gatecheck.policy import Policy
 from gatecheck.rules import RULES
@@ -29,7 +30,7 @@ from gatecheck.scan import scan
 WHOLE_TREE = Place(".")
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Request:
     """What is to be judged.
 
@@ -64,9 +65,10 @@ def _check(request: Request, standing: Standing, policy: Policy) -> Verdict:
     findings = judge_all(RULES, table, explain=explained)
     since = request.base if request.only_changed else None
     unchanged = frozenset() if since is None else _unchanged(request.root, since, policy, tree.found)
+    figures = FigureTable(table)
     judged = tuple(
-        _judged(table, row, findings[row], in_full=row in explained, unchanged=unchanged)
-        for row in range(len(tree.found))
+        _judged(one, findings[row], figures.of_row(row, in_full=row in explained), unchanged)
+        for row, one in enumerate(tree.found)
     )
     problems = (*tree.problems, *_too_few(tree, policy))
     return Verdict(standing.used, judged, problems, standing.notes)
@@ -80,10 +82,12 @@ def _table(tree: Scan, policy: Policy) -> Table:
 
 
 def _judged(
-    table: Table, row: int, findings: Sequence[Finding], *, in_full: bool, unchanged: frozenset[str]
+    one: Found,
+    findings: Sequence[Finding],
+    figures: tuple[Figures | None, tuple[Figures, ...]],
+    unchanged: frozenset[str],
 ) -> Judged:
-    one = table.columns.found[row]
-    chosen, others = figures_of(table, row, in_full=in_full)
+    chosen, others = figures
     return Judged(
         id=one.record.id,
         at=one.at,

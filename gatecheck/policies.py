@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 import json
-from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
 from gatecheck import git
 from gatecheck.errors import CannotJudge
+from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Place, PolicyUsed, Problem
 from gatecheck.policy import STARTING_POLICY, Document, Policy, read_policy
 from gatecheck.rules import RULES
@@ -21,7 +21,7 @@ _SETTINGS = {rule.name: rule.settings for rule in RULES}
 _ALWAYS_ON = frozenset(rule.name for rule in RULES if rule.always_on)
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Standing:
     """The policy that stands, where it came from, and what the summary must say of it."""
 

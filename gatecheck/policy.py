@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import field
 from typing import Annotated, Any, Literal
 
 from gatecheck.globs import matches
 from gatecheck.model.marks import OneOrMore, Range
 from gatecheck.model.record import Aim, OpenProbability, Record, Role, Status, Text
+from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Enforce
 from gatecheck.schema.read import Fault, nearest_advice, read
 
@@ -17,14 +18,14 @@ Globs = Annotated[tuple[Text, ...], OneOrMore()]
 Document = dict[str, Any]
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class RuleSettings:
     """What every rule's settings hold; a rule adds its own."""
 
     enforce: Annotated[Enforce, "block: a shortfall fails the gate; note: it is listed; off"] = "block"
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class ScanSettings:
     """Which files are looked at."""
 
@@ -32,7 +33,7 @@ class ScanSettings:
     exclude: Annotated[tuple[Text, ...], OneOrMore(least=0), "globs of the paths to leave out"] = ()
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class EvidenceSettings:
     """How evidence is weighed."""
 
@@ -42,7 +43,7 @@ class EvidenceSettings:
     prior: Annotated[OpenProbability, "probability of a real effect, where the record sets none"] = 0.5
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class EvidenceOverride:
     """How evidence is weighed for the records that match."""
 
@@ -50,7 +51,7 @@ class EvidenceOverride:
     prior: Annotated[OpenProbability | None, "as under evidence"] = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Match:
     """Which records an override is for: all that is named must hold; of several values, one."""
 
@@ -75,7 +76,7 @@ class Match:
         )
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Override:
     """Other settings for the records that match."""
 
@@ -86,7 +87,7 @@ class Override:
     evidence: Annotated[EvidenceOverride, "settings of evidence, merged likewise"] = EvidenceOverride()
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class PolicyDocument:
     """The team's reporting policy."""
 
@@ -101,7 +102,7 @@ class PolicyDocument:
     for_: Annotated[tuple[Override, ...], "overrides, in order; the last match wins"] = ()
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Applied:
     """What the policy asks of one record: settings by rule, and how evidence is weighed."""
 
@@ -109,7 +110,7 @@ class Applied:
     evidence: EvidenceSettings
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Policy:
     """A policy that was read without fault, with the settings of each rule in their types."""
 

@@ -8,13 +8,13 @@ them: many writers round before they write a number, and that is no disagreement
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
 
 import numpy as np
 
 from gatecheck import weigh
 from gatecheck.columns import CHI2, Booleans, Columns, F, Floats, Interval, R, T, Z
 from gatecheck.evidence import Evidence
+from gatecheck.model.struct import struct
 
 #: Relative differences that two careful programs may show: between p-values, and between multiples of an
 #: error (1.96 is written for 1.959964).
@@ -27,7 +27,7 @@ _OTHER_METHOD_P = 1.5
 _LOG_SMALLEST = -744.4
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Agreement:
     """One comparison of shape (n,): where it could be made, where the figures agree, and what would fit.
 
@@ -148,7 +148,7 @@ def _interval_from_error(columns: Columns, half: Interval) -> Agreement:
     """The width of the interval against its level and the standard error."""
     error = columns.estimate.standard_error
     least, most = _multiples(columns)
-    checked = half.known & error.known & ~columns.estimate.adjusted & (half.low > 0)
+    checked = half.known & (error.value > 0) & ~columns.estimate.adjusted & (half.low > 0)
     agrees = (half.high / error.low >= least) & (half.low / error.high <= most)
     return Agreement("width", checked, agrees, half.value / most, half.value / least)
 

@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+
+from gatecheck.model.struct import struct
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Range:
     """The numbers that a field admits, from `low` to `high`; an end that is `open` is itself excluded."""
 
@@ -29,7 +30,7 @@ class Range:
         return f"from {first} to {last}"
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Pattern:
     """The texts that a field admits: a regular expression for the whole text, and the same in words."""
 
@@ -37,7 +38,7 @@ class Pattern:
     words: str
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class OneOrMore:
     """A list of `least` to `most` members that may also be written as its only member."""
 
@@ -45,7 +46,7 @@ class OneOrMore:
     least: int = 1
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Length:
     """A list of exactly `size` members."""
 

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Annotated, Literal
 
 from gatecheck.model.marks import Length, OneOrMore, Range
@@ -19,12 +18,13 @@ from gatecheck.model.record import (
     Role,
     Text,
 )
+from gatecheck.model.struct import struct
 
 Direction = Literal["increase", "decrease", "either"]
 DataState = Literal["none", "collecting", "unseen", "seen"]
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Outcome:
     """What is measured, defined in full."""
 
@@ -34,7 +34,7 @@ class Outcome:
     time_point: Annotated[Text | None, "when it is measured"] = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class PlannedSample:
     """How many units are planned."""
 
@@ -43,7 +43,7 @@ class PlannedSample:
     deferred: Annotated[bool, "true where the number is settled later, before the first result"] = False
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class PlannedLooks:
     """The interim looks planned."""
 
@@ -51,7 +51,7 @@ class PlannedLooks:
     boundary: Annotated[Boundary | None, "stopping boundary"] = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Hypothesis:
     """One promised test."""
 
@@ -77,7 +77,7 @@ class Hypothesis:
     deferred: Annotated[bool, "true where the hypothesis is settled later, before the first result"] = False
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class PlannedFamily:
     """How the error over a set of tests is controlled."""
 
@@ -86,7 +86,7 @@ class PlannedFamily:
     order: Annotated[tuple[Text, ...], "ids in the order of a fixed sequence"] = ()
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Plan:
     """A registration: what was promised before the data."""
 

@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Annotated, Literal
 
 from gatecheck.model.marks import Length, OneOrMore, Pattern, Range
 from gatecheck.model.numbers import Reported
+from gatecheck.model.struct import struct
 
 Status = Literal["confirmatory", "exploratory", "descriptive"]
 Role = Literal["primary", "secondary", "other"]
@@ -41,7 +41,7 @@ Positive = Annotated[Reported, Range(0, low_open=True)]
 NotNegative = Annotated[Reported, Range(0)]
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class NamedStatistic:
     """A statistic without a distribution of its own in this format, such as the U of a rank test."""
 
@@ -49,7 +49,7 @@ class NamedStatistic:
     value: Annotated[Reported, "its value"]
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Test:
     """The test behind a result."""
 
@@ -72,7 +72,7 @@ class Test:
     ] = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Interval:
     """An uncertainty interval of the estimate."""
 
@@ -82,7 +82,7 @@ class Interval:
     adjusted: Annotated[bool, "true where the level was adjusted for several comparisons"] = False
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Estimate:
     """The size of the effect, with its precision."""
 
@@ -99,7 +99,7 @@ class Estimate:
     ] = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Group:
     """One group of the sample."""
 
@@ -113,7 +113,7 @@ class Group:
     ] = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Exclusion:
     """Units left out of the analysis."""
 
@@ -121,7 +121,7 @@ class Exclusion:
     reason: Annotated[Text, "why"]
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Sample:
     """What was counted."""
 
@@ -136,7 +136,7 @@ class Sample:
     clusters: Annotated[PositiveCount | None, "number of clusters that were assigned or sampled"] = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Alternative:
     """The effect that the study was designed to find."""
 
@@ -148,7 +148,7 @@ class Alternative:
     ]
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Prior:
     """Probability of a real effect before these data, and what it rests on."""
 
@@ -156,7 +156,7 @@ class Prior:
     basis: Annotated[Text, "what the probability rests on"]
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Family:
     """The set of tests that stands behind one claim."""
 
@@ -166,7 +166,7 @@ class Family:
     adjusted_p: Annotated[Probability | None, "p adjusted by that procedure"] = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Look:
     """The interim look at which this result was taken."""
 
@@ -178,7 +178,7 @@ class Look:
     boundary: Annotated[Boundary | None, "stopping boundary planned"] = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class PlanReference:
     """The registration, and the hypothesis in it that this result answers."""
 
@@ -186,7 +186,7 @@ class PlanReference:
     hypothesis: Annotated[Text | None, "id of the hypothesis in the plan"] = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Deviation:
     """A disclosed departure from the plan."""
 
@@ -197,7 +197,7 @@ class Deviation:
     known: Annotated[Known, "when the departure was decided"]
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class InputFile:
     """One input of the analysis."""
 
@@ -207,7 +207,7 @@ class InputFile:
     ] = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Provenance:
     """Where the result comes from."""
 
@@ -218,7 +218,7 @@ class Provenance:
     software: Annotated[dict[str, str] | None, "versions by name"] = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Record:
     """One result that analysis code emits."""
 

@@ -3,15 +3,16 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
 from decimal import ROUND_HALF_UP, Decimal
+
+from gatecheck.model.struct import struct
 
 #: From 10 to this power on, and below 10 to minus the other, a number is written with an exponent.
 _LARGE = 16
 _SMALL = -7
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class _Style:
     """How a kind of number is written: its power of ten, its digits, and where it becomes a bound."""
 

@@ -3,22 +3,14 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
-from enum import IntEnum
 from typing import Literal
+
+from gatecheck.model.exit import Exit
 
 Outcome = Literal["met", "short", "waived", "does-not-apply", "undecided"]
 Enforce = Literal["block", "note", "off"]
 Standing = Literal["stands", "falls-short", "waived", "undecided"]
 Answer = Literal["stands", "falls-short", "cannot-judge"]
-
-
-class Exit(IntEnum):
-    """The exit statuses of the command."""
-
-    STANDS = 0
-    FALLS_SHORT = 1
-    USAGE = 2
-    CANNOT_JUDGE = 3
 
 
 @dataclass(frozen=True, slots=True, order=True)

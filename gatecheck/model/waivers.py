@@ -2,17 +2,17 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Annotated, Literal
 
 from gatecheck.model.marks import Pattern
 from gatecheck.model.record import Identifier, Text
+from gatecheck.model.struct import struct
 
 Date = Annotated[str, Pattern(r"^[0-9]{4}-[0-9]{2}-[0-9]{2}$", "a date such as 2031-04-02")]
 Digest = Annotated[str, Pattern(r"^(sha256:)?[0-9a-f]{64}$", "a SHA-256 digest in hexadecimal digits")]
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Waiver:
     """One permission: for one rule on one record with the numbers that it had."""
 
@@ -25,7 +25,7 @@ class Waiver:
     digest: Annotated[Digest, "digest of the record's numbers"]
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Waivers:
     """Permissions to merge although a rule falls short."""
 

@@ -20,9 +20,11 @@ def judge_all(rules: Sequence[Rule], table: Table, *, explain: frozenset[int] = 
     Rows in `explain` carry words for every outcome, the others for what falls short or is undecided.
     """
     found: list[list[Finding]] = [[] for _ in table.applied]
-    for rule in rules:
-        for row, finding in _judge(rule, table, explain):
-            found[row].append(finding)
+    # What is not finite makes a row undecided; a warning beside that would tell nobody anything.
+    with np.errstate(all="ignore"):
+        for rule in rules:
+            for row, finding in _judge(rule, table, explain):
+                found[row].append(finding)
     return [tuple(each) for each in found]
 
 

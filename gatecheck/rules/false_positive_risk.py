@@ -8,12 +8,13 @@ policy allows; `include_harm`, whether safety outcomes are held to it too.
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import KW_ONLY
 from typing import Annotated
 
 from gatecheck import weigh
 from gatecheck.model.record import OpenProbability
 from gatecheck.model.shown import percent
+from gatecheck.model.struct import struct
 from gatecheck.policy import RuleSettings
 from gatecheck.rules.mending import tell_mending, tell_prior_to_defend, would_do
 from gatecheck.rules.rule import Judgement, Rule, Said, Table, setting
@@ -21,10 +22,11 @@ from gatecheck.rules.weighed import EXEMPT, LOG_LIKELIHOOD_RATIO
 from gatecheck.rules.words import tell_alternative, tell_odds, tell_prior, tell_result
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
+@struct
 class Settings(RuleSettings):
     """The risk of having no effect that a claim may leave."""
 
+    _: KW_ONLY
     limit: Annotated[OpenProbability, "largest false positive risk allowed"]
     include_harm: Annotated[bool, "hold safety outcomes to this limit too"] = False
 

@@ -43,6 +43,8 @@ def tell_mending(table: Table, row: int, target_log_lr: float, judgement: Judgem
     """The sample or the p that would do, and the wording that the evidence allows as it stands."""
     evidence = table.evidence
     wording = tell_wording(evidence.false_positive_risk[row], evidence.log_likelihood_ratio[row])
+    if evidence.statistics.one_sided[row] and evidence.statistics.value[row] < 0:
+        wording = "as it stands, the effect points away from the direction tested: do not claim it"
     told = _what_would_do(table, row, target_log_lr, judgement)
     return f"{told}; {wording}." if told else f"{wording[0].upper()}{wording[1:]}."
 

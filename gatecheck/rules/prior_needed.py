@@ -8,12 +8,13 @@ log LR. Settings: `risk`, the risk to reach; `limit`, the greatest prior that ma
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import KW_ONLY
 from typing import Annotated
 
 from gatecheck import weigh
 from gatecheck.model.record import OpenProbability
 from gatecheck.model.shown import percent
+from gatecheck.model.struct import struct
 from gatecheck.policy import RuleSettings
 from gatecheck.rules.mending import tell_mending, would_do
 from gatecheck.rules.rule import Judgement, Rule, Said, Table, setting
@@ -21,10 +22,11 @@ from gatecheck.rules.weighed import EXEMPT, LOG_LIKELIHOOD_RATIO
 from gatecheck.rules.words import tell_alternative, tell_result
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
+@struct
 class Settings(RuleSettings):
     """How sure one may have to be beforehand."""
 
+    _: KW_ONLY
     risk: Annotated[OpenProbability, "false positive risk to reach"]
     limit: Annotated[OpenProbability, "greatest prior probability that may be needed for it"]
     include_harm: Annotated[bool, "hold safety outcomes to this limit too"] = False

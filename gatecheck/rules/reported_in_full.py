@@ -10,11 +10,11 @@ exact test no statistic with df, and an estimate alone needs no test.
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
 
 import numpy as np
 
 from gatecheck.model.record import Estimate, Record, Sample, Test
+from gatecheck.model.struct import struct
 from gatecheck.policy import RuleSettings
 from gatecheck.rules.rule import Judgement, Rule, Said, Table
 from gatecheck.rules.words import describe_result
@@ -22,7 +22,7 @@ from gatecheck.rules.words import describe_result
 _LEAST_BOUND = 0.001
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Requirement:
     """One thing that a result must carry: how to see that it is missing, and what to write."""
 

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -12,10 +11,11 @@ from gatecheck.columns import Booleans, Columns, Floats
 from gatecheck.compare.own_numbers import Agreement
 from gatecheck.evidence import Evidence
 from gatecheck.model.record import Record
+from gatecheck.model.struct import struct
 from gatecheck.policy import Applied, RuleSettings
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Table:
     """All that rules see: columns, evidence, facts and what the policy asks of each row."""
 
@@ -29,7 +29,7 @@ class Table:
         return self.columns.found[row].record
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Judgement:
     """A rule's outcome for all rows: where it falls short, and what was observed against which limit.
 
@@ -42,7 +42,7 @@ class Judgement:
     would_do: Floats | None = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Said:
     """What is said of one row: what was found and is wanted, and what would mend it."""
 
@@ -50,7 +50,7 @@ class Said:
     remedy: str = ""
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Exemption:
     """Rows to which a rule does not apply, and why."""
 
@@ -58,7 +58,7 @@ class Exemption:
     because: str
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Need:
     """A column without which a rule cannot judge a row, and what is said where it is missing."""
 
@@ -66,7 +66,7 @@ class Need:
     missing: Callable[[Table, int], Said]
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Rule:
     """One rule of a reporting policy.
 

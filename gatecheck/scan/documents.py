@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import json
 import re
 from collections.abc import Iterator
 from dataclasses import replace
@@ -100,13 +99,18 @@ def _records_inside(value: Any, path: Path) -> Iterator[Path]:
 
 
 def _record(document: Document, value: Any, path: Path, place: Place) -> Iterator[Found | Problem]:
+    record, faults = read_record(value) if document.small else (None, ())
+    if record is not None:
+        # What else a record may not be is a fault of some field too, or takes more room than there is.
+        yield Found(record, place, value)
+        return
     flaws, readable = flaws_of(value)
     flawed = [flaw.path for flaw in flaws]
     record, faults = read_record(value) if readable else (None, ())
     # A refused value is no value of any type, which its own sentence says better than the fault it leads to.
     faults = (*flaws, *(fault for fault in faults if not any(fault.path[: len(at)] == at for at in flawed)))
     if record is not None and not faults:
-        yield Found(record, place, _digest(value))
+        yield Found(record, place, value)
     for fault in faults:
         yield _fault(document, value, path, fault)
 
@@ -127,10 +131,3 @@ def _field(path: Path) -> str:
 def named(name: str) -> str:
     """Return a name from a file as it may stand in a message: quoted and cut, unless it is plain."""
     return name if _TAME.fullmatch(name) else shown(name)
-
-
-def _digest(value: Any) -> str:
-    import hashlib  # noqa: PLC0415  # costs start-up time, and a scan without records does not need it
-
-    canonical = json.dumps(value, sort_keys=True, separators=(",", ":"), ensure_ascii=True)
-    return hashlib.sha256(canonical.encode()).hexdigest()

@@ -5,11 +5,10 @@ from __future__ import annotations
 import re
 from typing import Any
 
-from gatecheck.scan.readers.document import DEEPEST, Refused
+from gatecheck.scan.readers.document import DEEPEST, LONGEST_TEXT, Refused
 from gatecheck.schema.read import Fault, Path
 
 MOST_VALUES = 10_000
-LONGEST_TEXT = 10_000
 
 _SURROGATE = re.compile("[\ud800-\udfff]")
 
@@ -50,9 +49,14 @@ def _members(path: Path, value: Any) -> list[tuple[Path, Any]]:
 def _flaw(path: Path, value: Any) -> Fault | None:
     if isinstance(value, Refused):
         return Fault(path, value.message, value.advice)
-    for text in (value, path[-1] if path else None):
-        if isinstance(text, str) and len(text) > LONGEST_TEXT:
-            return Fault(path, f"{_TOO_LONG} {len(text)} characters", f"keep it to {LONGEST_TEXT}")
-        if isinstance(text, str) and _SURROGATE.search(text):
-            return Fault(path, "holds half of a surrogate pair", "write the text in valid Unicode")
+    return _flaw_of_text(path, value) or _flaw_of_text(path, path[-1] if path else None)
+
+
+def _flaw_of_text(path: Path, text: Any) -> Fault | None:
+    if not isinstance(text, str):
+        return None
+    if len(text) > LONGEST_TEXT:
+        return Fault(path, f"{_TOO_LONG} {len(text)} characters", f"keep it to {LONGEST_TEXT}")
+    if not text.isascii() and _SURROGATE.search(text):
+        return Fault(path, "holds half of a surrogate pair", "write the text in valid Unicode")
     return None

@@ -3,18 +3,18 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 from pathlib import Path
 
 from gatecheck import git
 from gatecheck.errors import CannotJudge
+from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Place, Problem
 from gatecheck.scan.flaws import flaws_of
 from gatecheck.scan.readers import READERS, suffix_of
 from gatecheck.scan.readers.document import Document
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class OneFile:
     """A file that was read: its SHA-256 digest, and the one document in it or what is wrong with it."""
 

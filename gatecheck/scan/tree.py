@@ -5,13 +5,13 @@ from __future__ import annotations
 import os
 import posixpath
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
 from pathlib import Path
 from typing import Literal
 
 from gatecheck import git
 from gatecheck.errors import CannotJudge
 from gatecheck.git import Entry, safe
+from gatecheck.model.struct import struct
 
 #: A longer file is not searched.
 LONGEST_SEARCHED = 256 << 20
@@ -21,7 +21,7 @@ _MOST_LINKS = 40
 _FLAGS = os.O_RDONLY | sum(getattr(os, name, 0) for name in ("O_NOFOLLOW", "O_NONBLOCK", "O_BINARY"))
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Unread:
     """Why there are no bytes of a file; `gone` is what the work tree no longer has."""
 
@@ -29,7 +29,7 @@ class Unread:
     says: str = ""
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Tree:
     """A listed folder; with `commit` its state there, else its work tree."""
 

@@ -18,14 +18,13 @@ def json_schema(model: type, title: str) -> dict[str, Any]:
 
 
 def _form(form: Form) -> dict[str, Any]:
-    required = [name for name, part in form.parts.items() if part.required]
     schema: dict[str, Any] = {
         "type": "object",
         "description": form.says,
         "properties": {name: _part(part) for name, part in form.parts.items()},
         "additionalProperties": False,
     }
-    return {**schema, "required": required} if required else schema
+    return {**schema, "required": list(form.required)} if form.required else schema
 
 
 def _part(part: Part) -> dict[str, Any]:

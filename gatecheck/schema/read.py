@@ -6,21 +6,22 @@ import functools
 import math
 import re
 from collections.abc import Callable, Iterable, Mapping
-from dataclasses import dataclass
 from typing import Any, TypeVar
 
 from gatecheck.model.marks import Range
 from gatecheck.model.numbers import Reported, exact, parse_reported
+from gatecheck.model.struct import struct
 from gatecheck.schema.shapes import Choice, Flag, Form, Items, Number, Shape, Table, Text, form_of
 
 Path = tuple[str | int, ...]
 _SHOWN = 40
 _FEW_FAULTS = 20
 _MISSING = object()
+_KEY = Text()
 M = TypeVar("M")
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Fault:
     """One thing wrong with a document: the field, what is wrong, and what to do."""
 
@@ -50,7 +51,7 @@ def read(model: type[M], document: Any) -> tuple[M | None, tuple[Fault, ...]]:
     return (None, tuple(reader.faults)) if reader.faults else (value, ())
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class _Reader:
     """Walks a document beside its shape and gathers faults; after a fault nothing is built."""
 
@@ -66,23 +67,25 @@ class _Reader:
     def form(self, form: Form, found: Any, path: Path) -> Any:
         if not isinstance(found, Mapping):
             return self.fault(path, f"is {shown(found)}, not an object", f"write an object: {form.says}")
-        for key in found:
-            if key not in form.parts:
-                self.unknown_key((*path, str(key)), form.parts)
+        known = {key: raw for key, raw in found.items() if key in form.parts}
+        if len(known) < len(found):
+            self.unknown_keys(path, [key for key in found if key not in form.parts], form.parts)
         values = {}
-        for name, part in form.parts.items():
-            raw = found.get(name)
+        for key, raw in known.items():
             if raw is not None:
-                values[part.name] = self.value(part.shape, raw, (*path, name))
-            elif part.required:
-                self.fault((*path, name), "is missing", f"give it: {part.says}")
+                part = form.parts[key]
+                values[part.name] = self.value(part.shape, raw, (*path, key))
+        for name in form.required:
+            if found.get(name) is None:
+                self.fault((*path, name), "is missing", f"give it: {form.parts[name].says}")
         return _MISSING if self.faults else form.makes(**values)
 
-    def unknown_key(self, path: Path, known: Iterable[str]) -> None:
-        # To look for the nearest word takes time, which a document of unknown keys alone must not multiply.
-        few = len(self.faults) < _FEW_FAULTS
-        advice = nearest_advice(str(path[-1]), known) if few else f"known: {', '.join(sorted(known))}"
-        self.fault(path, "is no known key", advice)
+    def unknown_keys(self, path: Path, keys: Iterable[Any], known: Iterable[str]) -> None:
+        for key in map(str, keys):
+            # To look for the nearest word takes time, which a document of unknown keys alone must not multiply.
+            few = len(self.faults) < _FEW_FAULTS
+            advice = nearest_advice(key, known) if few else f"known: {', '.join(sorted(known))}"
+            self.fault((*path, key), "is no known key", advice)
 
     def items(self, items: Items, found: Any, path: Path) -> Any:
         if items.lone and not isinstance(found, list):
@@ -98,7 +101,10 @@ class _Reader:
             return self.fault(path, f"is {shown(found)}, not an object", "write keys with their values")
         if table.member is None:
             return dict(found)
-        return {str(key): self.value(table.member, each, (*path, str(key))) for key, each in found.items()}
+        return {
+            self.text(_KEY, key, (*path, key)): self.value(table.member, each, (*path, key))
+            for key, each in found.items()
+        }
 
     def number(self, number: Number, found: Any, path: Path) -> Any:
         if isinstance(found, str) and number.reported:
@@ -130,7 +136,7 @@ class _Reader:
     def text(self, text: Text, found: Any, path: Path) -> Any:
         if not isinstance(found, str):
             return self.fault(path, f"is {shown(found)}, not a text", "put it in quotes")
-        if any("\ud800" <= letter <= "\udfff" for letter in found):
+        if not found.isascii() and any("\ud800" <= letter <= "\udfff" for letter in found):
             return self.fault(path, "holds half of a surrogate pair", "write the text in valid Unicode")
         if text.pattern is not None and not _pattern(text.pattern.regex).search(found):
             return self.fault(path, f"is {shown(found)}", f"give {text.pattern.words}")

@@ -5,28 +5,28 @@ from __future__ import annotations
 import dataclasses
 import types
 from collections.abc import Mapping
-from dataclasses import dataclass
 from typing import Annotated, Any, Literal, TypeVar, Union, get_args, get_origin, get_type_hints
 
 from gatecheck.model.marks import Length, OneOrMore, Pattern, Range
 from gatecheck.model.numbers import Reported
+from gatecheck.model.struct import struct
 
 M = TypeVar("M")
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Choice:
     """One of a few words or numbers."""
 
     values: tuple[str | int, ...]
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Flag:
     """True or false."""
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Number:
     """A finite number; `whole` admits integers alone, `reported` also admits a string as reported."""
 
@@ -35,14 +35,14 @@ class Number:
     reported: bool = False
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Text:
     """A text that matches a pattern."""
 
     pattern: Pattern | None = None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Items:
     """A list of one shape; `lone` admits the only member in place of the list."""
 
@@ -52,14 +52,14 @@ class Items:
     lone: bool = False
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Table:
     """Free keys, each with a value of one shape (`None`: any value, read later by whoever knows it)."""
 
     member: Shape | None
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Part:
     """One field of a `Form`."""
 
@@ -69,13 +69,14 @@ class Part:
     says: str
 
 
-@dataclass(frozen=True)
+@struct
 class Form:
     """An object with known keys, read into the dataclass `makes`."""
 
     makes: type
     says: str
     parts: Mapping[str, Part]
+    required: tuple[str, ...]
 
 
 Shape = Choice | Flag | Number | Text | Items | Table | Form
@@ -100,7 +101,8 @@ def form_of(model: type) -> Form:
 def _form(model: Any) -> Form:
     hints = get_type_hints(model, include_extras=True)
     parts = {field.name.rstrip("_"): _part(field, hints[field.name]) for field in dataclasses.fields(model)}
-    return Form(model, (model.__doc__ or "").split("\n")[0], parts)
+    required = tuple(name for name, part in parts.items() if part.required)
+    return Form(model, (model.__doc__ or "").split("\n")[0], parts, required)
 
 
 def _part(field: dataclasses.Field[Any], hint: Any) -> Part:

@@ -142,7 +142,7 @@ def test_an_unknown_base_stops_the_gate(project: Project, document: Any) -> None
     settings = {"GITHUB_EVENT_NAME": "pull_request", "GITHUB_SHA": project.merge}
     settings["GITHUB_EVENT_PATH"] = project.event(document)
 
-    with pytest.raises(StopError, match="^the base of this pull request is not known: .*fetch-depth: 2") as stop:
+    with pytest.raises(StopError, match=r"^the base of this pull request is not known: .*fetch-depth: 2") as stop:
         project.base(project.checkout(project.branch), **settings)
     assert stop.value.status == CANNOT_JUDGE == 3
 

@@ -234,7 +234,7 @@ def is_invisible(character: str) -> bool:
 @settings(deadline=None)
 @given(st.lists(st.tuples(TEXTS, st.none() | TEXTS, PLACES), max_size=3), st.lists(PROBLEMS, max_size=2))
 def test_the_survey_holds_no_command(records: list[tuple[str, str | None, Place]], problems: list[Problem]) -> None:
-    found = tuple(Found(Record("record/1", name, claim), at, "0" * 64) for name, claim, at in records)
+    found = tuple(Found(Record("record/1", name, claim), at, {}) for name, claim, at in records)
     text = survey(Scan(found, tuple(problems), 9), 80)
     assert commands_in(text) == []
     assert text.encode()

@@ -10,9 +10,9 @@ from pathlib import Path
 
 sys.path.insert(0, str(Path(__file__).parents[1]))
 
-from render.sample_verdicts import BY_NAME, DRAINAGE, FALLS_SHORT  # noqa: E402  # found by the path set above
+from render.sample_verdicts import BY_NAME, DRAINAGE, FALLS_SHORT  # found by the path set above
 
-from gatecheck.render import RENDERERS, account, explain  # noqa: E402
+from gatecheck.render import RENDERERS, account, explain
 
 EXPECTED = Path(__file__).parent / "expected"
 

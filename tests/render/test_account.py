@@ -100,8 +100,8 @@ def test_survey() -> None:
     silent = Record("record/1", "a/colour")
     scan = Scan(
         (
-            Found(silent, Place("results/z.json", 1), "0" * 64),
-            Found(claimed, Place("results/b.json", 4), "1" * 64, (Place("notebooks/b.ipynb", 30, 2, 1),)),
+            Found(silent, Place("results/z.json", 1), {}),
+            Found(claimed, Place("results/b.json", 4), {}, (Place("notebooks/b.ipynb", 30, 2, 1),)),
         ),
         (BROKEN,),
         7,

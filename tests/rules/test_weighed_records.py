@@ -299,3 +299,31 @@ def test_the_p_that_would_do_is_rounded_so_that_it_does(tmp_path: Path, limit: f
     assert f"A p-value of {p} or less would do" in said["remedy"]
     ratio = weigh.log_lr_bound(math.log(float(p)))
     assert float(weigh.false_positive_risk(ratio, 0.5)) <= limit
+
+
+def test_an_effect_in_the_other_direction_is_told(tmp_path: Path) -> None:
+    """One side was tested, and the effect points to the other: no sample makes that a finding."""
+    record = made(test={"name": "t", "statistic": "t", "value": -2.5, "df": 20, "sides": 1, "tail": "greater"})
+
+    said = judge(tmp_path, record).rule("false-positive-risk")
+
+    assert said["observed"] == 0.5
+    assert "p = 0.9894 (t(20) = -2.5, 18 + 18 plots)" in said["message"]
+    assert said["remedy"] == (
+        "One would have to be 95 % sure beforehand. "
+        "As it stands, the effect points away from the direction tested: do not claim it."
+    )
+
+
+def test_an_exact_p_is_its_own_and_not_that_of_a_statistic_beside_it(tmp_path: Path) -> None:
+    """The bound takes an exact p as it is, and the statistic's where there is none."""
+    policy = changed(POLICY, evidence__alternative="bound")
+    test = {"name": "chi-squared", "statistic": "chi2", "value": 4.2, "df": 1, "p_kind": "exact"}
+    (tmp_path / "exact").mkdir()
+    (tmp_path / "none").mkdir()
+
+    exact = evidence(tmp_path / "exact", made(test={**test, "p": 0.06}), policy)
+    none = evidence(tmp_path / "none", made(test=test), policy)
+
+    assert exact["log_likelihood_ratio"] == pytest.approx(float(weigh.log_lr_bound(math.log(0.06))))
+    assert none["log_likelihood_ratio"] == pytest.approx(float(weigh.log_lr_bound(stats.chi2.logsf(4.2, 1))))

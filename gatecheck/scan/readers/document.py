@@ -7,11 +7,14 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Any
 
+from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Place, Problem
 from gatecheck.schema.read import Path, shown
 
 #: Deeper nesting than this is refused.
 DEEPEST = 64
+#: A longer text in a record is refused.
+LONGEST_TEXT = 10_000
 #: The media type of a record among the outputs of a notebook.
 MEDIA_TYPE = "application/vnd.gatecheck.record+json"
 
@@ -22,21 +25,23 @@ _SAVE = "save the file as UTF-8"
 _UNKNOWN = "leave the field out where it is unknown"
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Document:
     """One parsed document.
 
     `locate` gives the 1-based line of the field at a path, or of the nearest that exists around it. `output`
-    is true for what stands in a notebook under the media type of records, and so must be one.
+    is true for what stands in a notebook under the media type of records, and so must be one. `small` is true
+    where the whole file is too small to hold a text or a list beyond measure.
     """
 
     value: Any
     place: Place
     locate: Callable[[Path], int]
     output: bool = False
+    small: bool = False
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class Refused:
     """Stands in a document for a value that its format cannot hold, in the words of a fault."""
 

@@ -10,6 +10,7 @@ from typing import Any
 from gatecheck.model.verdict import Place, Problem
 from gatecheck.scan.readers.document import (
     DEEPEST,
+    LONGEST_TEXT,
     Broken,
     Document,
     conflict,
@@ -35,7 +36,8 @@ def read(path: str, content: bytes) -> tuple[Document | Problem, ...]:
     except Broken as broken:
         return (broken.problem(path),)
     positions = Positions(text)
-    return (Document(value, Place(path, positions.line(())), positions.line),)
+    small = len(content) < LONGEST_TEXT
+    return (Document(value, Place(path, positions.line(())), positions.line, small=small),)
 
 
 def parsed(text: str) -> Any:

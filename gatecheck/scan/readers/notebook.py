@@ -8,9 +8,9 @@ from __future__ import annotations
 
 import functools
 from collections.abc import Iterator
-from dataclasses import dataclass
 from typing import Any
 
+from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Place, Problem
 from gatecheck.scan.readers.document import MEDIA_TYPE, Broken, Document, Refused, decoded
 from gatecheck.scan.readers.json_text import parsed
@@ -22,7 +22,7 @@ _NAME = "gatecheck"
 _QUOTED = f'"{MEDIA_TYPE}"'
 
 
-@dataclass(frozen=True, slots=True)
+@struct
 class _Entry:
     """A value under a media type of ours: its path in the notebook, and its place."""
 
