@@ -85,7 +85,7 @@ def _tell_width(table: Table, row: int, _: Agreement) -> Said:
 def _tell_statistic(table: Table, row: int, agreement: Agreement) -> Said:
     test = table.record(row).test or Test()
     source = "standard error" if table.columns.estimate.standard_error.known[row] else "interval"
-    size = float(agreement.low[row] + agreement.high[row]) / 2
+    size = float(agreement.low[row] / 2 + agreement.high[row] / 2)
     return Said(
         f"estimate and {source}{_on_log_scale(table, row)} give {test.statistic} = {size:.3g} in size, and "
         f"{tell_number(test.value)} is reported",

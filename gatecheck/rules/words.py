@@ -43,7 +43,8 @@ def tell_result(columns: Columns, evidence: Evidence, row: int) -> str:
     """The result at the head of a message: `p = 0.034 (t(34) = 2.21, 18 + 18 plots)`."""
     record = columns.found[row].record
     test = record.test or Test()
-    head = _p(test) or f"p = {_digits(math.exp(evidence.statistics.log_p[row]))}"
+    log_p = evidence.statistics.log_p[row]
+    head = _p(test) or (f"p = {_digits(math.exp(log_p))}" if math.isfinite(log_p) else "The result")
     behind = [tell_statistic(test) or test.name or "", tell_sample(record.sample)]
     inside = ", ".join(part for part in behind if part)
     return f"{head} ({inside})" if inside else head
@@ -69,9 +70,9 @@ def plural(unit: str | None) -> str:
 
 
 def tell_number(number: Reported | None) -> str:
-    """A number as it was reported; an exact one in a few digits."""
+    """A number as it was reported; an exact one in a few digits. A limit that is not there is unbounded."""
     if number is None:
-        return "none"
+        return "unbounded"
     return number.text.strip() if number.text is not None else _digits(number.value)
 
 

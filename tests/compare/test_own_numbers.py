@@ -131,6 +131,10 @@ def test_estimates_that_agree_raise_no_alarm(tmp_path: Path, estimate: Document)
             "the estimate 9.2 lies outside its own interval 0.34 to 8.06",
         ),
         (
+            {"value": 9.2, "interval": {"level": 0.95, "high": 8.06}},
+            "the estimate 9.2 lies outside its own interval unbounded to 8.06",
+        ),
+        (
             {"value": 4.2, "standard_error": 1.9, "interval": {"level": 0.95, "low": 2.3, "high": 6.1}},
             "the 95 % interval 2.3 to 6.1 reaches 1.9 to either side, which is 1 standard errors of 1.9",
         ),
