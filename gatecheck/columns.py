@@ -69,7 +69,8 @@ class Tests:
 class Estimates:
     """The estimates, on the scale on which their interval is symmetric and less the value of no effect.
 
-    On a log scale these are natural logarithms of ratios. `null` is the value of no effect as given.
+    On a log scale these are natural logarithms of ratios. `null` is the value of no effect as given; `smallest`
+    is the distance of the smallest effect of interest from it.
     """
 
     value: Interval
@@ -80,6 +81,9 @@ class Estimates:
     adjusted: Booleans
     null: Floats
     log_scale: Booleans
+    margin_low: Floats
+    margin_high: Floats
+    smallest: Floats
 
 
 @struct
@@ -105,7 +109,9 @@ class Columns:
     own_prior: Floats
     claims: Booleans
     harm: Booleans
+    importance: Booleans
     no_effect_aim: Booleans
+    noninferiority: Booleans
     estimation_aim: Booleans
 
 
@@ -122,6 +128,8 @@ def columns_of(found: Sequence[Found]) -> Columns:
         own_prior=_floats([_NAN if r.prior is None else r.prior.probability for r in records]),
         claims=_booleans([r.claim is not None for r in records]),
         harm=_booleans([r.harm for r in records]),
+        importance=_booleans([r.importance for r in records]),
+        noninferiority=_booleans([r.aim == "noninferiority" for r in records]),
         no_effect_aim=_booleans([r.aim in {"equivalence", "noninferiority"} for r in records]),
         estimation_aim=_booleans([r.aim == "estimation" for r in records]),
     )
@@ -161,7 +169,14 @@ def _estimates(estimates: Sequence[Estimate | None]) -> Estimates:
         adjusted=_booleans([limit is not None and limit.adjusted for limit in limits]),
         null=null,
         log_scale=log_scale,
+        margin_low=from_null([_margin(e, 0) for e in estimates]).value,
+        margin_high=from_null([_margin(e, 1) for e in estimates]).value,
+        smallest=np.abs(from_null([None if e is None else e.smallest_effect for e in estimates]).value),
     )
+
+
+def _margin(estimate: Estimate | None, end: int) -> Reported | None:
+    return None if estimate is None or estimate.margin is None else estimate.margin[end]
 
 
 def _from_null(numbers: Floats, null: Floats, log_scale: Booleans) -> Floats:

@@ -106,13 +106,10 @@ def _choose(
 ) -> tuple[AlternativeName | None, ...]:
     """The first alternative of the policy that each record allows.
 
-    A test without a likelihood ratio of its own, such as a rank test, is judged by the bound. A claim of no
-    effect is not backed by evidence for an effect, so none is chosen.
+    A test without a likelihood ratio of its own, such as a rank test, is judged by the bound.
     """
 
     def chosen(row: int) -> AlternativeName | None:
-        if columns.no_effect_aim[row]:
-            return None
         has_ratio = columns.test.statistic[row] != NO_STATISTIC
         names: tuple[AlternativeName, ...] = settings[row].alternative if has_ratio else ("bound",)
         return next((name for name in names if np.isfinite(under[name][row])), None)
@@ -198,11 +195,6 @@ def _one_df(columns: Columns) -> Booleans:
 def why_unweighed(columns: Columns, evidence: Evidence, row: int, settings: EvidenceSettings) -> tuple[str, str]:
     """Say why row `row` has no likelihood ratio, and what to do about it."""
     test = columns.found[row].record.test
-    if columns.no_effect_aim[row]:
-        return (
-            "a claim of no effect, or of none worse than a margin, is not backed by evidence for an effect",
-            "evidence for such an aim is not weighed: judge it outside and set this rule to note for its aim",
-        )
     if test is None or (test.p is None and test.value is None):
         return "the record gives neither a statistic nor a p-value", "give test.statistic, value, df and p"
     if test.value is None and test.p is not None and test.p.relation != ">" and test.p.value == 0:

@@ -39,8 +39,10 @@ class FigureTable:
     def of_row(self, row: int, *, in_full: bool) -> tuple[Figures | None, tuple[Figures, ...]]:
         """The figures under the alternative that was chosen, and `in_full` also those under every other one.
 
-        A record that claims nothing and has no evidence has no figures.
+        A record that claims nothing and has no evidence has no figures, and a claim of no effect none for one.
         """
+        if self.table.columns.no_effect_aim[row]:
+            return None, ()
         chosen = self.table.evidence.alternative[row]
         rest = tuple(self._under(row, name) for name in self._others(row)) if in_full else ()
         if chosen is not None:

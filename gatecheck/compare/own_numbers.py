@@ -165,7 +165,8 @@ def _statistic_from_estimate(columns: Columns, half: Interval) -> Agreement:
     value_low, value_high = _absolute(test.value)
     slack = np.where(test.is_one_of(T), _SAME_MULTIPLE, _OTHER_METHOD)
     comparable = test.is_one_of(T, Z) & test.value.known & np.isfinite(low) & np.isfinite(high)
-    checked = comparable & (own | ~estimate.adjusted) & (error_low > 0)
+    # Against a margin the statistic counts from the margin, not from no effect.
+    checked = comparable & (own | ~estimate.adjusted) & (error_low > 0) & ~columns.no_effect_aim
     agrees = (low * (1 - slack) <= value_high) & (high * (1 + slack) >= value_low)
     return Agreement("statistic", checked, agrees, low, high)
 
@@ -199,5 +200,5 @@ def _interval_and_p(columns: Columns, half: Interval) -> Agreement:
     plain = test.p_is_raw & test.p.known & np.isfinite(test.p.high) & ~estimate.adjusted
     # An omnibus statistic tests more than the one estimate beside it.
     single = ~test.is_one_of(F, CHI2) | (test.df1.value == 1)
-    checked = plain & single & np.isfinite(implied)
+    checked = plain & single & np.isfinite(implied) & ~columns.no_effect_aim
     return Agreement("sides", checked, ~(differs & far), implied, implied)

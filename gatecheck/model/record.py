@@ -228,6 +228,7 @@ class Record:
     status: Annotated[Status, "whether the test was planned"] = "exploratory"
     role: Annotated[Role, "place of the outcome among the others"] = "other"
     aim: Annotated[Aim, "what the claim is about"] = "difference"
+    importance: Annotated[bool, "true where the claim says that the effect is large enough to matter"] = False
     harm: Annotated[bool, "true for a safety outcome: no strong evidence is demanded to report it"] = False
     aliases: Annotated[tuple[Identifier, ...], "earlier ids"] = ()
     tags: Annotated[tuple[Text, ...], "free words that policy overrides can match"] = ()

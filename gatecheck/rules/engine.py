@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from typing import Literal
 
 import numpy as np
 
@@ -30,8 +31,10 @@ def judge_all(rules: Sequence[Rule], table: Table, *, explain: frozenset[int] = 
 
 def _judge(rule: Rule, table: Table, explain: frozenset[int]) -> list[tuple[int, Finding]]:
     settings = [applied.rules.get(rule.name) for applied in table.applied]
-    bound = table.columns.claims if rule.claims_only else np.ones(len(settings), np.bool_)
-    rows = [row for row, each in enumerate(settings) if each is not None and bound[row]]
+    if not any(settings):
+        return []
+    concerned = rule.concerns(table, settings)
+    rows = [row for row, each in enumerate(settings) if each is not None and concerned[row]]
     if not rows:
         return []
     judging = _Judging(rule, table, settings)
@@ -59,14 +62,19 @@ class _Judging:
             if not known[row]:
                 said = need.missing(self.table, row)
                 return Finding(self.rule.name, "undecided", enforce, None, None, said.message, said.remedy)
-        short = bool(self.judgement.short[row])
+        outcome = self.outcome(row)
         observed, limit = _at(self.judgement.observed, row), _at(self.judgement.limit, row)
-        if not (short or wordy):
-            return Finding(self.rule.name, "met", enforce, observed, limit)
+        if outcome == "met" and not wordy:
+            return Finding(self.rule.name, outcome, enforce, observed, limit)
         said = self.rule.explain(self.table, row, self.settings[row], self.judgement)
-        if not short:
-            return Finding(self.rule.name, "met", enforce, observed, limit, said.message)
-        return Finding(self.rule.name, "short", enforce, observed, limit, said.message, said.remedy)
+        remedy = "" if outcome == "met" else said.remedy
+        return Finding(self.rule.name, outcome, enforce, observed, limit, said.message, remedy)
+
+    def outcome(self, row: int) -> Literal["met", "short", "undecided"]:
+        """What the judgement says of a row that the rule is known to judge."""
+        if self.judgement.known is not None and not self.judgement.known[row]:
+            return "undecided"
+        return "short" if self.judgement.short[row] else "met"
 
 
 def _at(column: Floats | None, row: int) -> float | None:

@@ -17,7 +17,7 @@ from gatecheck.model.shown import percent
 from gatecheck.model.struct import struct
 from gatecheck.policy import RuleSettings
 from gatecheck.rules.mending import tell_mending, tell_prior_to_defend, would_do
-from gatecheck.rules.rule import Judgement, Rule, Said, Table, setting
+from gatecheck.rules.rule import Judgement, Rule, Said, Table, every_claim, setting
 from gatecheck.rules.weighed import EXEMPT, LOG_LIKELIHOOD_RATIO
 from gatecheck.rules.words import tell_alternative, tell_odds, tell_prior, tell_result
 
@@ -61,5 +61,5 @@ RULE = Rule(
     explain=explain,
     needs=(LOG_LIKELIHOOD_RATIO,),
     exempt=EXEMPT,
-    claims_only=True,
+    concerns=every_claim,
 )

@@ -34,12 +34,14 @@ class Judgement:
     """A rule's outcome for all rows: where it falls short, and what was observed against which limit.
 
     `would_do` is the least number of units per group that would mend a row, for the rules that can tell it.
+    Where `known` is false the row is undecided, and the rule explains why.
     """
 
     short: Booleans
     observed: Floats | None = None
     limit: Floats | None = None
     would_do: Floats | None = None
+    known: Booleans | None = None
 
 
 @struct
@@ -48,6 +50,16 @@ class Said:
 
     message: str
     remedy: str = ""
+
+
+def every_row(table: Table, _: Sequence[Any]) -> Booleans:
+    """A rule that concerns every result."""
+    return np.ones(len(table.columns.found), np.bool_)
+
+
+def every_claim(table: Table, _: Sequence[Any]) -> Booleans:
+    """A rule that concerns claims alone."""
+    return table.columns.claims
 
 
 @struct
@@ -71,7 +83,7 @@ class Rule:
     """One rule of a reporting policy.
 
     `settings` is the type of its settings; its functions get the settings of all rows, with `None` where the
-    rule is off. `claims_only` rules say nothing of a record that claims nothing.
+    rule is off. It says nothing of a row that it does not `concern`.
     """
 
     name: str
@@ -81,7 +93,7 @@ class Rule:
     explain: Callable[[Table, int, Any, Judgement], Said]
     needs: tuple[Need, ...] = ()
     exempt: tuple[Exemption, ...] = ()
-    claims_only: bool = False
+    concerns: Callable[[Table, Sequence[Any]], Booleans] = every_row
     always_on: bool = False
 
 

@@ -33,6 +33,10 @@ LOG_LIKELIHOOD_RATIO = Need(lambda table: table.evidence.log_likelihood_ratio, t
 EXEMPT = (
     Exemption(_harm_outcomes, "A safety outcome: nobody needs strong evidence to report a possible harm."),
     Exemption(
+        lambda table, _: table.columns.no_effect_aim,
+        "A claim of no effect is judged by no-effect-support, not by evidence for an effect.",
+    ),
+    Exemption(
         lambda table, _: table.columns.estimation_aim,
         "The claim is an estimate: it asserts no effect over none.",
     ),

@@ -47,8 +47,8 @@ def applied(overrides: list[Document], path: str = "results/a.json", **record: A
             (
                 "rules.false-positive-rsk",
                 "is no known rule",
-                "the nearest known one is false-positive-risk (known: false-positive-risk, numbers-agree, "
-                "prior-needed, reported-in-full)",
+                "the nearest known one is false-positive-risk (known: false-positive-risk, "
+                "no-effect-support, numbers-agree, practical-size, prior-needed, reported-in-full, robust)",
             ),
         ),
         (
@@ -108,11 +108,11 @@ def test_a_document_that_is_no_policy_is_one_fault() -> None:
 def test_a_rule_that_is_off_needs_no_other_setting_and_says_nothing() -> None:
     assert faults_of({**POLICY, "rules": {FPR: {"enforce": "off"}}}) == []
     asked = applied([{"match": {"id": "drainage/*"}, "rules": {FPR: {"enforce": "off"}}}])
-    assert sorted(asked.rules) == ["numbers-agree"]
+    assert sorted(asked.rules) == ["no-effect-support", "numbers-agree"]
 
 
-def test_a_rule_that_is_not_named_is_off_save_the_one_always_on() -> None:
-    assert sorted(applied([]).rules) == [FPR, "numbers-agree"]
+def test_a_rule_that_is_not_named_is_off_save_those_always_on() -> None:
+    assert sorted(applied([]).rules) == [FPR, "no-effect-support", "numbers-agree"]
 
 
 @pytest.mark.parametrize(
@@ -176,6 +176,7 @@ def test_the_starting_policy_notes_what_is_exploratory() -> None:
 
     assert {name: each.enforce for name, each in sorted(asked.rules.items())} == {
         FPR: "note",
+        "no-effect-support": "block",
         "numbers-agree": "block",
         "prior-needed": "note",
         "reported-in-full": "block",

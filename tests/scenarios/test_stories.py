@@ -172,8 +172,9 @@ def test_a_claim_of_no_effect_is_not_judged_by_evidence_for_one(tmp_path: Path) 
 
     answer = judge(tmp_path, record)
 
-    assert (answer.status, answer.claim()["verdict"]) == (3, "undecided")
-    assert "a claim of no effect" in answer.rule("false-positive-risk")["message"]
+    assert (answer.status, answer.claim()["verdict"]) == (1, "falls-short")
+    assert answer.rule("false-positive-risk")["outcome"] == "does-not-apply"
+    assert "gives no margin" in answer.rule("no-effect-support")["message"]
 
 
 def test_exploratory_work_is_left_alone(tmp_path: Path) -> None:

@@ -1,0 +1,89 @@
+"""Rule `practical-size`: significant is not the same as large enough to matter."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Any
+
+import pytest
+from support import POLICY, Document, changed, drainage, judge
+
+RULE = "practical-size"
+POLICY_ON = changed(POLICY, rules={RULE: {}})
+#: 2.4 million users an arm, 10.00 % against 10.10 %: z = 3.64, interval .05 to .15, smallest effect .30 points.
+LIFT: Document = {
+    "claim": "A worthwhile lift in conversion.",
+    "importance": True,
+    "test": {"name": "two-proportion z", "statistic": "z", "value": 3.64, "p": "0.00027"},
+    "estimate": {
+        "measure": "difference",
+        "value": "0.10",
+        "unit": "points",
+        "interval": {"level": 0.95, "low": "0.05", "high": "0.15"},
+        "smallest_effect": "0.30",
+    },
+    "sample": {"unit": "user", "n": 4_800_000},
+    "alternative": ...,
+}
+
+
+def lift(**changes: Any) -> Document:
+    """The lift with other values."""
+    return changed(drainage(**LIFT), **changes)
+
+
+def test_a_trivial_effect_in_a_huge_sample_falls_short_of_importance(tmp_path: Path) -> None:
+    answer = judge(tmp_path, lift(), policy=POLICY_ON)
+
+    said = answer.rule(RULE)
+    assert (answer.status, said["outcome"], said["limit"]) == (1, "short", 0.3)
+    assert said["observed"] == pytest.approx(0.15)
+    assert "is below the smallest effect of interest, 0.30" in said["message"]
+    assert said["remedy"] == "The wording that the data allow: a difference smaller than we care about."
+
+
+def test_the_claim_that_there_is_a_difference_stands(tmp_path: Path) -> None:
+    """It says nothing of importance, so it is not held to the smallest effect unless the policy says so."""
+    plain = lift(importance=..., claim="Conversion differs.")
+    strict = changed(POLICY_ON, rules={RULE: {"claims": "all"}})
+    (tmp_path / "a").mkdir()
+    (tmp_path / "b").mkdir()
+
+    assert judge(tmp_path / "a", plain, policy=POLICY_ON).status == 0
+    assert judge(tmp_path / "b", plain, policy=strict).rule(RULE)["outcome"] == "short"
+
+
+@pytest.mark.parametrize(
+    ("changes", "outcome"),
+    [
+        ({"estimate__smallest_effect": "0.15"}, "met"),
+        ({"estimate__smallest_effect": "0.12"}, "met"),
+        ({"estimate__smallest_effect": "-0.30"}, "short"),
+        ({"estimate__smallest_effect": ...}, "undecided"),
+        ({"estimate__interval": ...}, "undecided"),
+        ({"estimate": ...}, "undecided"),
+    ],
+)
+def test_an_interval_that_reaches_it_stands_and_one_that_is_missing_is_undecided(
+    tmp_path: Path, changes: Document, outcome: str
+) -> None:
+    answer = judge(tmp_path, lift(**changes), policy=POLICY_ON)
+
+    assert answer.rule(RULE)["outcome"] == outcome
+    assert answer.status == {"met": 0, "short": 1, "undecided": 3}[outcome]
+
+
+@pytest.mark.parametrize(("smallest", "outcome"), [(1.5, "short"), (1.25, "met"), (0.6, "short")])
+def test_a_ratio_is_measured_from_one_on_the_log_scale(tmp_path: Path, smallest: float, outcome: str) -> None:
+    """Odds ratio 1.2 (1.1 to 1.31): wholly below 1.5, and as far from 1 as 0.6 is not."""
+    estimate = {
+        "measure": "odds ratio",
+        "value": 1.2,
+        "scale": "log",
+        "interval": {"level": 0.95, "low": 1.1, "high": 1.31},
+        "smallest_effect": smallest,
+    }
+
+    answer = judge(tmp_path, lift(test={"name": "Wald", "p": 0.00005}, estimate=estimate), policy=POLICY_ON)
+
+    assert answer.rule(RULE)["outcome"] == outcome
