@@ -8,12 +8,14 @@ import numpy as np
 
 from gatecheck import weigh
 from gatecheck.model.shown import percent
-from gatecheck.model.verdict import Figures
+from gatecheck.model.verdict import Figures, Sensitivity
 from gatecheck.policy import AlternativeName, Applied
 from gatecheck.rules.rule import Table
 from gatecheck.rules.weighed import tell_unweighed
 
 _USUAL_RISK = 0.05
+#: From what a screen may start with to near certainty.
+PRIORS = (0.01, 0.05, 0.1, 0.2, 0.3, 0.4, 0.5, 0.6, 0.7, 0.8, 0.9, 0.95, 0.99)
 _ERRS = {
     "observed-effect": "errs in favour of the claim: hardly any effect fits the data better than the one observed",
     "design-effect": "right if the effect is as planned; a smaller or larger true effect gives another figure",
@@ -51,6 +53,17 @@ class FigureTable:
             return None, rest
         why = tell_unweighed(self.table, row).message
         return Figures("none", None, *self._prior(row), None, None, why), rest
+
+    def sensitivity(self, row: int) -> Sensitivity | None:
+        """The risk over a grid of priors under every alternative; `None` where there is nothing to weigh."""
+        chosen = self.table.evidence.alternative[row]
+        if chosen is None or self.table.columns.no_effect_aim[row]:
+            return None
+        names = [chosen, *self._others(row)]
+        log_lr = np.array([self.table.evidence.under[name][row] for name in names])
+        risks = weigh.false_positive_risk(log_lr[:, None], np.array(PRIORS))
+        limit = getattr(self.table.applied[row].rules.get("false-positive-risk"), "limit", None)
+        return Sensitivity(PRIORS, tuple(names), tuple(tuple(map(float, each)) for each in risks), limit)
 
     def _others(self, row: int) -> list[AlternativeName]:
         evidence = self.table.evidence

@@ -7,7 +7,7 @@ these become findings, and findings become the verdict, from which everything th
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import field
+from dataclasses import field, replace
 from pathlib import Path
 
 from gatecheck import git
@@ -69,6 +69,10 @@ def _check(request: Request, standing: Standing, policy: Policy) -> Verdict:
     judged = tuple(
         _judged(one, findings[row], figures.of_row(row, in_full=row in explained), unchanged)
         for row, one in enumerate(tree.found)
+    )
+    judged = tuple(
+        replace(one, sensitivity=figures.sensitivity(row)) if row in explained else one
+        for row, one in enumerate(judged)
     )
     problems = (*tree.problems, *_too_few(tree, policy))
     return Verdict(standing.used, judged, problems, standing.notes)

@@ -6,6 +6,7 @@ from dataclasses import dataclass, field
 from typing import Literal
 
 from gatecheck.model.exit import Exit
+from gatecheck.model.struct import struct
 
 Outcome = Literal["met", "short", "waived", "does-not-apply", "undecided"]
 Enforce = Literal["block", "note", "off"]
@@ -71,6 +72,20 @@ class Finding:
         return self.enforce == "block" and self.outcome in {"short", "undecided"}
 
 
+@struct
+class Sensitivity:
+    """The false positive risk of one result over a grid of priors, under every alternative that it allows.
+
+    `risks` holds a row for each of `alternatives` (the one chosen first) with a risk for each of `priors`;
+    `limit` is the risk that the policy allows, where it says.
+    """
+
+    priors: tuple[float, ...]
+    alternatives: tuple[str, ...]
+    risks: tuple[tuple[float, ...], ...]
+    limit: float | None
+
+
 @dataclass(frozen=True, slots=True)
 class Judged:
     """One record with all that the rules say of it."""
@@ -84,6 +99,7 @@ class Judged:
     also_at: tuple[Place, ...] = ()
     counts_now: bool = True
     alternatives: tuple[Figures, ...] = ()
+    sensitivity: Sensitivity | None = None
 
     @property
     def standing(self) -> Standing:

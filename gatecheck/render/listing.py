@@ -5,6 +5,7 @@ from __future__ import annotations
 from gatecheck.model.found import Found, Scan
 from gatecheck.model.verdict import Figures, Finding, Judged, Verdict
 from gatecheck.render import order, words
+from gatecheck.render.curve import risk_against_prior
 from gatecheck.render.layout import BLANK_LINE, finding, item, labelled, page, paragraph, problem, section
 
 _STANDINGS = {
@@ -73,6 +74,7 @@ def _explained(one: Judged, width: int) -> list[str]:
         "\n".join(line for line in identity if line),
         section("Evidence", evidence or [item("None was computed for this record.", width)]),
         section("The same result under other assumptions", other, BLANK_LINE),
+        section("Risk against prior", [] if one.sensitivity is None else risk_against_prior(one.sensitivity)),
         section("Rules", [_finding(finding, width) for finding in findings], BLANK_LINE),
     ]
 
