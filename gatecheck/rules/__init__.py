@@ -2,6 +2,8 @@
 
 from gatecheck.rules import (
     false_positive_risk,
+    family,
+    looks,
     no_effect_support,
     numbers_agree,
     practical_size,
@@ -17,6 +19,8 @@ RULES: tuple[Rule, ...] = (
     prior_needed.RULE,
     robust.RULE,
     no_effect_support.RULE,
+    looks.RULE,
+    family.RULE,
     practical_size.RULE,
     numbers_agree.RULE,
     reported_in_full.RULE,

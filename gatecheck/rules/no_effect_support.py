@@ -94,7 +94,7 @@ def _as_given(table: Table, row: int, end: float) -> str:
     estimate = table.columns.estimate
     null = float(estimate.null[row])
     value = null * float(np.exp(end)) if estimate.log_scale[row] else null + float(end)
-    return f"{value:.3g}"
+    return f"{value:.3g}" if np.isfinite(value) else "unbounded"
 
 
 RULE = Rule(

@@ -92,6 +92,8 @@ def tell_alternative(columns: Columns, evidence: Evidence, row: int) -> str:
             planned = columns.found[row].record.alternative
             effect = "" if planned is None else f" of {planned.effect:g} ({planned.scale})"
             return f"against the effect{effect} that the study was designed to find"
+        case "default-prior":
+            return "averaged over the default prior of its test (a wider prior favours no effect more)"
         case _:
             return _tell_bound(columns, row)
 
