@@ -15,8 +15,13 @@ if TYPE_CHECKING:
     from collections.abc import Callable, Sequence
     from pathlib import Path
 
+    from gatecheck.policy import Policy
+
 FORMATS = ("json", "summary", "annotations")
 KINDS = ("record", "plan", "policy", "waivers", "verdict")
+TESTS = ("two-sample-t", "one-sample-t", "two-proportions", "correlation")
+BOUNDARIES = ("obrien-fleming", "pocock", "haybittle-peto", "spending-obrien-fleming", "spending-pocock")
+_MOST = 1000
 _WIDTH = 80
 _WIDEST = 140
 
@@ -68,6 +73,7 @@ def _parser() -> argparse.ArgumentParser:
     _add_weigh(commands.add_parser("weigh", help="judge every claim (the main job)"))
     _add_survey(commands.add_parser("survey", help="list the records found, and what cannot be read"))
     _add_explain(commands.add_parser("explain", help="show all reasoning for one record"))
+    _add_design(commands.add_parser("design", help="tell how large a study must be to meet the policy"))
     _add_schema(commands.add_parser("schema", help="print the JSON Schema of a format"))
     _add_start(commands.add_parser("start", help="write a first policy and an example record"))
     return parser
@@ -112,6 +118,34 @@ def _add_explain(parser: argparse.ArgumentParser) -> None:
     parser.set_defaults(act=_explain)
 
 
+def _add_design(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("--test", required=True, choices=TESTS, help=f"one of {', '.join(TESTS)}")
+    parser.add_argument(
+        "--effect", required=True, type=float, help="true effect: d of means, h of proportions, r of a correlation"
+    )
+    parser.add_argument("--assurance", type=_share, default=0.8, help="probability of standing (default: 0.8)")
+    parser.add_argument("--prior", type=_share, help="probability of a real effect (default: that of the policy)")
+    parser.add_argument("--family", type=_whole, default=1, metavar="SIZE", help="number of tests behind the claim")
+    parser.add_argument("--looks", type=_whole, default=1, help="number of planned looks")
+    parser.add_argument("--boundary", choices=BOUNDARIES, default=BOUNDARIES[0], help="boundary of the looks")
+    _add_folder(parser)
+    parser.set_defaults(act=_design)
+
+
+def _share(text: str) -> float:
+    share = float(text)
+    if not 0 < share < 1:
+        raise ValueError(text)
+    return share
+
+
+def _whole(text: str) -> int:
+    number = int(text)
+    if not 1 <= number <= _MOST:
+        raise ValueError(text)
+    return number
+
+
 def _add_schema(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("kind", metavar="KIND", choices=KINDS, help=f"one of {', '.join(KINDS)}")
     parser.set_defaults(act=_schema)
@@ -138,14 +172,10 @@ def _weigh(parsed: argparse.Namespace) -> int:
 
 
 def _survey(parsed: argparse.Namespace) -> int:
-    from gatecheck.policies import standing_policy  # noqa: PLC0415
     from gatecheck.render import survey  # noqa: PLC0415
     from gatecheck.scan import scan  # noqa: PLC0415
 
-    standing = standing_policy(_folder(parsed), None, None)
-    if standing.policy is None:
-        raise CannotJudge("the policy cannot be read", "see `gatecheck weigh` for what is wrong with it")
-    globs = standing.policy.document.scan
+    globs = _readable_policy(parsed).document.scan
     _tell(survey(scan(_folder(parsed), globs.include, globs.exclude), _width()))
     return Exit.STANDS
 
@@ -163,6 +193,27 @@ def _explain(parsed: argparse.Namespace) -> int:
         _tell(account(verdict, _width()))
         return Exit.CANNOT_JUDGE
     raise _Usage(f"there is no record {parsed.id!a}; `gatecheck survey` lists those that there are")
+
+
+def _design(parsed: argparse.Namespace) -> int:
+    from gatecheck.design import design  # noqa: PLC0415
+    from gatecheck.model.design import DesignQuestion  # noqa: PLC0415
+    from gatecheck.render import design as told  # noqa: PLC0415
+
+    asked = DesignQuestion(
+        parsed.test, parsed.effect, parsed.assurance, parsed.prior, parsed.family, parsed.looks, parsed.boundary
+    )
+    _tell(told(design(asked, _readable_policy(parsed)), _width()))
+    return Exit.STANDS
+
+
+def _readable_policy(parsed: argparse.Namespace) -> Policy:
+    from gatecheck.policies import standing_policy  # noqa: PLC0415
+
+    standing = standing_policy(_folder(parsed), None, None)
+    if standing.policy is None:
+        raise CannotJudge("the policy cannot be read", "see `gatecheck weigh` for what is wrong with it")
+    return standing.policy
 
 
 def _schema(parsed: argparse.Namespace) -> int:

@@ -8,6 +8,7 @@ import numpy as np
 
 from gatecheck import weigh
 from gatecheck.columns import CHI2, NO_STATISTIC, Booleans, Columns, F, Floats, Integers, R, T, Z
+from gatecheck.default_priors import Weighed, log_bf_default
 from gatecheck.model.struct import struct
 from gatecheck.policy import AlternativeName, EvidenceSettings
 
@@ -80,6 +81,7 @@ def weigh_columns(columns: Columns, settings: Sequence[EvidenceSettings]) -> Evi
         "design-effect": weigh.at_noncentrality(
             statistics.kind, statistics.value, statistics.df1, statistics.df2, ncp, statistics.one_sided
         ),
+        "default-prior": _default_prior(columns, statistics, design, settings),
         "bound": weigh.log_lr_bound(statistics.log_p),
     }
     alternative = _choose(columns, under, settings)
@@ -101,6 +103,15 @@ def weigh_columns(columns: Columns, settings: Sequence[EvidenceSettings]) -> Evi
     )
 
 
+def _default_prior(
+    columns: Columns, statistics: Statistics, design: Design, settings: Sequence[EvidenceSettings]
+) -> Floats:
+    weighed = Weighed(statistics.value, statistics.one_sided, design.total, design.two_samples, design.one_sample)
+    scales = np.array([one.scale for one in settings], np.float64)
+    with np.errstate(all="ignore"):
+        return log_bf_default(columns, weighed, scales)
+
+
 def _choose(
     columns: Columns, under: Mapping[AlternativeName, Floats], settings: Sequence[EvidenceSettings]
 ) -> tuple[AlternativeName | None, ...]:
@@ -111,7 +122,9 @@ def _choose(
 
     def chosen(row: int) -> AlternativeName | None:
         has_ratio = columns.test.statistic[row] != NO_STATISTIC
-        names: tuple[AlternativeName, ...] = settings[row].alternative if has_ratio else ("bound",)
+        names = settings[row].alternative
+        if not has_ratio:
+            names = ("default-prior", "bound") if "default-prior" in names else ("bound",)
         return next((name for name in names if np.isfinite(under[name][row])), None)
 
     return tuple(chosen(row) for row in range(len(columns.found)))

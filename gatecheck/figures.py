@@ -19,6 +19,10 @@ PRIORS = (0.01, 0.05, 0.1, 0.2, 0.3, 0.4, 0.5, 0.6, 0.7, 0.8, 0.9, 0.95, 0.99)
 _ERRS = {
     "observed-effect": "errs in favour of the claim: hardly any effect fits the data better than the one observed",
     "design-effect": "right if the effect is as planned; a smaller or larger true effect gives another figure",
+    "default-prior": (
+        "errs neither way if the prior on the size of the effect is apt; the answer depends on its width, and a "
+        "wider one favours no effect more"
+    ),
     "bound": (
         "errs in favour of the claim: the most that alternatives spread smoothly about no effect give for this p "
         "(a single one picked after the data can give more)"

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from dataclasses import field
 from typing import Annotated, Any, Literal
@@ -16,6 +17,9 @@ from gatecheck.schema.read import Fault, nearest_advice, read
 AlternativeName = Literal["observed-effect", "design-effect", "default-prior", "bound"]
 Globs = Annotated[tuple[Text, ...], OneOrMore()]
 Document = dict[str, Any]
+_Scale = Annotated[float, Range(0, low_open=True)]
+#: Half the root of 2, "medium" in the literature (some programs round it to 0.707).
+DEFAULT_SCALE = math.sqrt(2) / 2
 
 
 @struct
@@ -41,6 +45,7 @@ class EvidenceSettings:
         tuple[AlternativeName, ...], OneOrMore(), "the first of these that the record allows"
     ] = ("observed-effect",)
     prior: Annotated[OpenProbability, "probability of a real effect, where the record sets none"] = 0.5
+    scale: Annotated[_Scale, "scale of the default Cauchy prior on a standardised difference"] = DEFAULT_SCALE
 
 
 @struct
@@ -49,6 +54,7 @@ class EvidenceOverride:
 
     alternative: Annotated[tuple[AlternativeName, ...] | None, OneOrMore(), "as under evidence"] = None
     prior: Annotated[OpenProbability | None, "as under evidence"] = None
+    scale: Annotated[_Scale | None, "as under evidence"] = None
 
 
 @struct
@@ -132,6 +138,7 @@ class Policy:
             evidence = EvidenceSettings(
                 override.evidence.alternative or evidence.alternative,
                 override.evidence.prior or evidence.prior,
+                override.evidence.scale or evidence.scale,
             )
         merged = _merge(self.document.rules, self.always_on, overrides)
         on = {name: raw for name, raw in merged.items() if not _is_off(raw)}
@@ -159,10 +166,7 @@ def read_policy(
     read_document, faults = read(PolicyDocument, document)
     if read_document is None:
         return None, faults
-    found = (
-        *_faults_of_rules(read_document, settings, always_on),
-        *_faults_of_evidence(read_document),
-    )
+    found = tuple(_faults_of_rules(read_document, settings, always_on))
     return (None, found) if found else (Policy(read_document, settings, always_on), ())
 
 
@@ -198,25 +202,6 @@ def _faults_of_layer(
 def _is_off(raw: Any) -> bool:
     """A rule that is off needs no other settings."""
     return isinstance(raw, Mapping) and raw.get("enforce") == "off"
-
-
-def _faults_of_evidence(document: PolicyDocument) -> list[Fault]:
-    named: list[tuple[tuple[str | int, ...], tuple[AlternativeName, ...]]] = [
-        (("evidence", "alternative"), document.evidence.alternative)
-    ]
-    named += [
-        (("for", row, "evidence", "alternative"), override.evidence.alternative or ())
-        for row, override in enumerate(document.for_)
-    ]
-    return [
-        Fault(
-            path,
-            "asks for default-prior, which this version does not weigh",
-            "name observed-effect, design-effect or bound",
-        )
-        for path, alternatives in named
-        if "default-prior" in alternatives
-    ]
 
 
 #: What applies where a tree holds no policy of its own.

@@ -28,21 +28,44 @@ ARROWS: Mapping[str, frozenset[str]] = {
     "scan": frozenset({"model", "schema", "git", "globs", "errors"}),
     "policy": frozenset({"model", "schema", "globs"}),
     "columns": frozenset({"model"}),
-    "evidence": frozenset({"columns", "weigh", "policy", "model"}),
+    "default_priors": frozenset({"columns", "weigh", "model"}),
+    "evidence": frozenset({"columns", "default_priors", "weigh", "policy", "model"}),
     "compare": frozenset({"columns", "evidence", "weigh", "model"}),
     "rules": frozenset({"columns", "evidence", "compare", "weigh", "policy", "model", "schema"}),
     "figures": frozenset({"rules", "weigh", "policy", "model"}),
+    "design": frozenset({"columns", "weigh", "policy", "errors", "model"}),
     "policies": frozenset({"scan", "rules", "policy", "schema", "git", "errors", "model"}),
     "render": frozenset({"model"}),
     "declaring": frozenset({"model", "schema"}),
     "gate": BELOW_THE_GATE,
-    "cli": frozenset({"gate", "render", "policies", "scan", "starting", "schema", "errors", "model"}),
+    "cli": frozenset({
+        "gate",
+        "design",
+        "policy",
+        "render",
+        "policies",
+        "scan",
+        "starting",
+        "schema",
+        "errors",
+        "model",
+    }),
     "__main__": frozenset({"cli"}),
     # What analysis code imports from the root of the package.
     "__init__": frozenset({"declaring"}),
 }
 #: The only rooms that may import the arrays; all others hold plain values.
-WITH_ARRAYS = {"weigh", "columns", "evidence", "compare", "rules", "figures", "declaring"}
+WITH_ARRAYS = {
+    "weigh",
+    "columns",
+    "evidence",
+    "compare",
+    "rules",
+    "figures",
+    "design",
+    "default_priors",
+    "declaring",
+}
 OPENING = {"open", "read_bytes", "read_text", "write_bytes", "write_text"}
 #: The modules that open files, and what they open them for.
 MAY_OPEN = (

@@ -163,6 +163,7 @@ class Family:
     name: Annotated[Text, "name of the family"]
     size: Annotated[PositiveCount | None, "number of tests declared"] = None
     procedure: Annotated[Procedure, "how the error over the family is controlled"] = "none"
+    position: Annotated[PositiveCount | None, "place of this test in a fixed sequence"] = None
     adjusted_p: Annotated[Probability | None, "p adjusted by that procedure"] = None
 
 
@@ -176,6 +177,10 @@ class Look:
         Annotated[float, Range(0, 1, low_open=True)] | None, "fraction of the planned information"
     ] = None
     boundary: Annotated[Boundary | None, "stopping boundary planned"] = None
+    schedule: Annotated[
+        tuple[Annotated[float, Range(0, 1, low_open=True)], ...],
+        "information at each planned look, rising to 1; absent: equally spaced",
+    ] = ()
 
 
 @struct

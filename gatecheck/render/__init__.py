@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from importlib import import_module
 
+from gatecheck.model.design import Design
 from gatecheck.model.found import Scan
 from gatecheck.model.verdict import Verdict
 
@@ -33,6 +34,11 @@ def account(verdict: Verdict, width: int) -> str:
 def survey(scan: Scan, width: int) -> str:
     """Return what records a tree holds and what could not be read, as plain text of `width` columns."""
     return _late("listing", "survey")(scan, width)
+
+
+def design(answer: Design, width: int) -> str:
+    """Return how large a study must be, as plain text of `width` columns."""
+    return _late("study", "design")(answer, width)
 
 
 def explain(verdict: Verdict, record_id: str, width: int) -> str:

@@ -27,6 +27,7 @@ CAUTION = (
 _ALTERNATIVES = {
     "observed-effect": "against the effect as observed",
     "design-effect": "against the effect that the study was designed to find",
+    "default-prior": "averaged over the default prior of its test",
     "bound": "by the calibration -e p ln p of its p-value",
     "none": "against no alternative",
 }

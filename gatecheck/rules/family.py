@@ -23,6 +23,8 @@ from gatecheck.rules.rule import Exemption, Judgement, Rule, Said, Table, settin
 from gatecheck.rules.words import describe_result, tell_number
 
 _SAME = 1e-6
+_NO_FAMILY = Family("none")
+_NO_FACTS = FamilyFacts(0, (), (), float("nan"))
 _TAKE_ANEW = "Report every member, with one size and one procedure, and the adjusted p of the same run."
 
 
@@ -75,9 +77,8 @@ def _differs(facts: FamilyFacts, family: Family | None) -> bool:
 
 def explain(table: Table, row: int, settings: Settings, judgement: Judgement) -> Said:
     """What is wrong with the family, or where the member stands in it."""
-    facts, family = family_facts(table.columns, table.evidence)[row], table.record(row).family
-    if facts is None or family is None:
-        return Said("The result belongs to no family.")
+    facts = family_facts(table.columns, table.evidence)[row] or _NO_FACTS
+    family = table.record(row).family or _NO_FAMILY
     result = describe_result(table.record(row))
     if judgement.known is not None and not judgement.known[row]:
         return Said(

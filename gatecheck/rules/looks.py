@@ -24,6 +24,9 @@ from gatecheck.rules.rule import Judgement, Rule, Said, Table, setting
 from gatecheck.rules.words import tell_result
 
 
+_NO_FACTS = LookFacts(False, float("nan"), float("nan"), float("nan"))
+
+
 @struct
 class Settings(RuleSettings):
     """The error of all looks together."""
@@ -57,9 +60,8 @@ def explain(table: Table, row: int, settings: Settings, judgement: Judgement) ->
     """What the looks cost, or where the boundary lies."""
     every: list[Settings | None] = [settings] * len(table.columns.found)
     alpha = _alpha(table, every)
-    facts, look = look_facts(table.columns, alpha)[row], table.record(row).look
-    if facts is None or look is None:
-        return Said("The look is the only one.")
+    facts = look_facts(table.columns, alpha)[row] or _NO_FACTS
+    look = table.record(row).look or Look(1)
     if not facts.planned:
         return _explain_unplanned(table, row, facts, look, float(alpha[row]))
     if not np.isfinite(facts.limit):

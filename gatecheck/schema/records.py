@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Iterator
 from typing import Any
 
@@ -28,12 +27,6 @@ def _between_fields(record: Record) -> Iterator[Fault]:
         yield from _of_p(record.test)
     if record.estimate is not None:
         yield from _of_estimate(record.estimate)
-    if record.look is not None and record.look.number > (record.look.planned or math.inf):
-        yield Fault(
-            ("look", "number"),
-            f"is {record.look.number}, of {record.look.planned} planned",
-            "give the number of looks that was planned, or leave `planned` out if none was",
-        )
 
 
 def _of_test(test: Test) -> Iterator[Fault]:

@@ -16,9 +16,9 @@ if TYPE_CHECKING:
     Column = NDArray[np.float64] | NDArray[np.bool_]
 
 # So many rows are divided among the pieces at a time, lest small pieces cost more than they hold.
-BLOCK = 131072
+BLOCK = 65536
 # So many rows keep the temporary arrays of one formula in the second-level cache.
-CHUNK = 16384
+CHUNK = 8192
 
 
 def rowwise(
@@ -68,12 +68,18 @@ def piecewise(
     return result
 
 
-def polynomial(coefficients: Sequence[float], x: FloatArray) -> FloatArray:
-    """Sum of ``coefficients[j] * x**j`` by Horner's rule (row by row the same, whatever the neighbours)."""
-    total = np.full_like(x, coefficients[-1])
-    for coefficient in reversed(coefficients[:-1]):
-        total *= x
+def polynomial(coefficients: Sequence[float], x: FloatArray, out: FloatArray | None = None) -> FloatArray:
+    """Sum of ``coefficients[j] * x**j`` by Horner's rule (row by row the same, whatever the neighbours).
+
+    ``out`` may be overwritten; the result is what is returned.
+    """
+    if len(coefficients) == 1:
+        return np.full_like(x, coefficients[0])
+    total = np.multiply(x, coefficients[-1], out=out)
+    for coefficient in coefficients[-2:0:-1]:
         total += coefficient
+        total *= x
+    total += coefficients[0]
     return total
 
 
@@ -89,7 +95,12 @@ def _legal_only(
 
 
 def _column(values: ArrayLike) -> Column:
+    """Return the values themselves where their type allows, but not for writing: they are the caller's."""
     column = np.asarray(values)
+    kept: Column
     if column.dtype == np.bool_:
-        return column.astype(np.bool_)
-    return column.astype(np.float64)
+        kept = column.astype(np.bool_, copy=False).view()
+    else:
+        kept = column.astype(np.float64, copy=False).view()
+    kept.flags.writeable = False
+    return kept

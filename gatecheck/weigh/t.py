@@ -16,6 +16,7 @@ expansion) and 13 (confluent hypergeometric functions; 13.7 large argument).
 
 from __future__ import annotations
 
+from functools import partial
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -26,14 +27,14 @@ from gatecheck.weigh.polynomials import parabolic_cylinder_terms
 from gatecheck.weigh.z import log_lr_z_rows
 
 if TYPE_CHECKING:
-    from collections.abc import Callable
+    from collections.abc import Callable, Sequence
 
     from numpy.typing import ArrayLike
 
     from gatecheck.weigh.arrays import BoolArray, FloatArray
 
-# Least degrees of freedom and the number of terms that reach double precision from there on.
-ORDERS = ((500.0, 4), (200.0, 5), (100.0, 6), (40.0, 8), (20.0, 10), (12.0, 16))
+# Least degrees of freedom and the number of terms that err by less than 3e-14 from there on.
+ORDERS = ((250.0, 4), (120.0, 5), (60.0, 6), (30.0, 8), (20.0, 10), (12.0, 16))
 LEAST_EXPANDED = ORDERS[-1][0]
 LARGE_X = 100.0
 LARGE_TERMS = 20
@@ -110,27 +111,47 @@ def _expansion(order: int) -> Callable[..., FloatArray]:
     def rows(t: FloatArray, df: FloatArray, ncp: FloatArray, one_sided: BoolArray) -> FloatArray:
         size_t, size_ncp = np.abs(t), np.abs(ncp)
         root_q = _root_q(size_t, df)
-        growth, exponent, even = _chi_exponent(size_ncp * (size_t / root_q), df, order)
         half = size_ncp / root_q
-        towards = growth + even - 0.5 * df * half * half
-        two_sided = towards + np.log1p(np.expm1(-2 * exponent) / 2)
+        size_t *= half
+        growth, exponent, even = _chi_exponent(size_t, df, order)
+        half *= half
+        half *= df
+        half *= 0.5
+        towards = np.subtract(even, half, out=half)
+        towards += growth
         if not one_sided.any():
-            return two_sided
-        away = -growth + even - 0.5 * size_ncp * size_ncp
-        directed = np.where(np.sign(t) * np.sign(ncp) < 0, away, towards)
-        return np.where(one_sided, directed, two_sided)
+            return _folded(towards, exponent)
+        away = even - growth
+        away -= 0.5 * size_ncp * size_ncp
+        directed = np.where((t < 0) ^ (ncp < 0), away, towards)
+        return directed if one_sided.all() else np.where(one_sided, directed, _folded(towards, exponent))
 
     return rows
 
 
+def _folded(towards: FloatArray, exponent: FloatArray) -> FloatArray:
+    """Mean of the ratio and its mirror, ``exp(-2 exponent)`` times it; ``exponent`` is overwritten."""
+    exponent *= -2
+    np.expm1(exponent, out=exponent)
+    exponent *= 0.5
+    np.log1p(exponent, out=exponent)
+    exponent += towards
+    return exponent
+
+
 def _root_q(size_t: FloatArray, df: FloatArray) -> FloatArray:
     """Root of ``t^2 + df`` without overflow."""
-    small = np.minimum(size_t, SAFE_TO_SQUARE)
-    return np.maximum(np.sqrt(small * small + df), size_t)
+    root = np.minimum(size_t, SAFE_TO_SQUARE)
+    root *= root
+    root += df
+    np.sqrt(root, out=root)
+    return np.maximum(root, size_t, out=root)
 
 
 def _chi_exponent(mu: FloatArray, df: FloatArray, order: int) -> tuple[FloatArray, FloatArray, FloatArray]:
     """Split ``log E exp(mu Y)`` and its mirror, ``mu >= 0``, ``Y`` chi-distributed on ``df + 1``.
+
+    Work goes on in place: arrays made anew cost as much as the arithmetic.
 
     Returns
     -------
@@ -139,29 +160,61 @@ def _chi_exponent(mu: FloatArray, df: FloatArray, order: int) -> tuple[FloatArra
         is half the difference of the two, computed without it.
     """
     a = df + 0.5
-    r = mu / (2 * np.sqrt(a))
-    small = np.minimum(r, SAFE_TO_SQUARE)
-    c = np.maximum(np.sqrt(1 + small * small), r)
-    angle = np.arcsinh(r)
+    r = np.sqrt(a)
+    r += r
+    np.divide(mu, r, out=r)
+    c = np.minimum(r, SAFE_TO_SQUARE)
+    c *= c
+    c += 1
+    np.sqrt(c, out=c)
+    np.maximum(c, r, out=c)
     odd, even = _corrections(r / c, a, order)
-    even -= np.log1p(r * (r / (1 + c))) / 2
-    return a * (angle + r / (r + c)) + odd, a * (angle + r * c) + odd, even
+    # What c exceeds 1 by: r + excess is what the angle, asinh r, is log1p of.
+    excess = c + 1
+    np.divide(r, excess, out=excess)
+    excess *= r
+    angle = r + excess
+    np.log1p(angle, out=angle)
+    np.log1p(excess, out=excess)
+    excess *= 0.5
+    even -= excess
+    growth = np.add(r, c, out=excess)
+    np.divide(r, growth, out=growth)
+    growth += angle
+    growth *= a
+    growth += odd
+    c *= r
+    c += angle
+    c *= a
+    c += odd
+    return growth, c, even
 
 
 def _corrections(w: FloatArray, a: FloatArray, order: int) -> tuple[FloatArray, FloatArray]:
-    """Sums of the odd and of the even terms ``P_k(w) / a^k``."""
+    """Sums of the odd and of the even terms ``P_k(w) / a^k``; ``w`` is overwritten."""
     terms = parabolic_cylinder_terms(order)
     y = w * w
     inverse = 1 / a
     step = inverse * inverse
-    sums = []
-    for first in (order - 1 + order % 2, order - order % 2):
-        total = polynomial(terms[first - 1], y)
-        for k in range(first - 2, 0, -2):
-            total *= step
-            total += polynomial(terms[k - 1], y)
-        sums.append(total)
-    return sums[0] * (w * inverse), sums[1] * (y * step)
+    odd, even = (
+        _horner([terms[k - 1] for k in range(first, 0, -2)], y, step)
+        for first in (order - 1 + order % 2, order - order % 2)
+    )
+    w *= inverse
+    odd *= w
+    y *= step
+    even *= y
+    return odd, even
+
+
+def _horner(terms: list[Sequence[float]], y: FloatArray, step: FloatArray) -> FloatArray:
+    """Sum of polynomials in ``y`` times falling powers of ``step``."""
+    total = polynomial(terms[0], y)
+    term = np.empty_like(total)
+    for coefficients in terms[1:]:
+        total *= step
+        total += polynomial(coefficients, y, out=term)
+    return total
 
 
 def _few_df_two_sided(t: FloatArray, df: FloatArray, ncp: FloatArray, _: BoolArray) -> FloatArray:
@@ -211,16 +264,29 @@ def _few_df_one_sided(t: FloatArray, df: FloatArray, ncp: FloatArray, one_sided:
     """Against the direction by downward recursion, along it from the two-sided ratio: the mean of the two."""
     size_t, size_ncp = np.abs(t), np.abs(ncp)
     mu = size_ncp * (size_t / _root_q(size_t, df))
-    away = -0.5 * size_ncp * size_ncp + piecewise(
-        [(mu > LARGE_MU, _log_laplace_large), (mu <= LARGE_MU, _log_laplace)], mu, df
-    )
+    away = _few_df_laplace(mu, df) - 0.5 * size_ncp * size_ncp
     both = _few_df_two_sided(t, df, ncp, one_sided)
     towards = both + np.log1p(-np.expm1(away - both))
     return np.where(np.sign(t) * np.sign(ncp) < 0, away, towards)
 
 
+def log_chi_laplace(mu: FloatArray, df: FloatArray) -> FloatArray:
+    """Compute ``log E exp(-mu Y)``, ``mu >= 0``, ``Y`` chi-distributed on ``df + 1``; rows known to be legal."""
+    few = df < LEAST_EXPANDED
+    pieces: list[tuple[BoolArray, Callable[..., FloatArray]]] = [(few, _few_df_laplace)]
+    above = np.inf
+    for least, order in ORDERS:
+        pieces.append(((df >= least) & (df < above), partial(_log_laplace_expanded, order=order)))
+        above = least
+    return piecewise(pieces, mu, df)
+
+
+def _few_df_laplace(mu: FloatArray, df: FloatArray) -> FloatArray:
+    return piecewise([(mu > LARGE_MU, _log_laplace_large), (mu <= LARGE_MU, _log_laplace)], mu, df)
+
+
 def _log_laplace(mu: FloatArray, df: FloatArray) -> FloatArray:
-    """Compute ``log E exp(-mu Y)``, ``Y`` chi-distributed on ``df + 1``, by a recursion of positive terms."""
+    """Compute the same for few degrees of freedom by a recursion of positive terms."""
     top = df + STEPS_ABOVE
     start = _log_laplace_expanded(mu, top)
     upper = np.exp(_log_laplace_expanded(mu, top + 1) - start)
@@ -233,8 +299,8 @@ def _log_laplace(mu: FloatArray, df: FloatArray) -> FloatArray:
     return start + np.log(current)
 
 
-def _log_laplace_expanded(mu: FloatArray, df: FloatArray) -> FloatArray:
-    growth, _, even = _chi_exponent(mu, df, STEPS_ORDER)
+def _log_laplace_expanded(mu: FloatArray, df: FloatArray, order: int = STEPS_ORDER) -> FloatArray:
+    growth, _, even = _chi_exponent(mu, df, order)
     return even - growth
 
 
@@ -251,7 +317,9 @@ def _log_laplace_large(mu: FloatArray, df: FloatArray) -> FloatArray:
 
 
 def _observed_rows(t: FloatArray, df: FloatArray, one_sided: BoolArray) -> FloatArray:
-    return log_lr_t_rows(t, df, np.where(one_sided, np.maximum(t, 0.0), np.abs(t)), one_sided)
+    ncp = np.abs(t)
+    ncp[one_sided & (t < 0)] = 0.0
+    return log_lr_t_rows(t, df, ncp, one_sided)
 
 
 def _positive(df: FloatArray) -> BoolArray:

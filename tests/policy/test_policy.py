@@ -47,8 +47,8 @@ def applied(overrides: list[Document], path: str = "results/a.json", **record: A
             (
                 "rules.false-positive-rsk",
                 "is no known rule",
-                "the nearest known one is false-positive-risk (known: false-positive-risk, "
-                "no-effect-support, numbers-agree, practical-size, prior-needed, reported-in-full, robust)",
+                "the nearest known one is false-positive-risk (known: false-positive-risk, family, "
+                "looks, no-effect-support, numbers-agree, practical-size, prior-needed, reported-in-full, robust)",
             ),
         ),
         (
@@ -72,18 +72,7 @@ def applied(overrides: list[Document], path: str = "results/a.json", **record: A
             {"for": [{"match": {"stage": "late"}}]},
             ("for[0].match.stage", "is no known key", None),
         ),
-        (
-            {"evidence": {"alternative": "default-prior"}},
-            (
-                "evidence.alternative",
-                "asks for default-prior, which this version does not weigh",
-                "name observed-effect, design-effect or bound",
-            ),
-        ),
-        (
-            {"for": [{"match": {}, "evidence": {"alternative": ["bound", "default-prior"]}}]},
-            ("for[0].evidence.alternative", "asks for default-prior, which this version does not weigh", None),
-        ),
+        ({"evidence": {"scale": 0}}, ("evidence.scale", "is 0, outside its range", "give a number above 0")),
         ({"evidence": {"prior": 0}}, ("evidence.prior", "is 0, outside its range", None)),
         (
             {"at_least": "1"},

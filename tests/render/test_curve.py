@@ -40,8 +40,8 @@ def test_without_a_limit_the_curve_stands_alone() -> None:
 
 
 @pytest.mark.parametrize(("changes", "names"), [
-    ({}, ("observed-effect", "design-effect", "bound")),
-    ({"alternative": ...}, ("observed-effect", "bound")),
+    ({}, ("observed-effect", "design-effect", "default-prior", "bound")),
+    ({"alternative": ...}, ("observed-effect", "default-prior", "bound")),
     ({"test": {"name": "U", "p": 0.03}, "estimate": ...}, ("bound",)),
 ])  # fmt: skip
 def test_the_gate_weighs_every_alternative_that_a_record_allows(

@@ -6,7 +6,9 @@ from pathlib import Path
 from typing import Any
 
 import pytest
-from support import POLICY, Document, changed, drainage, judge
+from support import POLICY, Document, changed, drainage, judge, write_tree
+
+from gatecheck.cli import main
 
 RULE = "practical-size"
 POLICY_ON = changed(POLICY, rules={RULE: {}})
@@ -87,3 +89,11 @@ def test_a_ratio_is_measured_from_one_on_the_log_scale(tmp_path: Path, smallest:
     answer = judge(tmp_path, lift(test={"name": "Wald", "p": 0.00005}, estimate=estimate), policy=POLICY_ON)
 
     assert answer.rule(RULE)["outcome"] == outcome
+
+
+def test_a_size_that_is_met_is_explained_too(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    write_tree(tmp_path, lift(estimate__smallest_effect="0.12"), policy=POLICY_ON)
+
+    assert main(["explain", "drainage/earthworm-biomass", str(tmp_path)]) == 0
+
+    assert "reaches the smallest effect of interest, 0.12." in " ".join(capsys.readouterr().out.split())

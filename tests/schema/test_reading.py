@@ -178,14 +178,6 @@ def test_each_fault_says_what_to_do(changes: dict[str, Any], fault: tuple[str, s
                 "a ratio is above 0; give it as a ratio, not its log",
             ),
         ),
-        (
-            {"look": {"number": 3, "planned": 2}},
-            (
-                "look.number",
-                "is 3, of 2 planned",
-                "give the number of looks that was planned, or leave `planned` out if none was",
-            ),
-        ),
     ],
 )
 def test_fields_that_contradict_each_other(changes: dict[str, Any], fault: tuple[str, str, str]) -> None:

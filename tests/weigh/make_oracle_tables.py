@@ -31,11 +31,11 @@ def below(x: float) -> float:
     return math.nextafter(x, 0.0)
 
 
-T_DF_SWITCHES = [12.0, 20.0, 40.0, 100.0, 200.0, 500.0]
+T_DF_SWITCHES = [12.0, 20.0, 30.0, 60.0, 120.0, 250.0]
 T_DF = [
     *(1.0, 1.5, 2.0, 3.7, 5.0, 8.0, 10.0),
     *(df for switch in T_DF_SWITCHES for df in (below(switch), switch)),
-    *(30.0, 57.3, 1e3, 1e4, 1e5, 1e6, 1e7),
+    *(40.0, 100.0, 1e3, 1e4, 1e5, 1e6, 1e7),
 ]
 T_SIZE = [1e-6, 1e-3, 0.1, 1.0, 2.1, 5.0, 8.0, 20.0, 40.0, 300.0, 1e4]
 
@@ -121,12 +121,55 @@ def p_f_rows() -> Iterator[Row]:
     yield from itertools.product(sizes, (0.6, 1.0, 3.0, 10.0, 1000.0), (1.0, 5.0, 57.3, 1e3, 1e6))
 
 
+def bf_t_rows() -> Iterator[Row]:
+    """t, df, effective n, scale, one-sided."""
+    sizes = (0.0, 1e-3, 0.5, 2.1, 5.0, 8.0, 20.0, 100.0, 1e4)
+    units = (2, 3, 6, 13, 20, 50, 200, 1000, 10**5, 5 * 10**6)
+    scales = (0.1, 0.3, 0.7071, 1.0, 2.0, 5.0)
+    for (i, t), (j, n) in itertools.product(enumerate(sizes), enumerate(units)):
+        yield from ((t, n - 1.0, float(n), scales[(i + j + k) % 6], 0) for k in (0, 1, 3))
+        yield (t, n - 0.5, n / 4, scales[(i + j + 4) % 6], 0)
+    for (i, t), (j, n) in itertools.product(enumerate((0.0, 0.5, 2.1, 6.0, 30.0, 1e4)), enumerate(units[:7])):
+        yield from ((sign * t, n - 1.0, n / 4, scales[(i + j) % 6], 1) for sign in (1, -1))
+
+
+def bf_r_rows() -> Iterator[Row]:
+    """r, pairs, kappa."""
+    sizes = (0.0, 1e-4, -0.1, 0.3, 0.5, -0.7, 0.95, 0.9999)
+    for (i, r), (j, n) in itertools.product(
+        enumerate(sizes), enumerate((3.0, 4.0, 7.0, 20.0, 57.0, 200.0, 2000.0))
+    ):
+        yield from ((r, n, kappa) for kappa in ((1.0, 0.1), (1 / 3, 2.0), (0.5, 1.0))[(i + j) % 3])
+
+
+def bf_proportions_rows() -> Iterator[Row]:
+    """Successes and trials of two groups."""
+    trials = (0, 1, 7, 40, 1000, 10**6, 10**9)
+    for n, n2 in itertools.product(trials, trials):
+        shares = ((0, 0), (1, 1), (0, 1), (0.5, 0.5), (0.1, 0.12), (0.3, 0.3004))
+        yield from ((float(round(p * n)), float(n), float(round(q * n2)), float(n2)) for p, q in shares)
+
+
+def folded_bound_rows() -> Iterator[Row]:
+    """Rows of z alone."""
+    yield from ((z,) for z in (0.0, 0.5, 1.0, below(1.0), 1 + 1e-12, 1 + 1e-6, 1.001, 1.01, 1.1, -1.2, 1.5, 1.96))
+    yield from ((1.2**j,) for j in range(2, 40))
+
+
 Source = tuple[Callable[..., mp.mpf], Callable[[], Iterator[Row]], tuple[str, ...]]
 SOURCES: dict[str, Source] = {
     "log_lr_t": (oracle.log_lr_t, t_rows, ("t", "df", "ncp", "one_sided")),
     "log_lr_z": (oracle.log_lr_z, z_rows, ("z", "ncp", "one_sided")),
     "log_lr_chi2": (oracle.log_lr_chi2, chi2_rows, ("x", "df", "ncp")),
     "log_lr_f": (oracle.log_lr_f, f_rows, ("f", "df1", "df2", "ncp")),
+    "log_bf_t": (oracle.log_bf_t, bf_t_rows, ("t", "df", "n_effective", "scale", "one_sided")),
+    "log_bf_r": (oracle.log_bf_r, bf_r_rows, ("r", "n", "kappa")),
+    "log_bf_proportions": (
+        oracle.log_bf_proportions,
+        bf_proportions_rows,
+        ("successes", "trials", "successes2", "trials2"),
+    ),
+    "log_lr_folded_bound": (oracle.log_lr_folded_bound, folded_bound_rows, ("z",)),
     "log_p_t": (oracle.log_p_t, p_t_rows, ("t", "df", "one_sided")),
     "log_p_z": (oracle.log_p_z, p_z_rows, ("z", "one_sided")),
     "log_p_chi2": (oracle.log_p_chi2, p_chi2_rows, ("x", "df")),

@@ -91,6 +91,118 @@ def log_p_chi2(x: float, df: float) -> mp.mpf:
         return _log_tail(lambda u: a * u - mp.exp(u) - scale, mp.log(mp.mpf(x) / 2), mp.log(a), 1 / mp.sqrt(a))
 
 
+def log_bf_t(t: float, df: float, n_effective: float, scale: float, one_sided: bool) -> mp.mpf:
+    """Log of the mean likelihood ratio over a Cauchy prior.
+
+    Two-sided: given the scale estimate, Cauchy times normal is Voigt's profile, the real part of Faddeeva's
+    function. One-sided: the posterior of the mean given the prior variance is Student's, so that each variance
+    counts by how much of it lies in the promised direction.
+    """
+    with mp.workdps(DIGITS):
+        t, df = mp.mpf(t), mp.mpf(df)
+        c = mp.mpf(scale) * mp.sqrt(mp.mpf(n_effective))
+        return _log_half_cauchy_factor(t, df, c) if one_sided else _log_cauchy_factor(t, df, c)
+
+
+def log_bf_r(r: float, n: float, kappa: float) -> mp.mpf:
+    """Log of Jeffreys's exact factor of a correlation, by the hypergeometric function."""
+    with mp.workdps(DIGITS):
+        r, n, b = mp.mpf(r), mp.mpf(n), 1 / mp.mpf(kappa)
+        scale = (1 - 2 * b) * mp.log(2) + mp.log(mp.pi) / 2 - mp.log(mp.beta(b, b))
+        gammas = mp.loggamma(b + (n - 1) / 2) - mp.loggamma(b + n / 2)
+        return scale + gammas + mp.log(mp.hyp2f1((n - 1) / 2, (n - 1) / 2, n / 2 + b, r * r))
+
+
+def log_bf_proportions(successes: float, trials: float, successes2: float, trials2: float) -> mp.mpf:
+    """Log of the ratio of beta-binomial probabilities, uniform priors, by factorials."""
+    with mp.workdps(DIGITS):
+        groups = ((successes, trials), (successes2, trials2), (successes + successes2, trials + trials2))
+        first, second, pooled = (
+            mp.loggamma(mp.mpf(k) + 1) + mp.loggamma(mp.mpf(n) - k + 1) - mp.loggamma(mp.mpf(n) + 2)
+            for k, n in groups
+        )
+        return first + second - pooled
+
+
+def log_lr_folded_bound(z: float) -> mp.mpf:
+    """Log of the largest mean of two normal likelihood ratios at opposite effects."""
+    with mp.workdps(DIGITS):
+        z = abs(mp.mpf(z))
+        if z <= 1:
+            return mp.mpf(0)
+        # The best effect d solves d = z tanh(d z); the bracket is halved to the last digit.
+        low, high = mp.mpf(0) + mp.sqrt(z * z - 1) / z, z
+        for _ in range(4 * DIGITS):
+            effect = (low + high) / 2
+            low, high = (effect, high) if effect < z * mp.tanh(effect * z) else (low, effect)
+        return -effect * effect / 2 + mp.log(mp.cosh(effect * z))
+
+
+def _log_cauchy_factor(t: mp.mpf, df: mp.mpf, c: mp.mpf) -> mp.mpf:
+    q = t * t + df
+    rho = abs(t) / mp.sqrt(q)
+
+    def exponent(u: mp.mpf) -> mp.mpf:
+        return (df + 1) * u - mp.exp(2 * u) * df / q / 2
+
+    peak = mp.log((df + 1) * q / df) / 2
+    top = exponent(peak)
+    step = min(mp.mpf("0.25") / mp.sqrt(2 * (df + 1)), mp.mpf("0.05"))
+
+    def term(j: int) -> mp.mpf:
+        u = peak + j * step
+        return mp.exp(exponent(u) - top) * _voigt(rho * mp.exp(u), c)
+
+    total = _sum_outward(term)
+    norm = (df - 1) / 2 * mp.log(2) + mp.loggamma((df + 1) / 2)
+    return mp.log(total * step) + top - norm
+
+
+def _voigt(b: mp.mpf, c: mp.mpf) -> mp.mpf:
+    """Real part of Faddeeva's function at ``(b + ic) / sqrt 2``, far out by its asymptotic series."""
+    point = mp.mpc(b, c) / mp.sqrt(2)
+    size = abs(point) ** 2
+    if size < 200:
+        with mp.extradps(20 + int(size)):
+            return mp.re(mp.exp(-point * point) * mp.erfc(mp.mpc(point.imag, -point.real)))
+    total = term = mp.mpc(1)
+    for k in range(1, 150):
+        term *= (2 * k - 1) / (2 * point * point)
+        total += term
+        if abs(term) < mp.eps:
+            break
+    return mp.re(mp.mpc(0, 1) / (mp.sqrt(mp.pi) * point) * total)
+
+
+def _log_half_cauchy_factor(t: mp.mpf, df: mp.mpf, c: mp.mpf) -> mp.mpf:
+    tau, m = t * t / df, (df + 1) / 2
+
+    def term(j: int) -> mp.mpf:
+        w = mp.exp(mp.mpf(j) / 8)
+        share = c * c / (w + c * c)
+        square = tau * share / (1 + tau * (1 - share))
+        beyond = mp.betainc(m, mp.mpf("0.5"), 0, 1 / (1 + square), regularized=True)
+        factor = mp.exp(-w / 2) * ((1 + tau) / (1 + tau * (1 - share))) ** m / mp.sqrt(w + c * c)
+        return w * factor * (beyond if t < 0 else 2 - beyond)
+
+    return mp.log(_sum_outward(term) / 8 / mp.sqrt(2 * mp.pi))
+
+
+def _sum_outward(term: Callable[[int], mp.mpf]) -> mp.mpf:
+    """Sum of positive terms over all whole numbers, each side until they no longer count."""
+    total = term(0)
+    for direction in (-1, 1):
+        j, last = 0, total
+        while True:
+            j += direction
+            value = term(j)
+            total += value
+            if value < last and value < total * mp.mpf("1e-32"):
+                break
+            last = value
+    return total
+
+
 def _log_f_tail(f: mp.mpf, df1: mp.mpf, df2: mp.mpf) -> mp.mpf:
     a, b = df1 / 2, df2 / 2
     scale = mp.loggamma(a + b) - mp.loggamma(a) - mp.loggamma(b)

@@ -122,7 +122,7 @@ def test_a_larger_chi_squared_or_f_is_stronger_evidence_for_a_given_effect(
     assert larger > smaller
 
 
-@pytest.mark.parametrize("switch", [12.0, 20.0, 40.0, 100.0, 200.0, 500.0])
+@pytest.mark.parametrize("switch", [12.0, 20.0, 30.0, 60.0, 120.0, 250.0])
 def test_nothing_jumps_where_the_method_for_t_changes(switch: float) -> None:
     t = np.array([1e-3, 0.5, 2.0, 4.0, 10.0, 40.0])
     for ncp in (2.83, 0.3, 12.0):

@@ -17,6 +17,7 @@ import pytest
 from weigh.make_oracle_tables import SOURCES
 
 from gatecheck import weigh
+from gatecheck.weigh import bounds, default_prior, proportions
 
 if TYPE_CHECKING:
     from collections.abc import Callable
@@ -31,11 +32,22 @@ BOUNDS = {
     "log_lr_z": 1e-15,
     "log_lr_chi2": 1e-13,
     "log_lr_f": 5e-13,
+    "log_bf_t": 1e-13,
+    "log_bf_r": 1e-13,
+    "log_bf_proportions": 1e-12,
+    "log_lr_folded_bound": 1e-15,
     "log_p_t": 2e-15,
     "log_p_z": 1e-15,
     "log_p_chi2": 1e-13,
     # The incomplete beta function of the oldest library supported; 1e-14 with newer ones.
     "log_p_f": 1e-10,
+}
+# Where a function lives, unless the package itself offers it.
+MODULES = {
+    "log_bf_t": default_prior,
+    "log_bf_r": default_prior,
+    "log_bf_proportions": proportions,
+    "log_lr_folded_bound": bounds,
 }
 
 
@@ -46,7 +58,7 @@ def read(name: str) -> tuple[tuple[str, ...], list[list[float]], list[str]]:
 
 
 def evaluate(name: str, columns: tuple[str, ...], rows: list[list[float]]) -> NDArray[np.float64]:
-    function: Callable[..., NDArray[np.float64]] = getattr(weigh, name)
+    function: Callable[..., NDArray[np.float64]] = getattr(MODULES.get(name, weigh), name)
     arrays = dict(zip(columns, np.array(rows).T, strict=True))
     if "one_sided" in arrays:
         function = partial(function, one_sided=arrays.pop("one_sided") > 0)
