@@ -24,7 +24,6 @@ from gatecheck.rules.words import describe_result, tell_number
 
 _SAME = 1e-6
 _NO_FAMILY = Family("none")
-_NO_FACTS = FamilyFacts(0, (), (), float("nan"))
 _TAKE_ANEW = "Report every member, with one size and one procedure, and the adjusted p of the same run."
 
 
@@ -51,7 +50,7 @@ def judge(table: Table, settings: Sequence[Settings | None]) -> Judgement:
     broken = [each is not None and bool(_broken(each)) for each in facts]
     differs = [each is not None and _differs(each, family) for each, family in zip(facts, families, strict=True)]
     short = np.array(broken) | np.array(differs) | (adjusted > alpha)
-    return Judgement(short, adjusted, alpha, known=np.array(broken) | np.isfinite(adjusted))
+    return Judgement(short, adjusted, alpha, known=np.array(broken) | np.isfinite(adjusted), facts=facts)
 
 
 def _broken(facts: FamilyFacts) -> list[str]:
@@ -77,7 +76,7 @@ def _differs(facts: FamilyFacts, family: Family | None) -> bool:
 
 def explain(table: Table, row: int, settings: Settings, judgement: Judgement) -> Said:
     """What is wrong with the family, or where the member stands in it."""
-    facts = family_facts(table.columns, table.evidence)[row] or _NO_FACTS
+    facts: FamilyFacts = judgement.facts[row]
     family = table.record(row).family or _NO_FAMILY
     result = describe_result(table.record(row))
     if judgement.known is not None and not judgement.known[row]:

@@ -24,9 +24,6 @@ from gatecheck.rules.rule import Judgement, Rule, Said, Table, setting
 from gatecheck.rules.words import tell_result
 
 
-_NO_FACTS = LookFacts(False, float("nan"), float("nan"), float("nan"))
-
-
 @struct
 class Settings(RuleSettings):
     """The error of all looks together."""
@@ -43,11 +40,13 @@ def concerns(table: Table, _: Sequence[Settings | None]) -> Booleans:
 
 def judge(table: Table, settings: Sequence[Settings | None]) -> Judgement:
     """Short where no boundary was planned or p is above it; undecided where either cannot be told."""
-    facts = look_facts(table.columns, _alpha(table, settings))
+    alpha = _alpha(table, settings)
+    facts = look_facts(table.columns, alpha)
     planned = np.array([each is not None and each.planned for each in facts], np.bool_)
     limit = np.array([np.nan if each is None else each.limit for each in facts], np.float64)
     p = np.exp(table.evidence.statistics.log_p)
-    return Judgement(~planned | (p > limit), p, limit, known=~planned | (np.isfinite(p) & np.isfinite(limit)))
+    known = ~planned | (np.isfinite(p) & np.isfinite(limit))
+    return Judgement(~planned | (p > limit), p, limit, known=known, facts=(facts, alpha))
 
 
 def _alpha(table: Table, settings: Sequence[Settings | None]) -> Floats:
@@ -56,11 +55,10 @@ def _alpha(table: Table, settings: Sequence[Settings | None]) -> Floats:
     return np.where(np.isfinite(given), given, setting(settings, "alpha"))
 
 
-def explain(table: Table, row: int, settings: Settings, judgement: Judgement) -> Said:
+def explain(table: Table, row: int, _: Settings, judgement: Judgement) -> Said:
     """What the looks cost, or where the boundary lies."""
-    every: list[Settings | None] = [settings] * len(table.columns.found)
-    alpha = _alpha(table, every)
-    facts = look_facts(table.columns, alpha)[row] or _NO_FACTS
+    every, alpha = judgement.facts
+    facts: LookFacts = every[row]
     look = table.record(row).look or Look(1)
     if not facts.planned:
         return _explain_unplanned(table, row, facts, look, float(alpha[row]))

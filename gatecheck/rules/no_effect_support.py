@@ -42,7 +42,7 @@ def judge(table: Table, settings: Sequence[Settings | None]) -> Judgement:
     inside = (above | ~_needs_low(table)) & (below | ~_needs_high(table))
     margin = np.isfinite(estimate.margin_low) & np.isfinite(estimate.margin_high)
     has_interval = np.isfinite(found.low) | np.isfinite(found.high)
-    return Judgement(~margin | ~inside, _p(table, found), alpha, known=~margin | has_interval)
+    return Judgement(~margin | ~inside, _p(table, found), alpha, known=~margin | has_interval, facts=found)
 
 
 def _needs_low(table: Table) -> Booleans:
@@ -71,7 +71,7 @@ def explain(table: Table, row: int, settings: Settings, judgement: Judgement) ->
             "Give estimate.margin as it was set before the data, or say that no difference was found.",
         )
     margin = f"{tell_number(estimate.margin[0])} to {tell_number(estimate.margin[1])}"
-    found = margins(table.columns, np.full(judgement.short.shape, settings.alpha))
+    found: Margins = judgement.facts
     level = f"{100 * (1 - 2 * settings.alpha):.4g} % interval"
     if judgement.known is not None and not judgement.known[row]:
         return Said(
@@ -79,7 +79,7 @@ def explain(table: Table, row: int, settings: Settings, judgement: Judgement) ->
             "Give estimate.standard_error, or estimate.interval at that level.",
         )
     ends = f"{_as_given(table, row, found.low[row])} to {_as_given(table, row, found.high[row])}"
-    p = _p(table, found)[row]
+    p = judgement.observed[row] if judgement.observed is not None else np.nan
     tests = f" (p = {decimal(float(p), settings.alpha)} by the one-sided tests)" if np.isfinite(p) else ""
     where = "leaves" if judgement.short[row] else "lies within"
     return Said(

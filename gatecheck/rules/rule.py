@@ -34,7 +34,8 @@ class Judgement:
     """A rule's outcome for all rows: where it falls short, and what was observed against which limit.
 
     `would_do` is the least number of units per group that would mend a row, for the rules that can tell it.
-    Where `known` is false the row is undecided, and the rule explains why.
+    Where `known` is false the row is undecided, and the rule explains why. `facts` is what the rule worked out for
+    all rows and needs again to explain one.
     """
 
     short: Booleans
@@ -42,6 +43,7 @@ class Judgement:
     limit: Floats | None = None
     would_do: Floats | None = None
     known: Booleans | None = None
+    facts: Any = None
 
 
 @struct
