@@ -5,6 +5,7 @@ from __future__ import annotations
 import base64
 import dataclasses
 import json
+import re
 from pathlib import Path
 from typing import Any
 
@@ -17,6 +18,7 @@ from gatecheck.model.verdict import Place
 from gatecheck.scan import scan
 from gatecheck.scan.readers import yaml_text
 from gatecheck.scan.readers.document import Document
+from gatecheck.scan.readers.positions import Positions
 from gatecheck.schema.read import shown
 
 TYPE = "application/vnd.gatecheck.record+json"
@@ -797,3 +799,18 @@ def test_an_id_that_is_the_alias_of_another(root: Path, write: Write) -> None:
             "take the alias out, or remove the record under the earlier id",
         )
     ]
+
+
+def test_a_text_on_one_line_is_searched_for_its_lines_once(monkeypatch: pytest.MonkeyPatch) -> None:
+    """A long list of records without a line break must not cost a search of the whole text for each of them."""
+    searches = []
+
+    def search(pattern: str, text: str) -> list[re.Match[str]]:
+        searches.append(pattern)
+        return list(re.compile(pattern).finditer(text))
+
+    monkeypatch.setattr("gatecheck.scan.readers.positions.re.finditer", search)
+    positions = Positions(json.dumps([{"a": number} for number in range(50)]))
+
+    assert {positions.line((number,)) for number in range(50)} == {1}
+    assert len(searches) == 1

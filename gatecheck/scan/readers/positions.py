@@ -29,7 +29,7 @@ class Positions:
 
     text: str
     _members: dict[int, dict[str | int, _Member]] = field(default_factory=dict)
-    _ends: list[int] = field(default_factory=list)
+    _ends: list[int] | None = None
 
     def line(self, path: Path) -> int:
         """Return the 1-based line of the field at `path`, or of the nearest that exists around it."""
@@ -41,7 +41,8 @@ class Positions:
         return self._line_of(at.start)
 
     def _line_of(self, offset: int) -> int:
-        if not self._ends and offset:
+        # A text on one line has no ends of lines, and must not be searched for them again and again.
+        if self._ends is None:
             self._ends = [found.start() for found in re.finditer("\n", self.text)]
         return bisect.bisect_left(self._ends, offset) + 1
 
