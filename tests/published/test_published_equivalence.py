@@ -19,7 +19,7 @@ from gatecheck.weigh.equivalence import (
     power_equivalence_binomial,
     rejected_binomial,
 )
-from gatecheck.weigh.sample_sizes import n_equivalence_crossover, n_equivalence_parallel
+from gatecheck.weigh.sizes_for_power import n_equivalence_crossover, n_equivalence_parallel
 
 RATIOS = np.arange(17, 25) / 20  # 0.85 to 1.20
 A = np.array([4, 7, 8, 6, 3, 2.0])

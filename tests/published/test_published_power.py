@@ -13,7 +13,7 @@ import numpy as np
 import pytest
 from scipy import special
 
-from gatecheck.weigh import sample_sizes
+from gatecheck.weigh import sizes_for_power
 from gatecheck.weigh.noncentral import lower_tail_chi2, lower_tail_t, upper_tail_chi2, upper_tail_f, upper_tail_t
 from gatecheck.weigh.power import (
     cohen_h,
@@ -164,14 +164,14 @@ def test_power_of_a_correlation_near_its_approximation(rho: float, one_sided: bo
 # Cohen, J. (1992). A power primer. Psychological Bulletin 112, 155-159, Table 2: power 0.8, alpha 0.05. Computed:
 # the least whole numbers, where the table rounds to the nearest.
 def test_power_primer_of_means() -> None:
-    sizes = sample_sizes.n_two_sample_t([0.2, 0.5, 0.8], 0.8, [[0.05], [0.01], [0.1]], one_sided=False)
+    sizes = sizes_for_power.n_two_sample_t([0.2, 0.5, 0.8], 0.8, [[0.05], [0.01], [0.1]], one_sided=False)
     np.testing.assert_array_equal(sizes, [[394, 64, 26], [586, 96, 39], [310, 51, 21]])
 
 
 def test_power_primer_of_correlations() -> None:
     """Table: 85. The exact distribution needs 84, Fisher's plain z 84.93 (computed)."""
-    assert float(sample_sizes.n_correlation_exact(0.3, 0.8, ALPHA, one_sided=False)) == 84
-    assert float(sample_sizes.n_correlation_fisher(0.3, 0.8, ALPHA, one_sided=False)) == 85
+    assert float(sizes_for_power.n_correlation_exact(0.3, 0.8, ALPHA, one_sided=False)) == 84
+    assert float(sizes_for_power.n_correlation_fisher(0.3, 0.8, ALPHA, one_sided=False)) == 85
     assert float(power_correlation_fisher(0.3, 84.927811, 0.025, one_sided=True)) == pytest.approx(0.8, abs=1e-8)
 
 
@@ -179,23 +179,23 @@ def test_power_primer_of_proportions() -> None:
     assert float(
         power_proportions_arcsine(0.5, 62.7910378748, 62.7910378748, 0.025, one_sided=True)
     ) == pytest.approx(0.8)
-    assert float(sample_sizes.n_proportions_arcsine(0.5, 0.8, ALPHA, one_sided=False)) == 63
+    assert float(sizes_for_power.n_proportions_arcsine(0.5, 0.8, ALPHA, one_sided=False)) == 63
 
 
 def test_power_primer_of_chi_squared() -> None:
-    sizes = sample_sizes.n_chi2([0.1, 0.3, 0.5], [[2], [3], [4], [5], [6]], 0.8, ALPHA)
+    sizes = sizes_for_power.n_chi2([0.1, 0.3, 0.5], [[2], [3], [4], [5], [6]], 0.8, ALPHA)
     expected = [[964, 108, 39], [1091, 122, 44], [1194, 133, 48], [1283, 143, 52], [1363, 152, 55]]
     np.testing.assert_array_equal(sizes, expected)
 
 
 def test_power_primer_of_groups() -> None:
-    sizes = sample_sizes.n_anova(SIZES, [[2], [4], [5], [6]], 0.8, ALPHA)
+    sizes = sizes_for_power.n_anova(SIZES, [[2], [4], [5], [6]], 0.8, ALPHA)
     np.testing.assert_array_equal(sizes, [[394, 64, 26], [274, 45, 19], [240, 40, 16], [215, 36, 15]])
 
 
 def test_power_primer_of_regressions() -> None:
     """With non-centrality f2 N; the table used approximations and is up to 4 lower."""
-    sizes = sample_sizes.n_regression([0.02, 0.15, 0.35], [[2], [3], [4], [5], [7], [8]], 0.8, ALPHA)
+    sizes = sizes_for_power.n_regression([0.02, 0.15, 0.35], [[2], [3], [4], [5], [7], [8]], 0.8, ALPHA)
     expected = [[485, 68, 31], [550, 77, 36], [602, 85, 40], [647, 92, 43], [725, 103, 49], [759, 109, 52]]
     np.testing.assert_array_equal(sizes, expected)
 
@@ -207,7 +207,7 @@ def test_sizes_for_a_power_of_nine_tenths() -> None:
     exact += [43.8704059897, 33.8255423239]
     d = np.arange(1, 9) / 10
     np.testing.assert_allclose(power_two_sample_t(d, exact, exact, ALPHA, one_sided=False), 0.9, atol=1e-9)
-    np.testing.assert_array_equal(sample_sizes.n_two_sample_t(d, 0.9, ALPHA, one_sided=False), np.ceil(exact))
+    np.testing.assert_array_equal(sizes_for_power.n_two_sample_t(d, 0.9, ALPHA, one_sided=False), np.ceil(exact))
 
 
 # Schoenfeld, D. A. (1983). Sample-size formula for the proportional-hazards regression model. Biometrics 39,
@@ -226,7 +226,7 @@ def test_sizes_for_a_power_of_nine_tenths() -> None:
 )
 def test_events_of_the_log_rank_test(ratio: float, events: float, wanted: float) -> None:
     assert float(power_log_rank(ratio, events, 0.5, 0.025, one_sided=True)) == pytest.approx(wanted, abs=1e-11)
-    assert float(sample_sizes.events_log_rank(ratio, 0.5, wanted, ALPHA, one_sided=False)) == np.ceil(events)
+    assert float(sizes_for_power.events_log_rank(ratio, 0.5, wanted, ALPHA, one_sided=False)) == np.ceil(events)
 
 
 # Fleiss, J. L. (1981). Statistical Methods for Rates and Proportions, 2nd ed., without continuity correction.
@@ -237,14 +237,14 @@ def test_events_of_the_log_rank_test(ratio: float, events: float, wanted: float)
 )
 def test_sizes_for_proportions(p1: float, p2: float, wanted: float, size: float) -> None:
     assert float(power_proportions_pooled(p1, p2, size, 0.025, one_sided=True)) == pytest.approx(wanted, abs=1e-10)
-    assert float(sample_sizes.n_proportions_pooled(p1, p2, wanted, ALPHA, one_sided=False)) == np.ceil(size)
+    assert float(sizes_for_power.n_proportions_pooled(p1, p2, wanted, ALPHA, one_sided=False)) == np.ceil(size)
 
 
 # Blackwelder, W. C. (1982). "Proving the null hypothesis" in clinical trials. Controlled Clinical Trials 3,
 # 345-353. Computed: 141.279835218, 267.939288067, 525.371153072.
 def test_sizes_of_non_inferiority() -> None:
     p = np.array([0.9, 0.85, 0.5])
-    sizes = sample_sizes.n_non_inferiority_proportions(p, p, 0.1, [0.8, 0.9, 0.9], 0.025)
+    sizes = sizes_for_power.n_non_inferiority_proportions(p, p, 0.1, [0.8, 0.9, 0.9], 0.025)
     np.testing.assert_array_equal(sizes, [142, 268, 526])
 
 

@@ -27,7 +27,7 @@ from gatecheck.weigh.equivalence import (
     rejected_binomial,
 )
 from gatecheck.weigh.power import power_t
-from gatecheck.weigh.sample_sizes import n_equivalence_crossover, n_equivalence_parallel
+from gatecheck.weigh.sizes_for_power import n_equivalence_crossover, n_equivalence_parallel
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray

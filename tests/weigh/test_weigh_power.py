@@ -12,7 +12,7 @@ from hypothesis import strategies as st
 from scipy import stats
 from statsmodels.stats import power as other
 
-from gatecheck.weigh import sample_sizes
+from gatecheck.weigh import sizes_for_power
 from gatecheck.weigh.noncentral import (
     lower_tail_chi2,
     lower_tail_f,
@@ -303,57 +303,57 @@ def test_certain_differences_of_proportions() -> None:
 SEARCHES: list[tuple[str, Callable[..., NDArray[np.float64]], Callable[..., NDArray[np.float64]]]] = [
     (
         "one-sample t",
-        lambda power, alpha, one: sample_sizes.n_one_sample_t(0.4, power, alpha, one_sided=one),
+        lambda power, alpha, one: sizes_for_power.n_one_sample_t(0.4, power, alpha, one_sided=one),
         lambda n, alpha, one: power_one_sample_t(0.4, n, alpha, one_sided=one),
     ),
     (
         "two-sample t",
-        lambda power, alpha, one: sample_sizes.n_two_sample_t(0.4, power, alpha, one_sided=one),
+        lambda power, alpha, one: sizes_for_power.n_two_sample_t(0.4, power, alpha, one_sided=one),
         lambda n, alpha, one: power_two_sample_t(0.4, n, n, alpha, one_sided=one),
     ),
     (
         "one-sample z",
-        lambda power, alpha, one: sample_sizes.n_one_sample_z(0.4, power, alpha, one_sided=one),
+        lambda power, alpha, one: sizes_for_power.n_one_sample_z(0.4, power, alpha, one_sided=one),
         lambda n, alpha, one: power_one_sample_z(0.4, n, alpha, one_sided=one),
     ),
     (
         "arcsine",
-        lambda power, alpha, one: sample_sizes.n_proportions_arcsine(0.3, power, alpha, one_sided=one),
+        lambda power, alpha, one: sizes_for_power.n_proportions_arcsine(0.3, power, alpha, one_sided=one),
         lambda n, alpha, one: power_proportions_arcsine(0.3, n, n, alpha, one_sided=one),
     ),
     (
         "pooled",
-        lambda power, alpha, one: sample_sizes.n_proportions_pooled(0.6, 0.4, power, alpha, one_sided=one),
+        lambda power, alpha, one: sizes_for_power.n_proportions_pooled(0.6, 0.4, power, alpha, one_sided=one),
         lambda n, alpha, one: power_proportions_pooled(0.6, 0.4, n, alpha, one_sided=one),
     ),
     (
         "exact correlation",
-        lambda power, alpha, one: sample_sizes.n_correlation_exact(0.4, power, alpha, one_sided=one),
+        lambda power, alpha, one: sizes_for_power.n_correlation_exact(0.4, power, alpha, one_sided=one),
         lambda n, alpha, one: power_correlation_exact(0.4, n, alpha, one_sided=one),
     ),
     (
         "Fisher's z",
-        lambda power, alpha, one: sample_sizes.n_correlation_fisher(0.4, power, alpha, one_sided=one),
+        lambda power, alpha, one: sizes_for_power.n_correlation_fisher(0.4, power, alpha, one_sided=one),
         lambda n, alpha, one: power_correlation_fisher(0.4, n, alpha, one_sided=one),
     ),
     (
         "log-rank",
-        lambda power, alpha, one: sample_sizes.events_log_rank(0.6, 0.4, power, alpha, one_sided=one),
+        lambda power, alpha, one: sizes_for_power.events_log_rank(0.6, 0.4, power, alpha, one_sided=one),
         lambda n, alpha, one: power_log_rank(0.6, n, 0.4, alpha, one_sided=one),
     ),
     (
         "groups",
-        lambda power, alpha, _: sample_sizes.n_anova(0.3, 4, power, alpha),
+        lambda power, alpha, _: sizes_for_power.n_anova(0.3, 4, power, alpha),
         lambda n, alpha, _: power_anova(0.3, 4, n, alpha),
     ),
     (
         "counts",
-        lambda power, alpha, _: sample_sizes.n_chi2(0.3, 4, power, alpha),
+        lambda power, alpha, _: sizes_for_power.n_chi2(0.3, 4, power, alpha),
         lambda n, alpha, _: power_chi2(0.3, n, 4, alpha),
     ),
     (
         "regression",
-        lambda power, alpha, _: sample_sizes.n_regression(0.1, 4, power, alpha),
+        lambda power, alpha, _: sizes_for_power.n_regression(0.1, 4, power, alpha),
         lambda n, alpha, _: power_regression(0.1, 4, n - 5, alpha),
     ),
 ]
@@ -373,16 +373,16 @@ def test_size_meets_the_power_and_one_less_does_not(
 
 
 def test_size_is_the_fewest_possible_where_any_serves() -> None:
-    assert float(sample_sizes.n_one_sample_t(500, 0.5, 0.1, one_sided=True)) == 2
-    assert float(sample_sizes.n_one_sample_z(9, 0.5, 0.1, one_sided=True)) == 1
+    assert float(sizes_for_power.n_one_sample_t(500, 0.5, 0.1, one_sided=True)) == 2
+    assert float(sizes_for_power.n_one_sample_z(9, 0.5, 0.1, one_sided=True)) == 1
 
 
 def test_size_is_nan_where_none_serves() -> None:
-    sizes = sample_sizes.n_two_sample_t(
+    sizes = sizes_for_power.n_two_sample_t(
         [0, -0.5, 0.5, 0.5, np.nan, 0.5], [0.8, 0.8, 0, 1, 0.8, 0.8], 0.05, one_sided=True
     )
     np.testing.assert_array_equal(np.isnan(sizes), [True, True, True, True, True, False])
-    assert np.isnan(sample_sizes.n_non_inferiority_proportions(0.7, 0.9, 0.1, 0.8, 0.025))
+    assert np.isnan(sizes_for_power.n_non_inferiority_proportions(0.7, 0.9, 0.1, 0.8, 0.025))
 
 
 @pytest.mark.parametrize(
