@@ -28,6 +28,7 @@ from gatecheck.rules.words import describe_result
 from gatecheck.scan import scan
 
 WHOLE_TREE = Place(".")
+_MOST_NAMED = 5
 
 
 @struct
@@ -75,7 +76,8 @@ def _check(request: Request, standing: Standing, policy: Policy) -> Verdict:
         for row, one in enumerate(judged)
     )
     problems = (*tree.problems, *_too_few(tree, policy))
-    return Verdict(standing.used, judged, problems, standing.notes)
+    notes = (*standing.notes, *_note_on_priors(table))
+    return Verdict(standing.used, judged, problems, notes)
 
 
 def _table(tree: Scan, policy: Policy) -> Table:
@@ -83,6 +85,20 @@ def _table(tree: Scan, policy: Policy) -> Table:
     columns = columns_of(tree.found)
     evidence = weigh_columns(columns, [each.evidence for each in applied])
     return Table(columns, evidence, own_numbers(columns, evidence), applied)
+
+
+def _note_on_priors(table: Table) -> tuple[str, ...]:
+    """Name the claims that are weighed at a prior of their own above the policy's: it helps them to stand."""
+    raised = [
+        one.record.id
+        for row, one in enumerate(table.columns.found)
+        if table.columns.claims[row] and table.columns.own_prior[row] > table.applied[row].evidence.prior
+    ]
+    if not raised:
+        return ()
+    named = ", ".join(raised[:_MOST_NAMED])
+    more = f" and {len(raised) - _MOST_NAMED} more" if len(raised) > _MOST_NAMED else ""
+    return (f"Weighed at a prior that the record itself sets above the policy's: {named}{more}.",)
 
 
 def _judged(

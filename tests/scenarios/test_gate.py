@@ -250,3 +250,26 @@ def test_waivers_that_are_not_read_yet_are_not_passed_over_in_silence(tmp_path: 
 
     assert answer.status == 1
     assert answer.verdict["notes"] == ["This version reads no waivers, so none in gatecheck.waivers.yaml applies."]
+
+
+def test_claims_that_raise_their_own_prior_are_named(tmp_path: Path) -> None:
+    """A request may bring a prior with its record; one that helps the claim is said before anything else."""
+    raised = [
+        drainage(id=f"raised/{number}", prior={"probability": 0.9, "basis": "a hunch"}) for number in range(6)
+    ]
+    lowered = drainage(id="lowered", prior={"probability": 0.1, "basis": "a base rate"})
+
+    answer = judge(tmp_path, lowered, *raised)
+
+    assert answer.verdict["notes"] == [
+        "Weighed at a prior that the record itself sets above the policy's: raised/0, raised/1, raised/2, raised/3, "
+        "raised/4 and 1 more."
+    ]
+
+
+def test_one_claim_that_raises_its_prior_is_named_alone(tmp_path: Path) -> None:
+    answer = judge(tmp_path, drainage(prior={"probability": 0.9, "basis": "a hunch"}))
+
+    assert answer.verdict["notes"] == [
+        "Weighed at a prior that the record itself sets above the policy's: drainage/earthworm-biomass."
+    ]
