@@ -23,6 +23,11 @@ class Place:
     cell: int | None = None
     output: int | None = None
 
+    @property
+    def is_whole_tree(self) -> bool:
+        """Whether this is the judged folder itself and no file in it."""
+        return self.path == "."
+
     def __str__(self) -> str:
         where = f"{self.path}:{self.line}"
         return where if self.cell is None else f"{where} (cell {self.cell}, output {self.output})"

@@ -83,6 +83,6 @@ def _command(one: _Annotation) -> str:
 
 
 def _position(place: Place | None) -> str:
-    if place is None:
+    if place is None or place.is_whole_tree:
         return ""
     return f"file={fitted(plain(place.path), _LONGEST_PATH, command_property)},line={place.line},"

@@ -121,6 +121,8 @@ def _rest(verdict: Verdict) -> list[str]:
 
 def where(place: Place) -> str:
     """Return a place in words."""
+    if place.is_whole_tree:
+        return "the whole tree"
     if place.cell is None:
         return f"{place.path}, line {place.line}"
     output = "" if place.output is None else f", output {place.output}"

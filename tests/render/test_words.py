@@ -8,7 +8,7 @@ import pytest
 from render.sample_verdicts import BROKEN, DRAINAGE, OLD, POLICY, ROWS, SLOPE, WEEDS
 
 from gatecheck.model.verdict import Finding, Judged, Outcome, Place, PolicyUsed, Problem, Verdict
-from gatecheck.render import words
+from gatecheck.render import RENDERERS, words
 
 
 def judged(outcome: Outcome, *, claim: str | None = "It grows.", counts_now: bool = True) -> Judged:
@@ -108,3 +108,9 @@ def test_policy_used() -> None:
     assert words.policy_used(built_in) == (
         "Policy: starting policy (built in, as the tree has no policy of its own; sha256:abababababab)."
     )
+
+
+def test_a_problem_of_the_whole_tree_has_no_line() -> None:
+    assert words.where(Place(".")) == "the whole tree"
+    told = RENDERERS["annotations"](Verdict(None, (), (Problem(Place("."), "nothing is here", "look elsewhere"),)))
+    assert told == "::error title=Could not be read or judged::nothing is here. To mend: look elsewhere.\n"

@@ -262,8 +262,8 @@ def test_claims_that_raise_their_own_prior_are_named(tmp_path: Path) -> None:
     answer = judge(tmp_path, lowered, *raised)
 
     assert answer.verdict["notes"] == [
-        "Weighed at a prior that the record itself sets above the policy's: raised/0, raised/1, raised/2, raised/3, "
-        "raised/4 and 1 more."
+        "Weighed at a prior that the record itself sets above the policy's: raised/0, raised/1, raised/2, "
+        "raised/3, raised/4 and 1 more."
     ]
 
 
