@@ -38,8 +38,13 @@ def explain(table: Table, row: int, _: RuleSettings, __: Judgement) -> Said:
         compared = f"compared: {', '.join(checked)}" if checked else "no two of its figures determine each other"
         return Said(f"{describe_result(record)}: {compared}.")
     found = "; ".join(each.message for each in told)
-    remedy = " ".join(dict.fromkeys(each.remedy for each in told))
-    return Said(f"{found}; the policy wants figures that fit together.", remedy)
+    return Said(f"{found}; the policy wants figures that fit together.", _in_one_sentence(told))
+
+
+def _in_one_sentence(told: list[Said]) -> str:
+    """What to do about each disagreement, without repeats, so that a shortfall stays short."""
+    first, *others = dict.fromkeys(each.remedy.removesuffix(".") for each in told)
+    return "; ".join([first, *(f"{other[0].lower()}{other[1:]}" for other in others)]) + "."
 
 
 def _tell_p(table: Table, row: int, agreement: Agreement) -> Said:

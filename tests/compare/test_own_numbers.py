@@ -307,3 +307,26 @@ def test_a_figure_changed_beyond_rounding_is_caught(
     ]
 
     assert short_of(judge(tmp_path, *faulty)) == {record["id"] for record in faulty}
+
+
+def test_several_disagreements_are_told_in_two_sentences(tmp_path: Path) -> None:
+    """One for what was found and is wanted, one for what to do about all of it."""
+    record = drainage(
+        test__p="0.34",
+        estimate={
+            "measure": "difference",
+            "value": 9.9,
+            "unit": "g",
+            "standard_error": 1.9,
+            "interval": {"level": 0.95, "low": 0.34, "high": 8.06},
+        },
+    )
+
+    said = judge(tmp_path, record).rule("numbers-agree")
+
+    assert said["message"].count("is reported") == 2
+    assert said["remedy"] == (
+        "Take statistic, df and p from the same run; an adjusted or resampled p is named by p_kind; take estimate "
+        "and interval from the same run and on the same scale; take estimate and statistic from the same test, and "
+        "say in estimate.null what it is compared with."
+    )
