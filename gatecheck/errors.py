@@ -10,3 +10,7 @@ class CannotJudge(Exception):  # noqa: N818  # the sentence that it stands for, 
         super().__init__(f"{message}: {advice}")
         self.message = message
         self.advice = advice
+
+
+class WrongUsage(Exception):  # noqa: N818  # as its exit status is called
+    """The command was called in a way that it does not know."""

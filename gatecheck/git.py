@@ -80,14 +80,14 @@ def toplevel(folder: Path) -> Path | None:
         Git fails, as it does on a repository of another owner, or a repository is there and no git.
     """
     try:
-        status, output, error = _run(folder, "rev-parse", "--show-toplevel")
+        status, output, error = run(folder, "rev-parse", "--show-toplevel")
     except _NotInstalled:
         if any((above / ".git").exists() for above in (folder.resolve(), *folder.resolve().parents)):
             raise
         return None
     if status and error.startswith(_NO_REPOSITORY):
         return None
-    return Path(os.fsdecode(_checked(folder, "rev-parse", status, output, error).removesuffix(b"\n")))
+    return Path(os.fsdecode(checked(folder, "rev-parse", status, output, error).removesuffix(b"\n")))
 
 
 def list_files(folder: Path) -> tuple[Entry, ...]:
@@ -99,8 +99,8 @@ def list_files(folder: Path) -> tuple[Entry, ...]:
         Git fails.
     """
     command = ("ls-files", "-z", "-t", "-s", "-c", "-o", "--exclude-standard")
-    status, listed, error = _run(folder, *command)
-    output = os.fsdecode(_checked(folder, "ls-files", status, listed, error))
+    status, listed, error = run(folder, *command)
+    output = os.fsdecode(checked(folder, "ls-files", status, listed, error))
     if _CLOSED in error:  # of which git only warns, and leaves its files out
         raise CannotJudge(f"git cannot open every folder of {safe(str(folder))}", "mend their permissions")
     entries: dict[str, Entry] = {}
@@ -126,7 +126,7 @@ def list_tree(folder: Path, revision: str) -> tuple[Entry, ...]:
 
 
 def _tree(folder: Path, *arguments: str) -> tuple[Entry, ...]:
-    output = _checked(folder, "ls-tree", *_run(folder, "ls-tree", "-z", *arguments))
+    output = checked(folder, "ls-tree", *run(folder, "ls-tree", "-z", *arguments))
     entries = []
     for item in os.fsdecode(output).split("\0")[:-1]:
         head, _, path = item.partition("\t")
@@ -200,8 +200,8 @@ def read_file_at(folder: Path, revision: str, path: str) -> bytes | None:
         return None
     if entries[0].kind == "link":
         raise CannotJudge(f"{safe(path)} is a symbolic link at {safe(revision)}", "commit the file itself there")
-    answer = _run(folder, "cat-file", "blob", entries[0].object_id or "")
-    return _checked(folder, "cat-file", *answer)
+    answer = run(folder, "cat-file", "blob", entries[0].object_id or "")
+    return checked(folder, "cat-file", *answer)
 
 
 def resolve(folder: Path, revision: str) -> str:
@@ -213,13 +213,13 @@ def resolve(folder: Path, revision: str) -> str:
         Git fails, or does not know the revision; the advice is then the command that fetches it.
     """
     if revision and revision[0] != "-" and "\0" not in revision:
-        status, output, error = _run(folder, "rev-parse", "--verify", "--quiet", revision + "^{commit}")
+        status, output, error = run(folder, "rev-parse", "--verify", "--quiet", revision + "^{commit}")
         if status == 0:
             return output.decode().strip()
         if error:
-            _checked(folder, "rev-parse", status, output, error)
+            checked(folder, "rev-parse", status, output, error)
     fetch = f"git fetch --depth=1 origin {shlex.quote(safe(revision))}"
-    if _checked(folder, "rev-parse", *_run(folder, "rev-parse", "--is-shallow-repository")) == b"true\n":
+    if checked(folder, "rev-parse", *run(folder, "rev-parse", "--is-shallow-repository")) == b"true\n":
         raise CannotJudge(f"the revision {safe(revision)} is not in this shallow clone", f"run `{fetch}`")
     raise CannotJudge(f"git knows no revision {safe(revision)} here", f"name a commit, or run `{fetch}`")
 
@@ -230,7 +230,8 @@ def safe(text: str) -> str:
     return plain if len(plain) <= _LONGEST else plain[:_LONGEST] + "…"
 
 
-def _run(folder: Path, *arguments: str) -> tuple[int, bytes, str]:
+def run(folder: Path, *arguments: str) -> tuple[int, bytes, str]:
+    """Run git in `folder` and return its exit status, its output and its complaint."""
     with _start(folder, *arguments) as process:
         output, error = process.communicate()
     return process.returncode, output, error.decode("utf-8", "replace")
@@ -255,7 +256,14 @@ def _start(folder: Path, *arguments: str, feeding: bool = False) -> subprocess.P
         ) from error
 
 
-def _checked(folder: Path, command: str, status: int, output: bytes, error: str) -> bytes:
+def checked(folder: Path, command: str, status: int, output: bytes, error: str) -> bytes:
+    """Return the output of git.
+
+    Raises
+    ------
+    CannotJudge
+        Git failed; what it says and what mends it are told.
+    """
     if status == 0:
         return output
     owner = _OWNER.search(error)

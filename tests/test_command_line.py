@@ -14,8 +14,10 @@ from pathlib import Path
 import pytest
 from support import POLICY, command, drainage, write_tree
 
-from gatecheck import __version__, cli, declare
-from gatecheck.cli import FORMATS, main
+from gatecheck import __version__, declare
+from gatecheck.arguments import FORMATS, KINDS
+from gatecheck.cli import main
+from gatecheck.commands import edge
 from gatecheck.declaring import declare as declared
 from gatecheck.render import RENDERERS
 from gatecheck.starting import FILES
@@ -169,7 +171,7 @@ def test_explain_needs_a_record_that_is_there(tmp_path: Path, capsys: pytest.Cap
     assert (status, out.startswith("Cannot judge")) == (3, True)
 
 
-@pytest.mark.parametrize("kind", cli.KINDS)
+@pytest.mark.parametrize("kind", KINDS)
 def test_schema_prints_the_published_schema(capsys: pytest.CaptureFixture[str], kind: str) -> None:
     status, out, _ = said(capsys, "schema", kind)
 
@@ -209,7 +211,7 @@ def test_an_interrupt_is_no_pass(monkeypatch: pytest.MonkeyPatch, capsys: pytest
     def interrupted(_: object) -> int:
         raise KeyboardInterrupt
 
-    monkeypatch.setattr(cli, "_survey", interrupted)
+    monkeypatch.setattr("gatecheck.commands.survey.act", interrupted)
 
     assert said(capsys, "survey") == (3, "", "gatecheck: interrupted before it could judge.\n")
 
@@ -243,7 +245,7 @@ def test_the_width_follows_a_terminal_within_limits(monkeypatch: pytest.MonkeyPa
     widths = []
     for columns in (20, 100, 300):
         monkeypatch.setattr(os, "get_terminal_size", lambda _, columns=columns: os.terminal_size((columns, 24)))
-        widths.append(cli._width())
+        widths.append(edge.width())
 
     assert widths == [40, 100, 140]
 

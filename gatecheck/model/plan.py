@@ -12,6 +12,7 @@ from gatecheck.model.record import (
     Boundary,
     Identifier,
     OpenProbability,
+    Outcome,
     PositiveCount,
     Prior,
     Procedure,
@@ -22,16 +23,6 @@ from gatecheck.model.struct import struct
 
 Direction = Literal["increase", "decrease", "either"]
 DataState = Literal["none", "collecting", "unseen", "seen"]
-
-
-@struct
-class Outcome:
-    """What is measured, defined in full."""
-
-    variable: Annotated[Text, "the variable"]
-    metric: Annotated[Text | None, "how it is expressed, such as change from baseline"] = None
-    aggregation: Annotated[Text | None, "how units are summarised, such as mean or share"] = None
-    time_point: Annotated[Text | None, "when it is measured"] = None
 
 
 @struct

@@ -24,9 +24,12 @@ Procedure = Literal[
     "benjamini-hochberg",
     "benjamini-yekutieli",
     "fixed-sequence",
+    "weighted-holm",
+    "graphical",
 ]
 Boundary = Literal["pocock", "obrien-fleming", "haybittle-peto", "spending-obrien-fleming", "spending-pocock"]
 Known = Literal["before-data", "before-results", "after-results"]
+Called = Literal["findings", "candidates"]
 
 Text = Annotated[str, Pattern(r"\S", "some text")]
 Identifier = Annotated[
@@ -39,6 +42,7 @@ Probability = Annotated[Reported, Range(0, 1)]
 OpenProbability = Annotated[float, Range(0, 1, low_open=True, high_open=True)]
 Positive = Annotated[Reported, Range(0, low_open=True)]
 NotNegative = Annotated[Reported, Range(0)]
+Share = Annotated[float, Range(0, 1)]
 
 
 @struct
@@ -165,6 +169,37 @@ class Family:
     procedure: Annotated[Procedure, "how the error over the family is controlled"] = "none"
     position: Annotated[PositiveCount | None, "place of this test in a fixed sequence"] = None
     adjusted_p: Annotated[Probability | None, "p adjusted by that procedure"] = None
+    weight: Annotated[
+        Share | None, "share of the family's alpha that this test has (weighted-holm, graphical: at the start)"
+    ] = None
+    passes_on: Annotated[
+        dict[str, Share] | None,
+        "graphical: by id of another member, the part of its share that goes there when this test is rejected",
+    ] = None
+
+
+@struct
+class Removed:
+    """Tests left out of a screen before its hits were counted."""
+
+    n: Annotated[Count, "number of tests left out"]
+    reason: Annotated[Text, "why"]
+    planned: Annotated[bool, "true where this filter was registered before the data"] = False
+
+
+@struct
+class Screen:
+    """A whole screen, whose list of hits is one claim on many tests."""
+
+    tests: Annotated[PositiveCount | None, "number of tests among which the hits were counted"] = None
+    hits: Annotated[Count | None, "number of tests called positive"] = None
+    alpha: Annotated[OpenProbability | None, "level of each test"] = None
+    power: Annotated[
+        Annotated[float, Range(0, 1, low_open=True)] | None, "power of each test against a true effect, assumed"
+    ] = None
+    prior: Annotated[OpenProbability | None, "share of true effects among the tests, expected before"] = None
+    called: Annotated[Called, "findings, or candidates that are still to be confirmed"] = "findings"
+    removed: Annotated[tuple[Removed, ...], "tests left out before the hits were counted, by reason"] = ()
 
 
 @struct
@@ -181,6 +216,16 @@ class Look:
         tuple[Annotated[float, Range(0, 1, low_open=True)], ...],
         "information at each planned look, rising to 1; absent: equally spaced",
     ] = ()
+
+
+@struct
+class Outcome:
+    """What is measured, defined in full."""
+
+    variable: Annotated[Text, "the variable"]
+    metric: Annotated[Text | None, "how it is expressed, such as change from baseline"] = None
+    aggregation: Annotated[Text | None, "how units are summarised, such as mean or share"] = None
+    time_point: Annotated[Text | None, "when it is measured"] = None
 
 
 @struct
@@ -243,7 +288,11 @@ class Record:
     alternative: Annotated[Alternative | None, "the effect that the study was designed to find"] = None
     prior: Annotated[Prior | None, "probability of a real effect before these data"] = None
     family: Annotated[Family | None, "the set of tests behind the claim"] = None
+    screen: Annotated[Screen | None, "the whole screen, where the claim is its list of hits"] = None
     look: Annotated[Look | None, "the interim look"] = None
+    outcome: Annotated[Outcome | None, "what was measured"] = None
+    population: Annotated[Text | None, "the analysis population"] = None
+    covariates: Annotated[tuple[Text, ...] | None, "covariates of the analysis; absent: not told"] = None
     plan: Annotated[PlanReference | None, "the registration"] = None
     deviations: Annotated[tuple[Deviation, ...], "disclosed departures from the plan"] = ()
     provenance: Annotated[Provenance | None, "where the result comes from"] = None
