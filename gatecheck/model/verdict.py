@@ -93,7 +93,7 @@ class Sensitivity:
 
 @dataclass(frozen=True, slots=True)
 class Judged:
-    """One record with all that the rules say of it."""
+    """One record with all that the rules say of it; `numbers` is the digest of its numbers."""
 
     id: str
     at: Place
@@ -105,6 +105,7 @@ class Judged:
     counts_now: bool = True
     alternatives: tuple[Figures, ...] = ()
     sensitivity: Sensitivity | None = None
+    numbers: str = ""
 
     @property
     def standing(self) -> Standing:

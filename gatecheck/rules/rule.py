@@ -10,6 +10,7 @@ import numpy as np
 from gatecheck.columns import Booleans, Columns, Floats
 from gatecheck.compare.own_numbers import Agreement
 from gatecheck.evidence import Evidence
+from gatecheck.model.promise import Promise
 from gatecheck.model.record import Record
 from gatecheck.model.struct import struct
 from gatecheck.policy import Applied, RuleSettings
@@ -17,12 +18,18 @@ from gatecheck.policy import Applied, RuleSettings
 
 @struct
 class Table:
-    """All that rules see: columns, evidence, facts and what the policy asks of each row."""
+    """All that rules see: columns, evidence, facts and what the policy asks of each row.
+
+    Facts that a rule needs and that were not looked at are empty; else they stand row by row.
+    """
 
     columns: Columns
     evidence: Evidence
     own_numbers: tuple[Agreement, ...]
     applied: tuple[Applied, ...]
+    promises: tuple[Promise | None, ...] = ()
+    looks_seen: tuple[Any, ...] = ()
+    inputs: tuple[Any, ...] = ()
 
     def record(self, row: int) -> Record:
         """The record of that row."""
