@@ -41,12 +41,13 @@ def _run() -> dict[str, str | int]:
     options = _options(base)
     python = _installed(Path(os.environ["RUNNER_TEMP"]) / "gatecheck-environment")
     reports = Path(tempfile.mkdtemp(prefix="gatecheck-", dir=os.environ["RUNNER_TEMP"]))
-    verdict, summary = reports / "verdict.json", reports / "summary.md"
+    verdict, summary, page = reports / "verdict.json", reports / "summary.md", reports / "verdict.html"
     options += ["--write", f"json={verdict}", "--write", f"summary={summary}", "--write", "annotations=-"]
+    options += ["--write", f"page={page}"]
     status = _weigh([str(python), "-I", "-m", "gatecheck", "weigh", *options, "--", str(folder)], folder)
     if summary.exists():
         _append("GITHUB_STEP_SUMMARY", summary.read_text(encoding="utf-8"))
-    return _outputs(status, verdict)
+    return _outputs(status, verdict, page)
 
 
 def _options(base: str | None) -> list[str]:
@@ -112,14 +113,15 @@ def _quoted(line: str) -> str:
     return f"| {printable.replace('##[', '## [')}"
 
 
-def _outputs(status: int, verdict: Path) -> dict[str, str | int]:
+def _outputs(status: int, verdict: Path, page: Path) -> dict[str, str | int]:
     """Return the outputs by the verdict; an exit status that it does not bear out answers nothing."""
     answer: Any = json.loads(verdict.read_text(encoding="utf-8")) if verdict.exists() else {"exit": None}
     if answer["exit"] != status:
         sentence = "the gate ended before its answer was whole; the lines above say why"
         return _stopped(StopError(sentence, _USAGE if status == _USAGE else CANNOT_JUDGE))
     counts = {name: int(answer["counts"][name]) for name in _COUNTS}
-    return {"verdict": answer["verdict"], "exit": answer["exit"], **counts, "report": str(verdict)}
+    told = {"verdict": answer["verdict"], "exit": answer["exit"], **counts}
+    return {**told, "report": str(verdict), "page": str(page)}
 
 
 def _stopped(stop: StopError) -> dict[str, str | int]:

@@ -4,12 +4,14 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
 
 from gatecheck.model.found import Found
 from gatecheck.model.numbers import Reported
+from gatecheck.model.plan import Hypothesis
 from gatecheck.model.record import Estimate, Sample, Test
 from gatecheck.model.struct import struct
 
@@ -98,7 +100,10 @@ class Samples:
 
 @struct
 class Columns:
-    """Records as arrays of shape (n,), one row a record, in the order of `found`."""
+    """Records as arrays of shape (n,), one row a record, in the order of `found`.
+
+    `own_prior` is that of the record, or of its plan where it is `prior_from_plan`.
+    """
 
     found: tuple[Found, ...]
     test: Tests
@@ -107,6 +112,7 @@ class Columns:
     effect: Floats
     effect_is_raw: Booleans
     own_prior: Floats
+    prior_from_plan: Booleans
     claims: Booleans
     harm: Booleans
     importance: Booleans
@@ -126,12 +132,34 @@ def columns_of(found: Sequence[Found]) -> Columns:
         effect=_floats([_NAN if r.alternative is None else r.alternative.effect for r in records]),
         effect_is_raw=_booleans([r.alternative is not None and r.alternative.scale == "raw" for r in records]),
         own_prior=_floats([_NAN if r.prior is None else r.prior.probability for r in records]),
+        prior_from_plan=np.zeros(len(records), np.bool_),
         claims=_booleans([r.claim is not None for r in records]),
         harm=_booleans([r.harm for r in records]),
         importance=_booleans([r.importance for r in records]),
         noninferiority=_booleans([r.aim == "noninferiority" for r in records]),
         no_effect_aim=_booleans([r.aim in {"equivalence", "noninferiority"} for r in records]),
         estimation_aim=_booleans([r.aim == "estimation" for r in records]),
+    )
+
+
+def with_own_priors(columns: Columns, priors: Sequence[float | None]) -> Columns:
+    """Return `columns` with these priors in place of the records' own; `None` where a record has none."""
+    return replace(columns, own_prior=_floats([_NAN if prior is None else prior for prior in priors]))
+
+
+def with_promised(columns: Columns, promised: Sequence[Hypothesis | None]) -> Columns:
+    """Return `columns` with the prior and the effect that each plan promises, where the record gives none."""
+    priors = _floats([_NAN if each is None or each.prior is None else each.prior.probability for each in promised])
+    effects = [None if each is None else each.alternative for each in promised]
+    lacks_prior, lacks_effect = np.isnan(columns.own_prior), np.isnan(columns.effect)
+    raw = _booleans([effect is not None and effect.scale == "raw" for effect in effects])
+    planned = _floats([_NAN if effect is None else effect.effect for effect in effects])
+    return replace(
+        columns,
+        own_prior=np.where(lacks_prior, priors, columns.own_prior),
+        prior_from_plan=lacks_prior & np.isfinite(priors),
+        effect=np.where(lacks_effect, planned, columns.effect),
+        effect_is_raw=np.where(lacks_effect, raw, columns.effect_is_raw),
     )
 
 

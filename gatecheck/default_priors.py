@@ -1,8 +1,9 @@
 """The Bayes factor of each record under the default prior that its test has.
 
-Means: a Cauchy prior on the standardised effect. Correlations: a uniform prior on the correlation. Two proportions:
-independent uniform priors, exact from the counts. Other single effects (a coefficient of a regression or of a
-generalised model): the prior worth one observation, by the Schwarz approximation.
+Means: a Cauchy prior on the standardised effect. Correlations: a uniform prior on the correlation. Both are folded
+onto the direction tested where that is one. Two proportions: independent uniform priors, exact from the counts.
+Other single effects (a coefficient of a regression or of a generalised model): the prior worth one observation, by
+the Schwarz approximation.
 """
 
 from __future__ import annotations
@@ -11,6 +12,7 @@ from collections.abc import Sequence
 
 import numpy as np
 
+from gatecheck import weigh
 from gatecheck.columns import CHI2, Booleans, Columns, F, Floats, R, T, Z
 from gatecheck.model.record import Record
 from gatecheck.model.struct import struct
@@ -58,8 +60,8 @@ def _means(columns: Columns, weighed: Weighed, scales: Floats) -> Floats:
 
 def _correlations(columns: Columns, weighed: Weighed) -> Floats:
     df = columns.test.df1.value
-    r = np.where(columns.test.is_one_of(R) & ~weighed.one_sided, weighed.value, np.nan)
-    return default_prior.log_bf_r(r / np.sqrt(r**2 + df), df + _PAIR, _UNIFORM)
+    r = weigh.r_from_t(np.where(columns.test.is_one_of(R), weighed.value, np.nan), df)
+    return default_prior.log_bf_r(r, df + _PAIR, _UNIFORM, one_sided=weighed.one_sided)
 
 
 def _unit_information(columns: Columns, weighed: Weighed) -> Floats:

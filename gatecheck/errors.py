@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+_LONGEST = 200
+
 
 class CannotJudge(Exception):  # noqa: N818  # the sentence that it stands for, "the gate cannot judge"
     """The gate cannot judge at all: `message` says what stands in the way, `advice` what mends it."""
@@ -14,3 +16,9 @@ class CannotJudge(Exception):  # noqa: N818  # the sentence that it stands for, 
 
 class WrongUsage(Exception):  # noqa: N818  # as its exit status is called
     """The command was called in a way that it does not know."""
+
+
+def safe(text: str) -> str:
+    """Return `text` in printable ASCII and of bounded length, for a message."""
+    plain = ascii(text)[1:-1]
+    return plain if len(plain) <= _LONGEST else plain[:_LONGEST] + "…"

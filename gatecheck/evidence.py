@@ -11,6 +11,7 @@ from gatecheck.columns import CHI2, NO_STATISTIC, Booleans, Columns, F, Floats, 
 from gatecheck.default_priors import Weighed, log_bf_default
 from gatecheck.model.struct import struct
 from gatecheck.policy import AlternativeName, EvidenceSettings
+from gatecheck.together import Together, log_bf_together, pool_columns
 
 _KINDS = {
     NO_STATISTIC: -1,
@@ -55,10 +56,14 @@ class Evidence:
     """Evidence of shape (n,): the natural log of the likelihood ratio under the alternative that was chosen.
 
     `under` holds it for every alternative; nan where a record does not allow it. `alternative` is empty where
-    none could be used. `ncp` is the non-centrality that the design effect stands for.
+    none could be used. `ncp` is the non-centrality that the design effect stands for. `statistics` are the records'
+    own; `weighed` those that were weighed, which are pooled where `on_all` records of a hypothesis a row is judged.
     """
 
     statistics: Statistics
+    weighed: Statistics
+    together: Together
+    on_all: Booleans
     design: Design
     ncp: Floats
     under: Mapping[AlternativeName, Floats]
@@ -71,20 +76,23 @@ class Evidence:
 
 def weigh_columns(columns: Columns, settings: Sequence[EvidenceSettings]) -> Evidence:
     """Weigh each row of `columns` by the settings in the same position."""
-    statistics = _statistics(columns)
+    statistics, together = _statistics(columns), pool_columns(columns, [one.together for one in settings])
+    on_all = together.pooled & (together.stated | (together.log_p > statistics.log_p))
+    weighed = _pooled(statistics, columns, together, on_all)
     design = _design(columns, statistics)
-    ncp = _design_noncentrality(columns, statistics, design)
+    ncp = _pooled_ncp(_design_noncentrality(columns, statistics, design), columns, together, on_all)
+    default_prior = _default_prior(columns, statistics, design, settings)
     under: dict[AlternativeName, Floats] = {
         "observed-effect": weigh.observed_effect(
-            statistics.kind, statistics.value, statistics.df1, statistics.df2, statistics.one_sided
+            weighed.kind, weighed.value, weighed.df1, weighed.df2, weighed.one_sided
         ),
         "design-effect": weigh.at_noncentrality(
-            statistics.kind, statistics.value, statistics.df1, statistics.df2, ncp, statistics.one_sided
+            weighed.kind, weighed.value, weighed.df1, weighed.df2, ncp, weighed.one_sided
         ),
-        "default-prior": _default_prior(columns, statistics, design, settings),
-        "bound": weigh.log_lr_bound(statistics.log_p),
+        "default-prior": np.where(on_all, log_bf_together(columns, together, weighed.one_sided), default_prior),
+        "bound": weigh.log_lr_bound(weighed.log_p),
     }
-    alternative = _choose(columns, under, settings)
+    alternative = _choose(weighed.kind, under, settings)
     log_lr = np.array(
         [np.nan if name is None else under[name][row] for row, name in enumerate(alternative)], np.float64
     )
@@ -92,6 +100,9 @@ def weigh_columns(columns: Columns, settings: Sequence[EvidenceSettings]) -> Evi
     prior = np.where(own, columns.own_prior, np.array([one.prior for one in settings], np.float64))
     return Evidence(
         statistics,
+        weighed,
+        together,
+        on_all,
         design,
         ncp,
         under,
@@ -113,7 +124,7 @@ def _default_prior(
 
 
 def _choose(
-    columns: Columns, under: Mapping[AlternativeName, Floats], settings: Sequence[EvidenceSettings]
+    kinds: Integers, under: Mapping[AlternativeName, Floats], settings: Sequence[EvidenceSettings]
 ) -> tuple[AlternativeName | None, ...]:
     """The first alternative of the policy that each record allows.
 
@@ -121,13 +132,47 @@ def _choose(
     """
 
     def chosen(row: int) -> AlternativeName | None:
-        has_ratio = columns.test.statistic[row] != NO_STATISTIC
+        has_ratio = kinds[row] >= 0
         names = settings[row].alternative
         if not has_ratio:
             names = ("default-prior", "bound") if "default-prior" in names else ("bound",)
         return next((name for name in names if np.isfinite(under[name][row])), None)
 
-    return tuple(chosen(row) for row in range(len(columns.found)))
+    return tuple(chosen(row) for row in range(len(settings)))
+
+
+def _pooled(statistics: Statistics, columns: Columns, together: Together, on_all: Booleans) -> Statistics:
+    """The statistics with the pooled z where a row is judged on several records."""
+    if not on_all.any():
+        return statistics
+    one_sided = statistics.one_sided & on_all
+    z = np.where(one_sided, together.z * columns.test.toward, together.z)
+    kind = np.where(on_all, weigh.Statistic.Z, statistics.kind)
+    value = np.where(on_all, z, statistics.value)
+    no_df = np.where(on_all, np.nan, 0.0)
+    from_z = weigh.log_p(kind, value, statistics.df1 + no_df, statistics.df2 + no_df, statistics.one_sided)
+    return Statistics(
+        kind,
+        value,
+        statistics.df1 + no_df,
+        statistics.df2 + no_df,
+        statistics.one_sided,
+        statistics.recovered & ~on_all,
+        np.where(on_all, from_z, statistics.log_p),
+    )
+
+
+def _pooled_ncp(ncp: Floats, columns: Columns, together: Together, on_all: Booleans) -> Floats:
+    """The planned effect against the pooled estimate, where every record pooled was planned for the same effect.
+
+    For one common effect the squares of the non-centralities add up; the spread between records takes from that.
+    """
+    pooled = ncp.copy()
+    for row in np.flatnonzero(on_all):
+        rows = list(together.members[row])
+        same = np.unique(columns.effect[rows]).size == np.unique(columns.effect_is_raw[rows]).size == 1
+        pooled[row] = np.sqrt((ncp[rows] ** 2).sum()) * together.share[row] if same else np.nan
+    return pooled
 
 
 def _statistics(columns: Columns) -> Statistics:

@@ -7,7 +7,7 @@ import math
 import numpy as np
 
 from gatecheck import weigh
-from gatecheck.model.shown import percent
+from gatecheck.model.shown import decimal, percent
 from gatecheck.model.verdict import Figures, Sensitivity
 from gatecheck.policy import AlternativeName, Applied
 from gatecheck.rules.rule import Table
@@ -76,19 +76,42 @@ class FigureTable:
 
     def _under(self, row: int, alternative: AlternativeName) -> Figures:
         evidence, wanted = self.table.evidence, self.risk_wanted[row]
-        recovered = " The statistic was recovered from p." if evidence.statistics.recovered[row] else ""
+        recovered = " The statistic was recovered from p." if evidence.weighed.recovered[row] else ""
         return Figures(
             alternative,
             float(evidence.under[alternative][row]),
             *self._prior(row),
             float(self.risk[alternative][row]),
             float(self.needed[alternative][row]),
-            f"{_ERRS[alternative]}; the prior needed is for a risk of {percent(wanted, wanted)}.{recovered}",
+            f"{_ERRS[alternative]}; the prior needed is for a risk of {percent(wanted, wanted)}.{recovered}"
+            f"{self._together(row)}",
         )
+
+    def _together(self, row: int) -> str:
+        """On how many records a row is judged, or why it is not judged on all that answer its hypothesis."""
+        together = self.table.evidence.together
+        if self.table.evidence.on_all[row]:
+            how = "random effects" if self.table.applied[row].evidence.together == "random" else "one common effect"
+            spread = decimal(math.exp(together.log_p_spread[row]))
+            members = len(together.members[row])
+            return f" Weighed on {members} records of one hypothesis, pooled with {how} (spread: p = {spread})."
+        if together.pooled[row]:
+            return (
+                " Pooling would make the claim stronger, and no record says that its data are its own (replicates)."
+            )
+        why = together.apart[row]
+        return f" Not weighed together with other records of its hypothesis: {why}." if why else ""
 
     def _prior(self, row: int) -> tuple[float, str]:
         evidence = self.table.evidence
-        return float(evidence.prior[row]), "record" if evidence.prior_is_own[row] else "policy"
+        own = "plan" if self.table.columns.prior_from_plan[row] else "record"
+        return float(evidence.prior[row]), own if evidence.prior_is_own[row] else "policy"
+
+
+def risk_at(table: Table, row: int, prior: float) -> str:
+    """The false positive risk of a row at another prior, as it is shown."""
+    risk = float(weigh.false_positive_risk(table.evidence.log_likelihood_ratio[row], prior))
+    return "unknown" if math.isnan(risk) else percent(risk)
 
 
 def _risk_wanted(applied: Applied) -> float:

@@ -6,21 +6,30 @@ these become findings, and findings become the verdict, from which everything th
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import field, replace
+from datetime import UTC, date, datetime
 from pathlib import Path
 
-from gatecheck import git
-from gatecheck.columns import columns_of
+from gatecheck import __version__, git
+from gatecheck.beyond import Tree, judge_beyond_records
+from gatecheck.columns import columns_of, with_own_priors, with_promised
 from gatecheck.compare.own_numbers import own_numbers
 from gatecheck.errors import CannotJudge
 from gatecheck.evidence import weigh_columns
+from gatecheck.facts import Asked, Facts, look_up
 from gatecheck.figures import FigureTable
+from gatecheck.interval_figures import interval_of
 from gatecheck.model.found import Found, Scan
+from gatecheck.model.progress import Progress
 from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Figures, Finding, Judged, Place, Problem, Verdict
+from gatecheck.notes import note_on_priors, note_on_proposed, notes_on_apart, notes_on_priors_changed
+from gatecheck.permissions import Setting, Settled, permitted
+from gatecheck.permissions.commits import judged_commit
 from gatecheck.policies import Standing, standing_policy
-from gatecheck.policy import Policy
+from gatecheck.policy import Applied, Policy
+from gatecheck.pull_request import SinceBase, prior_of, since_base
 from gatecheck.rules import RULES
 from gatecheck.rules.engine import judge_all
 from gatecheck.rules.rule import Table
@@ -28,7 +37,6 @@ from gatecheck.rules.words import describe_result
 from gatecheck.scan import scan
 
 WHOLE_TREE = Place(".")
-_MOST_NAMED = 5
 
 
 @struct
@@ -37,7 +45,8 @@ class Request:
 
     `policy` names the policy file relative to `root`; `base` is the revision into which a pull request goes:
     its policy counts. With `only_changed` only claims that are new or changed since `base` decide. Records in
-    `explain` are told in full.
+    `explain` are told in full. `today` counts for waivers where no commit tells the day,
+    and `progress` is told how far the work has come.
     """
 
     root: Path
@@ -45,6 +54,8 @@ class Request:
     base: str | None = None
     only_changed: bool = False
     explain: frozenset[str] = field(default=frozenset())
+    today: date = field(default_factory=lambda: datetime.now(UTC).date())
+    progress: Progress | None = None
 
 
 def check(request: Request) -> Verdict:
@@ -60,45 +71,139 @@ def check(request: Request) -> Verdict:
 
 def _check(request: Request, standing: Standing, policy: Policy) -> Verdict:
     globs = policy.document.scan
-    tree = scan(request.root, globs.include, globs.exclude)
-    table = _table(tree, policy)
-    explained = frozenset(row for row, one in enumerate(tree.found) if one.record.id in request.explain)
-    findings = judge_all(RULES, table, explain=explained)
-    since = request.base if request.only_changed else None
-    unchanged = frozenset() if since is None else _unchanged(request.root, since, policy, tree.found)
-    figures = FigureTable(table)
-    judged = tuple(
-        _judged(one, findings[row], figures.of_row(row, in_full=row in explained), unchanged)
-        for row, one in enumerate(tree.found)
+    tree = scan(request.root, globs.include, globs.exclude, progress=request.progress)
+    since = _since_base(request, policy, tree)
+    state = _judge_all(request, tree, since, policy)
+    return Verdict(
+        policy=standing.used,
+        judged=state.judged,
+        problems=(*tree.problems, *state.problems, *_too_few(tree, policy)),
+        notes=(
+            *standing.notes,
+            *state.notes,
+            *_notes_on_proposed(request, state, standing.proposed),
+            *notes_on_priors_changed(state.table, since),
+            *note_on_priors(state.table),
+            *notes_on_apart(state.table),
+        ),
+        changes=() if since is None else since.changes,
+        base=None if request.base is None else git.resolve(request.root, request.base),
+        head=judged_commit(request.root),
+        plans=state.facts.plan_digests,
+        version=__version__,
     )
-    judged = tuple(
-        replace(one, sensitivity=figures.sensitivity(row)) if row in explained else one
-        for row, one in enumerate(judged)
-    )
-    problems = (*tree.problems, *_too_few(tree, policy))
-    notes = (*standing.notes, *_note_on_priors(table))
-    return Verdict(standing.used, judged, problems, notes)
 
 
-def _table(tree: Scan, policy: Policy) -> Table:
+@struct
+class _State:
+    """A tree judged by one policy, with what it was judged on."""
+
+    tree: Scan
+    since: SinceBase | None
+    table: Table
+    facts: Facts
+    judged: tuple[Judged, ...]
+    problems: tuple[Problem, ...]
+    notes: tuple[str, ...]
+
+
+def _judge_all(request: Request, tree: Scan, since: SinceBase | None, policy: Policy) -> _State:
     applied = tuple(policy.for_record(one.record, one.at.path) for one in tree.found)
+    facts = look_up(Asked(request.root, request.base, policy), tree.found, applied)
+    _tell(request, "Weighing {1:,} records", tree)
+    table = _table(tree, applied, since, facts)
+    _tell(request, "Judging {1:,} records", tree)
+    settled = _settled(request, table)
+    _tell(request, "Telling what came of {1:,} records", tree)
+    records = _judge(request, table, since, settled)
+    others, unread = judge_beyond_records(_whole(request, tree, since, policy), facts, table, records)
+    problems = (*facts.problems, *settled.problems, *unread)
+    return _State(tree, since, table, facts, (*records, *others), problems, settled.notes)
+
+
+def _tell(request: Request, sentence: str, tree: Scan) -> None:
+    if request.progress is not None:
+        request.progress(sentence, 0, len(tree.found))
+
+
+def _whole(request: Request, tree: Scan, since: SinceBase | None, policy: Policy) -> Tree:
+    if since is None or not request.only_changed:
+        return Tree(request.root, policy, tree.found)
+    return Tree(request.root, policy, tree.found, request.base, since.base)
+
+
+def _since_base(request: Request, policy: Policy, tree: Scan) -> SinceBase | None:
+    if request.base is None:
+        return None
+    globs = policy.document.scan
+    revision = git.resolve(request.root, request.base)
+    base = scan(request.root, globs.include, globs.exclude, revision, request.progress)
+    return since_base(tree.found, base.found)
+
+
+def _explained(request: Request, table: Table) -> frozenset[int]:
+    return frozenset(row for row, one in enumerate(table.columns.found) if one.record.id in request.explain)
+
+
+def _settled(request: Request, table: Table) -> Settled:
+    """What the rules find, and what of it is permitted all the same."""
+    setting = Setting(request.root, request.base, request.today, [rule.name for rule in RULES])
+    findings = judge_all(RULES, table, explain=_explained(request, table))
+    return permitted(setting, findings, table.columns.found)
+
+
+def _judge(request: Request, table: Table, since: SinceBase | None, settled: Settled) -> tuple[Judged, ...]:
+    found, findings, explained = table.columns.found, settled.findings, _explained(request, table)
+    unchanged = since.unchanged if since is not None and request.only_changed else frozenset()
+    figures = FigureTable(table)
+    return tuple(
+        replace(
+            _judged(one, findings[row], figures.of_row(row, in_full=row in explained), unchanged),
+            sensitivity=figures.sensitivity(row) if row in explained else None,
+            numbers=one.numbers if row in explained or _has_shortfall(findings[row]) else "",
+        )
+        for row, one in enumerate(found)
+    )
+
+
+def _has_shortfall(findings: Sequence[Finding]) -> bool:
+    """Whether there is anything that a permission could be about."""
+    return any(finding.outcome in {"short", "undecided", "waived"} for finding in findings)
+
+
+def _table(tree: Scan, applied: tuple[Applied, ...], since: SinceBase | None, facts: Facts) -> Table:
     columns = columns_of(tree.found)
+    if since is not None:
+        columns = with_own_priors(columns, _priors_that_count(tree, since))
+    if any(facts.promises):
+        columns = with_promised(columns, [None if each is None else each.hypothesis for each in facts.promises])
     evidence = weigh_columns(columns, [each.evidence for each in applied])
-    return Table(columns, evidence, own_numbers(columns, evidence), applied)
+    return Table(
+        columns,
+        evidence,
+        own_numbers(columns, evidence),
+        applied,
+        promises=facts.promises,
+        looks_seen=facts.looks_seen,
+        inputs=facts.inputs,
+        tests_behind=facts.tests_behind,
+        families_before={} if since is None else since.families,
+    )
 
 
-def _note_on_priors(table: Table) -> tuple[str, ...]:
-    """Name the claims that are weighed at a prior of their own above the policy's: it helps them to stand."""
-    raised = [
-        one.record.id
-        for row, one in enumerate(table.columns.found)
-        if table.columns.claims[row] and table.columns.own_prior[row] > table.applied[row].evidence.prior
+def _priors_that_count(tree: Scan, since: SinceBase) -> list[float | None]:
+    """The records' own priors, and those of the base where a record is not new: a request does not help itself."""
+    return [
+        prior_of(one.record if before is None else before)
+        for one, before in zip(tree.found, since.before, strict=True)
     ]
-    if not raised:
+
+
+def _notes_on_proposed(request: Request, state: _State, proposed: Policy | None) -> tuple[str, ...]:
+    if proposed is None:
         return ()
-    named = ", ".join(raised[:_MOST_NAMED])
-    more = f" and {len(raised) - _MOST_NAMED} more" if len(raised) > _MOST_NAMED else ""
-    return (f"Weighed at a prior that the record itself sets above the policy's: {named}{more}.",)
+    other = _judge_all(request, state.tree, state.since, proposed)
+    return (note_on_proposed(state.judged, other.judged),)
 
 
 def _judged(
@@ -118,15 +223,8 @@ def _judged(
         also_at=one.also_at,
         counts_now=one.record.id not in unchanged,
         alternatives=others,
+        interval=interval_of(one.record),
     )
-
-
-def _unchanged(root: Path, since: str, policy: Policy, found: Sequence[Found]) -> frozenset[str]:
-    """The ids whose documents are the same at the revision `since`."""
-    globs = policy.document.scan
-    base = scan(root, globs.include, globs.exclude, git.resolve(root, since))
-    before: Mapping[str, str] = {one.record.id: one.digest for one in base.found}
-    return frozenset(one.record.id for one in found if before.get(one.record.id) == one.digest)
 
 
 def _too_few(tree: Scan, policy: Policy) -> tuple[Problem, ...]:

@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 import contextlib
+import itertools
 import os
 import re
 import shlex
 import subprocess
+import tempfile
 import threading
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
@@ -14,6 +16,7 @@ from pathlib import Path
 from typing import IO, Literal, cast
 
 from gatecheck.errors import CannotJudge
+from gatecheck.errors import safe as safe  # noqa: PLC0414  # what git says is cleaned by it, here and elsewhere
 
 Kind = Literal["file", "link", "submodule", "unmerged", "folder"]
 
@@ -25,6 +28,7 @@ _SETTINGS = {
     "GIT_NO_LAZY_FETCH": "1",
     "GIT_ALLOW_PROTOCOL": "none",  # versions that do not know GIT_NO_LAZY_FETCH fail here instead of fetching
     "GIT_NO_REPLACE_OBJECTS": "1",
+    "GIT_GRAFT_FILE": f"{os.devnull}/none",  # as replaced objects, invented parents would tell another history
 }
 #: A hook sets these for its own repository, which need not be the one that is judged.
 _OF_ANOTHER_REPOSITORY = {
@@ -35,13 +39,19 @@ _OF_ANOTHER_REPOSITORY = {
     "GIT_NAMESPACE",
     "GIT_OBJECT_DIRECTORY",
     "GIT_PREFIX",
+    "GIT_SHALLOW_FILE",
     "GIT_WORK_TREE",
 }
+_OVERRULED = (
+    "-c",
+    "core.fsmonitor=false",  # the monitor of file changes is a program that the settings may name
+    "-c",
+    "log.diffMerges=first-parent",  # what `-m` means to `git log`
+)
 _OWNER = re.compile(r"detected dubious ownership in repository at '([^\n]*)'")
 _LISTED = re.compile(r"(?:\?|([A-Z]) ([0-7]{6}) ([0-9a-f]+) ([0-3])(?=\t))[ \t]([^\0]+)\0")
 _CLOSED = "could not open directory"
 _NO_REPOSITORY = "fatal: not a git repository (or any"
-_LONGEST = 200
 _CHUNK = 1 << 20
 
 
@@ -143,6 +153,36 @@ def read_blobs(folder: Path, object_ids: Sequence[str], most: int) -> Iterator[B
     CannotJudge
         Git ends before it has answered.
     """
+    answered = 0
+    for blob in _answers(folder, object_ids, most):
+        yield blob
+        answered += 1
+    if answered == len(object_ids):
+        return
+    # In a partial clone git ends at an object that it may not fetch, rather than say that it is missing.
+    rest, held = object_ids[answered:], _held(folder)
+    there = [one for one in rest if one in held]
+    if len(there) == len(rest):
+        raise _stopped(folder)
+    answers = _answers(folder, there, most)
+    for one in rest:
+        blob_or_end = next(answers, None) if one in held else Blob(None, None)
+        if blob_or_end is None:
+            raise _stopped(folder)
+        yield blob_or_end
+
+
+def _held(folder: Path) -> frozenset[str]:
+    """The ids of all objects that are here."""
+    command = ("cat-file", "--batch-all-objects", "--batch-check=%(objectname)", "--unordered", "--buffer")
+    status, held, _ = run(folder, *command)
+    if status:
+        raise _stopped(folder)
+    return frozenset(held.decode().split())
+
+
+def _answers(folder: Path, object_ids: Sequence[str], most: int) -> Iterator[Blob]:
+    """Yield the objects until git ends."""
     with _start(folder, "cat-file", "--batch", "--buffer", feeding=True) as process:
         questions, answers = cast("IO[bytes]", process.stdin), cast("IO[bytes]", process.stdout)
         request = "".join(f"{one}\n" for one in object_ids).encode()
@@ -150,8 +190,8 @@ def read_blobs(folder: Path, object_ids: Sequence[str], most: int) -> Iterator[B
         feeder = threading.Thread(target=_feed, args=(questions, request), daemon=True)
         feeder.start()
         try:
-            for _ in object_ids:
-                yield _next_blob(folder, answers, most)
+            heads = (answers.readline().split() for _ in object_ids)
+            yield from (_blob(folder, head, answers, most) for head in itertools.takewhile(bool, heads))
         finally:
             process.kill()
             feeder.join()
@@ -163,21 +203,22 @@ def _feed(pipe: IO[bytes], request: bytes) -> None:
         pipe.close()
 
 
-def _next_blob(folder: Path, answers: IO[bytes], most: int) -> Blob:
-    header = answers.readline().split()
-    if header[1:] == [b"missing"]:
+def _blob(folder: Path, head: Sequence[bytes], answers: IO[bytes], most: int) -> Blob:
+    if head[-1] == b"missing":
         return Blob(None, None)
-    size = int(header[2]) if len(header) == 3 else 0  # noqa: PLR2004  # "<id> <type> <size>"
+    size = int(head[2]) if len(head) == 3 else 0  # noqa: PLR2004  # "<id> <type> <size>"
     content = None
     if size <= most:
         content = answers.read(size)
     else:
         _pass_over(answers, size)
     if answers.read(1) != b"\n":
-        raise CannotJudge(
-            f"git stopped before it had read the files of {safe(str(folder))}", "run `git fsck` there"
-        )
+        raise _stopped(folder)
     return Blob(size, content)
+
+
+def _stopped(folder: Path) -> CannotJudge:
+    return CannotJudge(f"git stopped before it had read the files of {safe(str(folder))}", "run `git fsck` there")
 
 
 def _pass_over(answers: IO[bytes], size: int) -> None:
@@ -224,10 +265,20 @@ def resolve(folder: Path, revision: str) -> str:
     raise CannotJudge(f"git knows no revision {safe(revision)} here", f"name a commit, or run `{fetch}`")
 
 
-def safe(text: str) -> str:
-    """Return `text` in printable ASCII and of bounded length, for a message."""
-    plain = ascii(text)[1:-1]
-    return plain if len(plain) <= _LONGEST else plain[:_LONGEST] + "…"
+def is_unborn(folder: Path) -> bool:
+    """Whether the checked-out branch has no commit yet.
+
+    Raises
+    ------
+    CannotJudge
+        Git fails.
+    """
+    status, branch, _ = run(folder, "symbolic-ref", "--quiet", "HEAD")
+    if status:  # a detached head stands at a commit
+        return False
+    status, commit, error = run(folder, "for-each-ref", os.fsdecode(branch.removesuffix(b"\n")))
+    # Of a branch that it cannot read git only warns, and leaves it out.
+    return not checked(folder, "for-each-ref", status, commit, error) and not error
 
 
 def run(folder: Path, *arguments: str) -> tuple[int, bytes, str]:
@@ -237,17 +288,38 @@ def run(folder: Path, *arguments: str) -> tuple[int, bytes, str]:
     return process.returncode, output, error.decode("utf-8", "replace")
 
 
-def _start(folder: Path, *arguments: str, feeding: bool = False) -> subprocess.Popen[bytes]:
+def pieces(folder: Path, command: str, *arguments: str) -> Iterator[str]:
+    """Yield what git writes, as it writes it, in the pieces that NUL bytes end.
+
+    Raises
+    ------
+    CannotJudge
+        Git fails, which is seen after its last piece.
+    """
+    # Git may complain at length while it writes: a pipe that nobody reads would stop it.
+    with tempfile.TemporaryFile() as complaints:
+        with _start(folder, command, *arguments, complaints=complaints) as process:
+            rest = b""
+            while chunk := cast("IO[bytes]", process.stdout).read(_CHUNK):
+                *whole, rest = (rest + chunk).split(b"\0")
+                yield from map(os.fsdecode, whole)
+        complaints.seek(0)
+        error = complaints.read().decode("utf-8", "replace")
+    checked(folder, command, process.returncode, rest, error)
+
+
+def _start(
+    folder: Path, *arguments: str, feeding: bool = False, complaints: IO[bytes] | None = None
+) -> subprocess.Popen[bytes]:
     kept = {name: value for name, value in os.environ.items() if name not in _OF_ANOTHER_REPOSITORY}
-    # The monitor of file changes is a program that the repository's own settings may name.
-    command = ["git", "-C", str(folder), "-c", "core.fsmonitor=false", *arguments]
+    command = ["git", "-C", str(folder), *_OVERRULED, *arguments]
     try:
         return subprocess.Popen(  # noqa: S603  # no shell: each argument arrives as it is
             command,
             env=kept | _SETTINGS,
             stdin=subprocess.PIPE if feeding else subprocess.DEVNULL,
             stdout=subprocess.PIPE,
-            stderr=subprocess.DEVNULL if feeding else subprocess.PIPE,
+            stderr=subprocess.DEVNULL if feeding else complaints or subprocess.PIPE,
         )
     except OSError as error:
         raise _NotInstalled(

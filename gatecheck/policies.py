@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -16,19 +17,22 @@ from gatecheck.scan.one_file import OneFile, read_one
 from gatecheck.schema.read import Fault
 
 POLICY_FILE = "gatecheck.yaml"
-WAIVERS_FILE = "gatecheck.waivers.yaml"
 _SETTINGS = {rule.name: rule.settings for rule in RULES}
 _ALWAYS_ON = frozenset(rule.name for rule in RULES if rule.always_on)
 
 
 @struct
 class Standing:
-    """The policy that stands, where it came from, and what the summary must say of it."""
+    """The policy that stands, where it came from, and what the summary must say of it.
+
+    `proposed` is the policy of the tree where that of the base stands and the two differ.
+    """
 
     policy: Policy | None
     used: PolicyUsed | None
     problems: tuple[Problem, ...] = ()
     notes: tuple[str, ...] = ()
+    proposed: Policy | None = None
 
 
 def standing_policy(root: Path, named: str | None, base: str | None) -> Standing:
@@ -45,15 +49,18 @@ def standing_policy(root: Path, named: str | None, base: str | None) -> Standing
     path = named or POLICY_FILE
     revision = None if base is None else git.resolve(root, base)
     file = read_one(root, path, revision)
-    notes = (*_note_on_waivers(root), *_notes_on_base(root, path, revision, file))
+    in_tree = file if revision is None else read_one(root, path)
+    notes = _notes_on_base(path, revision, in_tree, file)
     if file is not None:
-        return _from_file(file, revision, notes)
+        stands = _from_file(file, revision, notes)
+        return replace(stands, proposed=_proposed(in_tree, file))
     if named is not None:
         where = "" if base is None else f" at {git.safe(base)}"
         raise CannotJudge(f"there is no policy {git.safe(named)}{where}", "name a policy file that is there")
     note = f"No {POLICY_FILE} is here, so the built-in starting policy applies; `gatecheck start` writes one."
     policy, _ = read_own_policy(STARTING_POLICY)
-    return Standing(policy, _used(STARTING_POLICY, _digest_of_starting()), (), (*notes, note))
+    used = _used(STARTING_POLICY, _digest_of_starting())
+    return Standing(policy, used, (), (*notes, note), _proposed(in_tree, file))
 
 
 def read_own_policy(document: Any) -> tuple[Policy | None, tuple[Fault, ...]]:
@@ -78,16 +85,18 @@ def _problem(fault: Fault, place: Place) -> Problem:
     return Problem(place, f"{field}{fault.message}", fault.advice)
 
 
-def _note_on_waivers(root: Path) -> tuple[str, ...]:
-    if read_one(root, WAIVERS_FILE) is None:
-        return ()
-    return (f"This version reads no waivers, so none in {WAIVERS_FILE} applies.",)
+def _proposed(in_tree: OneFile | None, file: OneFile | None) -> Policy | None:
+    """The policy that the tree would have; one that cannot be read is told when it is the base's."""
+    if in_tree is None or in_tree.document is None or (file is not None and in_tree.digest == file.digest):
+        return None
+    return read_own_policy(in_tree.document.value)[0]
 
 
-def _notes_on_base(root: Path, path: str, revision: str | None, at_base: OneFile | None) -> tuple[str, ...]:
+def _notes_on_base(
+    path: str, revision: str | None, in_tree: OneFile | None, at_base: OneFile | None
+) -> tuple[str, ...]:
     if revision is None:
         return ()
-    in_tree = read_one(root, path)
     if (in_tree and in_tree.digest) == (at_base and at_base.digest):
         return ()
     what = "new" if at_base is None else "removed" if in_tree is None else "changed"

@@ -9,12 +9,15 @@ from typing import Annotated, Any, Literal
 
 from gatecheck.globs import matches
 from gatecheck.model.marks import OneOrMore, Range
+from gatecheck.model.plan_settings import PlanSettings
 from gatecheck.model.record import Aim, OpenProbability, Record, Role, Status, Text
+from gatecheck.model.rerun_settings import RerunSettings
 from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Enforce
 from gatecheck.schema.read import Fault, nearest_advice, read
 
 AlternativeName = Literal["observed-effect", "design-effect", "default-prior", "bound"]
+Pooling = Literal["random", "fixed", "apart"]
 Globs = Annotated[tuple[Text, ...], OneOrMore()]
 Document = dict[str, Any]
 _Scale = Annotated[float, Range(0, low_open=True)]
@@ -46,6 +49,10 @@ class EvidenceSettings:
     ] = ("observed-effect",)
     prior: Annotated[OpenProbability, "probability of a real effect, where the record sets none"] = 0.5
     scale: Annotated[_Scale, "scale of the default Cauchy prior on a standardised difference"] = DEFAULT_SCALE
+    together: Annotated[
+        Pooling,
+        "how records that answer one hypothesis on data of their own are pooled: random effects, fixed, apart",
+    ] = "random"
 
 
 @struct
@@ -55,6 +62,7 @@ class EvidenceOverride:
     alternative: Annotated[tuple[AlternativeName, ...] | None, OneOrMore(), "as under evidence"] = None
     prior: Annotated[OpenProbability | None, "as under evidence"] = None
     scale: Annotated[_Scale | None, "as under evidence"] = None
+    together: Annotated[Pooling | None, "as under evidence"] = None
 
 
 @struct
@@ -102,6 +110,8 @@ class PolicyDocument:
     scan: Annotated[ScanSettings, "which files are looked at"] = ScanSettings()
     at_least: Annotated[Annotated[int, Range(0)], "with fewer records than this, the gate cannot judge"] = 1
     evidence: Annotated[EvidenceSettings, "how evidence is weighed"] = EvidenceSettings()
+    plans: Annotated[PlanSettings, "where plans lie, and whose word counts for their date"] = PlanSettings()
+    rerun: Annotated[RerunSettings, "what `gatecheck rerun` runs; nothing else runs it"] = RerunSettings()
     rules: Annotated[dict[str, Any], "settings by rule; a rule that is not named is off"] = field(
         default_factory=dict
     )
@@ -132,6 +142,11 @@ class Policy:
             self._worked_out[rows] = self._apply([self.document.for_[row] for row in rows])
         return self._worked_out[rows]
 
+    @property
+    def in_general(self) -> Applied:
+        """What the policy asks where no override matches, such as of a plan."""
+        return self._apply([])
+
     def _apply(self, overrides: list[Override]) -> Applied:
         evidence = self.document.evidence
         for override in overrides:
@@ -139,6 +154,7 @@ class Policy:
                 override.evidence.alternative or evidence.alternative,
                 override.evidence.prior or evidence.prior,
                 override.evidence.scale or evidence.scale,
+                override.evidence.together or evidence.together,
             )
         merged = _merge(self.document.rules, self.always_on, overrides)
         on = {name: raw for name, raw in merged.items() if not _is_off(raw)}

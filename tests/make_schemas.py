@@ -11,8 +11,10 @@ from pathlib import Path
 from typing import Any
 
 import gatecheck.schema
+from gatecheck.model.accepted import Accepted
 from gatecheck.model.plan import Plan
 from gatecheck.model.record import Record
+from gatecheck.model.seal import Seal
 from gatecheck.model.waivers import Waivers
 from gatecheck.policy import PolicyDocument
 from gatecheck.rules import RULES
@@ -28,6 +30,8 @@ def schemas() -> dict[str, Schema]:
         "record": json_schema(Record, "record/1"),
         "plan": json_schema(Plan, "plan/1"),
         "waivers": json_schema(Waivers, "waivers/1"),
+        "seal": json_schema(Seal, "seal/1"),
+        "accepted": json_schema(Accepted, "accepted/1"),
         "policy": policy_schema(),
     }
 

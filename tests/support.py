@@ -78,8 +78,17 @@ def changed(document: Document, **changes: Any) -> Document:
 
 
 def drainage(**changes: Any) -> Document:
-    """The drainage record with other values."""
-    return changed(DRAINAGE, **changes)
+    """The drainage record with other values.
+
+    Another test or estimate is that of other data: the means and standard deviations of the groups go with it,
+    unless the sample is given too.
+    """
+    made = changed(DRAINAGE, **changes)
+    names = {name.split("__")[0] for name in changes}
+    if names & {"test", "estimate"} and "sample" not in names:
+        for group in made["sample"]["groups"]:
+            del group["mean"], group["sd"]
+    return made
 
 
 def write_tree(folder: Path, *records: Document, policy: Document | None = POLICY) -> Path:

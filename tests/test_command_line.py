@@ -20,7 +20,6 @@ from gatecheck.cli import main
 from gatecheck.commands import edge
 from gatecheck.declaring import declare as declared
 from gatecheck.render import RENDERERS
-from gatecheck.starting import FILES
 
 
 def said(capsys: pytest.CaptureFixture[str], *arguments: str) -> tuple[int, str, str]:
@@ -176,35 +175,6 @@ def test_schema_prints_the_published_schema(capsys: pytest.CaptureFixture[str], 
     status, out, _ = said(capsys, "schema", kind)
 
     assert (status, json.loads(out)["title"]) == (0, f"{kind}/1")
-
-
-def test_start_writes_a_policy_and_a_record_that_stand(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
-    """A repository that was just started passes, and a second start overwrites nothing."""
-    status, out, _ = said(capsys, "start", str(tmp_path))
-    assert (status, out.splitlines()[:2]) == (
-        0,
-        ["gatecheck.yaml was written.", "results/example.record.json was written."],
-    )
-    assert said(capsys, "weigh", str(tmp_path))[0] == 0
-
-    (tmp_path / "gatecheck.yaml").write_text("mine", encoding="utf-8")
-    _, out, _ = said(capsys, "start", str(tmp_path))
-    assert out.splitlines()[0] == "gatecheck.yaml is there already and was left as it is."
-    assert (tmp_path / "gatecheck.yaml").read_text(encoding="utf-8") == "mine"
-
-
-def test_start_tells_where_it_cannot_write(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
-    (tmp_path / "results").write_text("a file", encoding="utf-8")
-
-    status, _, err = said(capsys, "start", str(tmp_path))
-    assert (status, err) == (
-        3,
-        "gatecheck: cannot judge: results/example.record.json cannot be written (File exists); "
-        "make the folder writable.\n",
-    )
-    status, _, err = said(capsys, "start", str(tmp_path / "no"))
-    assert (status, "is not a folder" in err) == (3, True)
-    assert set(FILES) == {"gatecheck.yaml", "results/example.record.json"}
 
 
 def test_an_interrupt_is_no_pass(monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]) -> None:

@@ -14,7 +14,17 @@ from gatecheck.render import design as told
 def act(parsed: argparse.Namespace) -> int:
     """Answer the question about a study that is still to be made."""
     asked = DesignQuestion(
-        parsed.test, parsed.effect, parsed.assurance, parsed.prior, parsed.family, parsed.looks, parsed.boundary
+        test=parsed.test,
+        effect=parsed.effect,
+        assurance=parsed.assurance,
+        prior=parsed.prior,
+        family=parsed.family,
+        looks=parsed.looks,
+        boundary=parsed.boundary,
+        sides=parsed.sides,
+        groups=parsed.groups,
+        df=parsed.df,
+        ratio=parsed.ratio,
     )
     tell(told(design(asked, readable_policy(parsed)), width()))
     return Exit.STANDS

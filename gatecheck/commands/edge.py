@@ -3,16 +3,22 @@
 from __future__ import annotations
 
 import argparse
+import contextlib
 import os
 import sys
+from collections.abc import Iterator
 from pathlib import Path
+from typing import TextIO
 
 from gatecheck.errors import CannotJudge, WrongUsage
+from gatecheck.model.progress import Progress
 from gatecheck.policies import standing_policy
 from gatecheck.policy import Policy
 
 _WIDTH = 80
 _WIDEST = 140
+#: What a terminal calls itself that only prints.
+_NO_MARKS = "dumb"
 
 
 def folder(parsed: argparse.Namespace) -> Path:
@@ -47,6 +53,34 @@ def width() -> int:
     if not sys.stdout.isatty():
         return _WIDTH
     return max(40, min(_WIDEST, os.get_terminal_size(sys.stdout.fileno()).columns))
+
+
+def bold() -> bool:
+    """Whether to mark what matters most by bold type, the only mark there is beside the words.
+
+    A person at a terminal sees it who has not asked for plain text (SOURCE: https://no-color.org, from memory: any
+    value of NO_COLOR that is not empty asks for it); no file and no log of a build holds it.
+    """
+    kind = os.environ.get("TERM", "")
+    return _is_for_a_person(sys.stdout) and not os.environ.get("NO_COLOR") and kind not in {"", _NO_MARKS}
+
+
+@contextlib.contextmanager
+def progress() -> Iterator[Progress | None]:
+    """Show how far long work has come on standard error, if a person may watch; else there is no `Progress`."""
+    if not _is_for_a_person(sys.stderr) or os.environ.get("TERM") == _NO_MARKS:
+        yield None
+        return
+    from gatecheck.commands.progress import ProgressLine  # noqa: PLC0415  # a build does without
+
+    # A terminal that nobody has told its size says 0.
+    with ProgressLine(sys.stderr, os.get_terminal_size(sys.stderr.fileno()).columns or _WIDTH) as line:
+        yield line
+
+
+def _is_for_a_person(stream: TextIO) -> bool:
+    """Whether `stream` is a terminal; build runners that give one set CI (common practice, no source)."""
+    return stream.isatty() and not os.environ.get("CI")
 
 
 def tell(text: str) -> None:

@@ -12,5 +12,5 @@ from gatecheck.starting import start
 
 def act(parsed: argparse.Namespace) -> int:
     """Write what is not there yet, and tell it."""
-    sys.stdout.write("".join(f"{line}\n" for line in start(Path(parsed.folder))))
+    sys.stdout.write("".join(f"{line}\n" for line in start(Path(parsed.folder), parsed.team)))
     return Exit.STANDS

@@ -5,7 +5,7 @@ from __future__ import annotations
 import argparse
 
 from gatecheck.arguments import FORMATS
-from gatecheck.commands.edge import folder, policy_path, tell, width, write
+from gatecheck.commands.edge import bold, folder, policy_path, progress, tell, width, write
 from gatecheck.errors import WrongUsage
 from gatecheck.gate import Request, check
 from gatecheck.render import RENDERERS, account
@@ -16,9 +16,11 @@ def act(parsed: argparse.Namespace) -> int:
     writes = [_split(each) for each in parsed.write]
     if parsed.only_changed and parsed.base is None:
         raise WrongUsage("--only-changed needs --base: say since which revision")
-    verdict = check(Request(folder(parsed), policy_path(parsed), parsed.base, parsed.only_changed))
-    if not writes:
-        tell(account(verdict, width()))
+    with progress() as line:
+        request = Request(folder(parsed), policy_path(parsed), parsed.base, parsed.only_changed, progress=line)
+        verdict = check(request)
+        told = "" if writes else account(verdict, width(), bold=bold())
+    tell(told)
     for form, path in writes:
         write(path, RENDERERS[form](verdict))
     return verdict.exit

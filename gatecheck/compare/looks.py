@@ -8,7 +8,8 @@ from collections.abc import Sequence
 import numpy as np
 
 from gatecheck.columns import Columns, Floats
-from gatecheck.model.record import Look
+from gatecheck.model.looks_seen import LooksSeen
+from gatecheck.model.record import Look, Record
 from gatecheck.model.struct import struct
 
 _POCOCK = "pocock"
@@ -20,49 +21,77 @@ _MOST_LOOKS = 200
 class LookFacts:
     """What stands behind one look.
 
-    `limit` is the nominal p of the planned boundary at this look, nan where none was planned or it cannot be told.
-    `real_error` is the type I error of as many looks without a boundary, `pocock` the nominal p that a Pocock
-    boundary over them would have had; nan where looks were planned with a boundary.
+    `number` is the look that the record tells or the history shows, whichever is more, and `taken` the number of
+    looks at the least. The boundary is `late` where the first look in the history did not tell it. `limit` is the
+    nominal p of the planned boundary at this look, nan where none was planned or it cannot be told. `real_error`
+    is the type I error of as many looks without a boundary, `pocock` the nominal p that a Pocock boundary over
+    them would have had; nan where looks were planned with a boundary.
     """
 
     planned: bool
+    late: bool
+    number: int
+    taken: int
     limit: float
     real_error: float
     pocock: float
 
 
-def look_facts(columns: Columns, alpha: Floats) -> tuple[LookFacts | None, ...]:
-    """The facts of each row at level `alpha`, `None` where no look is recorded or the first is the only one."""
-    looks = [one.record.look for one in columns.found]
-    return tuple(
-        None
-        if look is None or is_single(look)
-        else _facts(look, float(alpha[row]), int(2 - columns.test.one_sided[row]))
-        for row, look in enumerate(looks)
-    )
+def look_facts(
+    columns: Columns, alpha: Floats, seen: Sequence[LooksSeen | None] = ()
+) -> tuple[LookFacts | None, ...]:
+    """The facts of each row at level `alpha`, `None` where there is one look alone.
+
+    `seen` gives what the history shows of each row; nothing where it was not looked at.
+    """
+    shown = seen or (None,) * len(columns.found)
+    facts: list[LookFacts | None] = []
+    for row, (one, history) in enumerate(zip(columns.found, shown, strict=True)):
+        several = is_one_of_several(one.record.look, history)
+        sides = int(2 - columns.test.one_sided[row])
+        facts.append(_facts(one.record, history, float(alpha[row]), sides) if several else None)
+    return tuple(facts)
 
 
-def is_single(look: Look) -> bool:
-    """Whether the look is the only one that was planned and taken."""
-    return look.number == 1 and (look.planned or 1) == 1
+def number_of(look: Look | None, seen: LooksSeen | None) -> int:
+    """Return which look this is: as the record tells or as the history shows, whichever is more."""
+    return max(1 if look is None else look.number, 0 if seen is None else len(seen.looks))
 
 
-def _facts(look: Look, alpha: float, sides: int) -> LookFacts:
-    planned = look.planned is not None and look.number <= look.planned and look.boundary is not None
-    taken = max(look.number, look.planned or 1)
+def is_one_of_several(look: Look | None, seen: LooksSeen | None) -> bool:
+    """Whether more looks than this one were planned, or taken."""
+    return number_of(look, seen) > 1 or (look is not None and (look.planned or 1) > 1)
+
+
+def _facts(record: Record, seen: LooksSeen | None, alpha: float, sides: int) -> LookFacts:
+    look, number = record.look or Look(1), number_of(record.look, seen)
+    taken = max(number, look.planned or 1)
+    late = look.boundary is not None and _told_late(record, seen)
+    planned = look.planned is not None and number <= look.planned and look.boundary is not None and not late
     if taken > _MOST_LOOKS:
-        return LookFacts(planned, np.nan, np.nan, np.nan)
-    if planned and look.planned is not None and look.boundary is not None:
+        return LookFacts(planned, late, number, taken, np.nan, np.nan, np.nan)
+    if planned and look.planned is not None:
         schedule = look.schedule or tuple(each / look.planned for each in range(1, look.planned + 1))
-        return LookFacts(True, _limit(look, schedule, alpha, sides), np.nan, np.nan)
+        limit = _limit(look, number, schedule, alpha, sides)
+        return LookFacts(planned, late, number, taken, limit, np.nan, np.nan)
     even = tuple(float(each) for each in range(1, taken + 1))
-    return LookFacts(False, np.nan, _real_error(taken, alpha), float(_nominal(_POCOCK, even, alpha, sides)[-1]))
+    pocock = float(_nominal(_POCOCK, even, alpha, sides)[-1])
+    return LookFacts(planned, late, number, taken, np.nan, real_error(taken, alpha), pocock)
 
 
-def _limit(look: Look, schedule: Sequence[float], alpha: float, sides: int) -> float:
+def _told_late(record: Record, seen: LooksSeen | None) -> bool:
+    """Whether an earlier look told no boundary or another one, and no registration is named that may tell it."""
+    if record.plan is not None or seen is None:
+        return False
+    first = seen.looks[0].record.look if seen.looks else record.look
+    now = record.look
+    return first is None or (now is not None and (first.boundary, first.planned) != (now.boundary, now.planned))
+
+
+def _limit(look: Look, number: int, schedule: Sequence[float], alpha: float, sides: int) -> float:
     if len(schedule) != look.planned or look.boundary is None or not _on_schedule(look, schedule):
         return float("nan")
-    return float(_nominal(look.boundary, tuple(schedule), alpha, sides)[look.number - 1])
+    return float(_nominal(look.boundary, tuple(schedule), alpha, sides)[number - 1])
 
 
 def _on_schedule(look: Look, schedule: Sequence[float]) -> bool:
@@ -83,7 +112,10 @@ def _nominal(kind: str, information: tuple[float, ...], alpha: float, sides: int
 
 
 @functools.cache
-def _real_error(looks: int, alpha: float) -> float:
+def real_error(looks: int, alpha: float) -> float:
+    """Return the type I error of so many equally spaced looks at level `alpha`; nan beyond 200 of them."""
+    if looks > _MOST_LOOKS:
+        return float("nan")
     from gatecheck.weigh.looks import error_of_unplanned_looks  # noqa: PLC0415  # most trees hold no interim look
 
     return float(error_of_unplanned_looks(looks, alpha))

@@ -14,13 +14,13 @@ from gatecheck.declaring.adapt import derive
 from gatecheck.declaring.derived import Derived, Given
 from gatecheck.declaring.errors import DeclareError, incomplete
 from gatecheck.declaring.needs import unmet_needs
-from gatecheck.declaring.notebook import display
+from gatecheck.declaring.notebook import Display
 from gatecheck.declaring.provenance import provenance, software
 from gatecheck.declaring.sample import with_groups, with_n
 from gatecheck.declaring.tails import with_sides
 from gatecheck.declaring.values import in_contract_order, merged, plain
 from gatecheck.declaring.write import record_path, write
-from gatecheck.model.record import Aim, Record, Role, Status
+from gatecheck.model.record import Aim, Record, Role, Status, StudyDesign
 from gatecheck.schema.read import nearest_advice
 from gatecheck.schema.records import read_record
 from gatecheck.schema.shapes import form_of
@@ -45,6 +45,13 @@ class Fields(TypedDict, total=False):
     alternative: Object
     prior: Object
     family: Object
+    screen: Object
+    replicates: str
+    compares: Iterable[str]
+    design: StudyDesign
+    outcome: Object
+    population: str
+    covariates: Iterable[str]
     look: Object
     plan: Object
     deviations: Iterable[Object]
@@ -54,6 +61,7 @@ class Fields(TypedDict, total=False):
     folder: str | os.PathLike[str] | None
 
 
+_DISPLAY = Display()
 _NO_FIELDS_OF_RECORD = {"inputs", "made_at", "coefficient", "folder"}
 
 
@@ -70,7 +78,7 @@ class Declared:
 
 
 def declare(result: object = None, **fields: Unpack[Fields]) -> Declared:
-    """Declare a result: write its record, and in a notebook show it as an output of the cell.
+    """Declare a result: write its record, and in a notebook show it with what the gate will say of it.
 
     Statistic, df, p, sides, estimate, interval and sample size are taken from `result` where it tells them;
     what is given beside it is laid over that, member by member (`None` removes a member). What neither tells
@@ -86,7 +94,9 @@ def declare(result: object = None, **fields: Unpack[Fields]) -> Declared:
         Stable name of the result, and name of its file: `soil/worms` is `results/soil/worms.record.json`.
     claim : str, optional
         The sentence that the team asserts on this result. Without it nothing is claimed.
-    status, role, aim, harm, aliases, tags, alternative, prior, family, look, plan, deviations
+    status, role, aim, harm, aliases, replicates, compares, design, tags, outcome, population, covariates
+        The fields of the same name of `record/1`.
+    alternative, prior, family, screen, look, plan, deviations
         The fields of the same name of `record/1`.
     test, estimate : mapping, optional
         The fields of the same name of `record/1`, whole or in part. Intervals are taken from a result at
@@ -126,7 +136,7 @@ def declare(result: object = None, **fields: Unpack[Fields]) -> Declared:
     <record 'soil/worms', in results/soil/worms.record.json>
     """
     _refuse_unknown(fields)
-    versions = software(result)
+    versions = _DISPLAY.of_analysis(software(result), result)
     origin = provenance(inspect.stack(0)[1].filename, fields.get("inputs", ()), fields.get("made_at", False))
     document, derived = _document(result, fields)
     document["provenance"] = plain({**origin, "software": versions})
@@ -135,7 +145,7 @@ def declare(result: object = None, **fields: Unpack[Fields]) -> Declared:
     folder = fields.get("folder", "results")
     path = None if folder is None else record_path(folder, ordered["id"])
     standing = ordered if path is None else write(ordered, path)
-    display(standing)
+    _DISPLAY.show(standing, path)
     return Declared(standing, path)
 
 

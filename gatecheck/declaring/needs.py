@@ -21,13 +21,18 @@ def unmet_needs(document: Mapping[str, Any], derived: Derived) -> Iterator[Fault
     estimate = document.get("estimate", {})
     if derived.null_unknown and estimate and "null" not in estimate:
         yield Fault(("estimate", "null"), "is not kept by the result", "give estimate={'null': 0.5}, as tested")
-    if document.get("claim") is None:
+    if document.get("claim") is None or _is_whole_screen(document):
         return
     yield from _of_test(test, derived)
     yield from _of_sample(document.get("sample", {}))
     if "estimate" not in document and not _without_estimate(test):
         advice = "give estimate={'measure': 'mean difference', 'value': ..., 'unit': 'cm', 'interval': {...}}"
         yield _needed(("estimate",), advice)
+
+
+def _is_whole_screen(document: Mapping[str, Any]) -> bool:
+    """Whether a screen stands alone: what it needs is in its own fields, and the rule `screen` asks for it."""
+    return "screen" in document and not document.get("test")
 
 
 def _of_test(test: Mapping[str, Any], derived: Derived) -> Iterator[Fault]:

@@ -1,13 +1,23 @@
-"""Display of a record in a running notebook, as data for the gate and as a table for people."""
+"""Display of a record in a running notebook: as data for the gate, and for people with what it will say of it."""
 
 from __future__ import annotations
 
 import html
 import sys
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
+from importlib import import_module
+from pathlib import Path
 from typing import Any
 
 MEDIA_TYPE = "application/vnd.gatecheck.record+json"
+#: Tells what the gate will say of a record. It is known by name and loaded in a notebook alone: analysis code that
+#: declares a result loads no gate.
+_TELLER = "gatecheck.displaying"
+#: What computes in the gate, and may compute in the analysis.
+_ARRAYS = ("numpy", "scipy")
+
+#: HTML and text.
+Shown = tuple[str, str]
 
 
 def kernel() -> Any:
@@ -17,17 +27,51 @@ def kernel() -> Any:
     return shell if hasattr(shell, "kernel") else None
 
 
-def display(document: Mapping[str, Any]) -> None:
-    """Show a record as an output of the running notebook cell; elsewhere do nothing."""
-    shell = kernel()
-    if shell is not None:
-        shell.display_pub.publish(data=bundle(document))
+class Display:
+    """The display of the records of one session."""
+
+    def __init__(self) -> None:
+        self._loaded: set[str] = set()
+
+    def show(self, document: Mapping[str, Any], written: Path | None) -> None:
+        """Show a record, which was `written` to a file, as an output of the running cell; elsewhere do nothing."""
+        shell = kernel()
+        if shell is not None:
+            before = set(sys.modules)
+            shell.display_pub.publish(data=bundle(document, _verdict(document, written)))
+            self._loaded.update(name for name in _ARRAYS if name in sys.modules and name not in before)
+
+    def of_analysis(self, software: Mapping[str, str], result: object) -> dict[str, str]:
+        """Return `software` without what only the display has loaded, so that running a cell again changes nothing.
+
+        Where `result` itself is of a library, all is of the analysis.
+        """
+        plain = type(result).__module__ == "builtins" and "statsmodels" not in software
+        return {name: version for name, version in software.items() if not (plain and name in self._loaded)}
 
 
-def bundle(document: Mapping[str, Any]) -> dict[str, Any]:
-    """Return a record under its media type, with a table as HTML and as text beside it."""
+def bundle(document: Mapping[str, Any], verdict: Shown | None = None) -> dict[str, Any]:
+    """Return a record under its media type, with a table as HTML and as text beside it, and the verdict below."""
     rows = _rows(document)
-    return {MEDIA_TYPE: document, "text/html": _html(rows), "text/plain": _text(rows)}
+    html_below, text_below = ("", "") if verdict is None else (verdict[0], f"\n\n{verdict[1]}")
+    return {
+        MEDIA_TYPE: document,
+        "text/html": f"{_html(rows)}{html_below}",
+        "text/plain": f"{_text(rows)}{text_below}",
+    }
+
+
+def _verdict(document: Mapping[str, Any], written: Path | None) -> Shown:
+    """What the gate will say. The analysis goes on whatever becomes of it, and one sentence tells that."""
+    try:
+        shown: Callable[..., Shown] = import_module(_TELLER).shown
+        return shown(document, Path.cwd(), written)
+    except Exception as error:  # noqa: BLE001  # of whatever kind: a display never stops an analysis
+        sentence = (
+            f"What the gate will say could not be worked out here ({type(error).__name__}); "
+            f"`gatecheck explain {document['id']}` tells it."
+        )
+        return f"<p>{html.escape(sentence)}</p>", sentence
 
 
 def _rows(document: Mapping[str, Any]) -> list[tuple[str, str]]:

@@ -7,15 +7,28 @@ from typing import Literal
 from gatecheck.model.record import Boundary
 from gatecheck.model.struct import struct
 
-PlannedTest = Literal["two-sample-t", "one-sample-t", "two-proportions", "correlation"]
+PlannedTest = Literal[
+    "two-sample-t",
+    "one-sample-t",
+    "paired-t",
+    "one-proportion",
+    "two-proportions",
+    "correlation",
+    "one-way-F",
+    "chi-squared",
+    "log-rank",
+]
 
 
 @struct
 class DesignQuestion:
-    """What is planned: the test, the true effect on its standard scale (d, d, h, r), and what stands behind it.
+    """What is planned: the test, the true effect on its standard scale, and what stands behind it.
 
-    `family` is the number of tests behind the claim, `looks` the number of looks with their `boundary`,
-    `assurance` the probability that the claim stands which is wanted; `prior` overrides that of the policy.
+    The scale is d for t (of the differences where paired), h for proportions, r, f for one-way-F, w for chi-squared
+    and the hazard ratio for log-rank. `family` is the number of tests behind the claim, `looks` the number of looks
+    with their `boundary`, `assurance` the probability that the claim stands which is wanted; `prior` overrides that
+    of the policy. `groups` belongs to one-way-F, `df` to chi-squared, and `ratio`, of the second group over the
+    first, to tests of two groups.
     """
 
     test: PlannedTest
@@ -25,6 +38,45 @@ class DesignQuestion:
     family: int = 1
     looks: int = 1
     boundary: Boundary = "obrien-fleming"
+    sides: int = 2
+    groups: int | None = None
+    df: int | None = None
+    ratio: float | None = None
+
+
+@struct
+class Need:
+    """The likelihood ratio that the policy wants under one alternative, as its natural log."""
+
+    alternative: str
+    log_likelihood_ratio: float
+
+
+@struct
+class StudySize:
+    """The size of a study: units (pairs, events) in each or the first group, in the second where asked, in all."""
+
+    n: int
+    second: int | None
+    total: int
+
+
+@struct
+class Least:
+    """The least size that serves; there the least statistic that does, its p-value, and the assurance."""
+
+    size: StudySize
+    value: float
+    p: float
+    assurance: float
+
+
+@struct
+class Level:
+    """One row of the table: the assurance wanted, and what serves; `None`: no size up to a hundred million does."""
+
+    wanted: float
+    least: Least | None
 
 
 @struct
@@ -39,11 +91,11 @@ class CurvePoint:
 class BareDesign:
     """A design with 80 % power at 0.05 alone.
 
-    Its units (per group), the probability that its claim stands, the risk that a result which is just significant
-    leaves, and the share of false ones among all results below 0.05 over many such designs (tail areas).
+    Its size, the probability that its claim stands, the risk that a result which is just significant leaves, and
+    the share of false ones among all results below 0.05 over many such designs (tail areas).
     """
 
-    n: int
+    size: StudySize
     assurance: float
     risk: float
     long_run: float
@@ -51,13 +103,25 @@ class BareDesign:
 
 @struct
 class Design:
-    """The answer: `sizes` gives the least number of units (per group) for each assurance, `None` above 1e8."""
+    """The answer.
+
+    `alternative` is that against which the claim will be weighed; `needs` are all that the policy wants of its
+    evidence, and `log_p_limit` the natural log of the p-value that the family and the looks want (0: none).
+    `statistic` is the letter of the statistic in `levels`.
+    """
 
     question: DesignQuestion
     policy: str
     alternative: str
     prior: float
-    log_likelihood_ratio: float
-    sizes: tuple[tuple[float, int | None], ...]
+    needs: tuple[Need, ...]
+    log_p_limit: float
+    statistic: str
+    levels: tuple[Level, ...]
     curve: tuple[CurvePoint, ...]
     bare: BareDesign | None
+
+    @property
+    def wanted(self) -> Least | None:
+        """What serves for the assurance that was asked for."""
+        return next(level.least for level in self.levels if level.wanted == self.question.assurance)

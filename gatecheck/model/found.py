@@ -9,6 +9,9 @@ from gatecheck.model.record import Record
 from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Place, Problem
 
+#: The fields of a record whose content a permission to merge rests on.
+NUMBERS = ("test", "estimate", "sample", "alternative", "prior", "family", "look", "screen", "compares", "design")
+
 
 @struct
 class Found:
@@ -25,10 +28,27 @@ class Found:
     @property
     def digest(self) -> str:
         """The SHA-256 digest of the document's canonical JSON."""
-        import hashlib  # noqa: PLC0415  # costs start-up time, and most records need no digest
+        return _digest(self.document)
 
-        canonical = json.dumps(self.document, sort_keys=True, separators=(",", ":"), ensure_ascii=True)
-        return hashlib.sha256(canonical.encode()).hexdigest()
+    @property
+    def numbers(self) -> str:
+        """The digest of what a permission rests on: `sha256:` and 64 hexadecimal digits.
+
+        It covers the fields `NUMBERS` of the document as they are written there, the status, the aim, importance
+        and harm as they are read, and whether anything is claimed. Another wording of the claim, other tags or
+        another provenance leave it as it is; a number written in another way changes it.
+        """
+        rests_on = {name: self.document.get(name) for name in NUMBERS}
+        record = self.record
+        kind = [record.status, record.aim, record.importance, record.harm, record.claim is not None]
+        return f"sha256:{_digest([rests_on, kind])}"
+
+
+def _digest(document: Any) -> str:
+    import hashlib  # noqa: PLC0415  # costs start-up time, and most records need no digest
+
+    canonical = json.dumps(document, sort_keys=True, separators=(",", ":"), ensure_ascii=True)
+    return hashlib.sha256(canonical.encode()).hexdigest()
 
 
 @struct

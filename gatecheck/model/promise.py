@@ -17,9 +17,11 @@ class Promise:
     """What stands behind one record that names a plan.
 
     `plan` and `hypothesis` are as they were frozen, when data or results first appeared; `None` where there is
-    none, and `missing` says why. `grade` is `None` where it is not known, as where the history is cut; `because`
-    says what it rests on or why it is not known, and `advice` what would tell it. `frozen_at` is the commit of the
-    frozen version, `changed_later` whether the plan has changed since.
+    none, and `missing` says why, or where it is not known which version that is or what it says, and `missing` is
+    empty. `grade` is `None` where it is not known, as where the history is cut; it is then `at_least` what is
+    known. `because` says what it rests on or why it is not known, and `advice` what would tell or raise it.
+    `frozen_at` is the commit of the frozen version, `changed_later` whether the plan has changed since.
+    `digest` is that of what the frozen version says.
     """
 
     file: str
@@ -32,3 +34,15 @@ class Promise:
     frozen_at: str | None = None
     changed_later: bool = False
     missing: str = ""
+    at_least: Grade = "none"
+    digest: str = ""
+
+
+@struct
+class PlanInTree:
+    """A plan with the place of its document (path from the judged folder, 1-based line) and its digest."""
+
+    path: str
+    line: int
+    plan: Plan
+    digest: str = ""

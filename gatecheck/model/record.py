@@ -30,6 +30,7 @@ Procedure = Literal[
 Boundary = Literal["pocock", "obrien-fleming", "haybittle-peto", "spending-obrien-fleming", "spending-pocock"]
 Known = Literal["before-data", "before-results", "after-results"]
 Called = Literal["findings", "candidates"]
+StudyDesign = Literal["randomised", "quasi-experimental", "observational"]
 
 Text = Annotated[str, Pattern(r"\S", "some text")]
 Identifier = Annotated[
@@ -281,6 +282,15 @@ class Record:
     importance: Annotated[bool, "true where the claim says that the effect is large enough to matter"] = False
     harm: Annotated[bool, "true for a safety outcome: no strong evidence is demanded to report it"] = False
     aliases: Annotated[tuple[Identifier, ...], "earlier ids"] = ()
+    replicates: Annotated[
+        Identifier | None, "id of the record whose hypothesis this one tests again, on data of its own"
+    ] = None
+    compares: Annotated[
+        tuple[Identifier, ...] | None,
+        Length(2),
+        "ids of the two records whose effects are claimed to differ, each on units of its own",
+    ] = None
+    design: Annotated[StudyDesign | None, "how the groups compared came about; absent: not told"] = None
     tags: Annotated[tuple[Text, ...], "free words that policy overrides can match"] = ()
     test: Annotated[Test | None, "the test"] = None
     estimate: Annotated[Estimate | None, "the estimate"] = None

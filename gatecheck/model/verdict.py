@@ -6,12 +6,14 @@ from dataclasses import dataclass, field
 from typing import Literal
 
 from gatecheck.model.exit import Exit
+from gatecheck.model.interval_shown import IntervalShown
 from gatecheck.model.struct import struct
 
 Outcome = Literal["met", "short", "waived", "does-not-apply", "undecided"]
 Enforce = Literal["block", "note", "off"]
 Standing = Literal["stands", "falls-short", "waived", "undecided"]
 Answer = Literal["stands", "falls-short", "cannot-judge"]
+ChangeKind = Literal["strengthened", "new", "changed", "withdrawn"]
 
 
 @dataclass(frozen=True, slots=True, order=True)
@@ -106,6 +108,7 @@ class Judged:
     alternatives: tuple[Figures, ...] = ()
     sensitivity: Sensitivity | None = None
     numbers: str = ""
+    interval: IntervalShown | None = None
 
     @property
     def standing(self) -> Standing:
@@ -129,13 +132,35 @@ class PolicyUsed:
 
 
 @dataclass(frozen=True, slots=True)
+class Change:
+    """One claim that is not as it is at the base: `told` says in one sentence what changed.
+
+    `at` is its place in the judged tree, and at the base where it is gone.
+    """
+
+    id: str
+    kind: ChangeKind
+    at: Place
+    told: str
+
+
+@dataclass(frozen=True, slots=True)
 class Verdict:
-    """The answer of the gate."""
+    """The answer of the gate of that `version`.
+
+    `base` and `head` are commits, `changes` are those of claims since the base, and `plans` names the plans that
+    were read with their digests.
+    """
 
     policy: PolicyUsed | None
     judged: tuple[Judged, ...] = ()
     problems: tuple[Problem, ...] = ()
     notes: tuple[str, ...] = field(default=())
+    changes: tuple[Change, ...] = ()
+    base: str | None = None
+    head: str | None = None
+    plans: tuple[tuple[str, str], ...] = ()
+    version: str = ""
 
     @property
     def claims(self) -> tuple[Judged, ...]:

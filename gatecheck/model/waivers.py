@@ -19,10 +19,12 @@ class Waiver:
     record: Annotated[Identifier, "id of the record"]
     rule: Annotated[Text, "name of the rule"]
     reason: Annotated[Text, "why the claim may be merged all the same"]
-    granted_by: Annotated[Text, "who grants it: not the author of the result"]
     granted_on: Annotated[Date, "first day"]
     until: Annotated[Date, "last day"]
-    digest: Annotated[Digest, "digest of the record's numbers"]
+    digest: Annotated[Digest, "digest of the record's numbers, as `gatecheck explain` prints it"]
+    granted_by: Annotated[
+        str | None, "who grants it, by name or e-mail: not the author of the result; without it, it does not apply"
+    ] = None
 
 
 @struct

@@ -22,7 +22,9 @@ _LONGEST_TITLE = 256
 
 
 @dataclass(frozen=True, slots=True)
-class _Annotation:
+class Annotation:
+    """One finding or problem, as it is shown beside a line; `at` is None where it concerns no one line."""
+
     level: Level
     at: Place | None
     title: str
@@ -36,21 +38,26 @@ def commands(verdict: Verdict) -> str:
     noted, notices what is waived. Records that do not count now stay silent. Where a level has more, its last
     line says how many.
     """
+    return "".join(f"{_command(one)}\n" for one in beside_lines(verdict))
+
+
+def beside_lines(verdict: Verdict) -> list[Annotation]:
+    """Return what the commands show: the worst first, and at most `MOST_OF_A_LEVEL` of each level."""
     everything = [*_errors(verdict), *_of_findings(verdict, "warning"), *_of_findings(verdict, "notice")]
-    lines = []
+    shown = []
     for level in LEVELS:
-        lines += [_command(one) for one in _capped(level, [one for one in everything if one.level == level])]
-    return "".join(f"{line}\n" for line in lines)
+        shown += _capped(level, [one for one in everything if one.level == level])
+    return shown
 
 
-def _errors(verdict: Verdict) -> Iterator[_Annotation]:
+def _errors(verdict: Verdict) -> Iterator[Annotation]:
     yield from map(_of_problem, order.problems_by_place(verdict.problems))
     held = [(finding, one) for one in order.blocked(verdict) for finding in order.blocking_findings(one)]
     for finding, one in sorted(held, key=lambda pair: order.outcome_rank(pair[0])):
         yield _of_finding("error", one, finding)
 
 
-def _of_findings(verdict: Verdict, level: Literal["warning", "notice"]) -> Iterator[_Annotation]:
+def _of_findings(verdict: Verdict, level: Literal["warning", "notice"]) -> Iterator[Annotation]:
     for one in order.by_place(verdict.judged):
         noted = [finding for finding in order.noted_findings(one) if finding.outcome == "short"]
         chosen = noted if level == "warning" else order.waived_findings(one)
@@ -58,24 +65,24 @@ def _of_findings(verdict: Verdict, level: Literal["warning", "notice"]) -> Itera
             yield from (_of_finding(level, one, finding) for finding in chosen)
 
 
-def _of_problem(problem: Problem) -> _Annotation:
-    return _Annotation("error", problem.at, "Could not be read or judged", words.problem(problem))
+def _of_problem(problem: Problem) -> Annotation:
+    return Annotation("error", problem.at, "Could not be read or judged", words.problem(problem))
 
 
-def _of_finding(level: Level, one: Judged, finding: Finding) -> _Annotation:
+def _of_finding(level: Level, one: Judged, finding: Finding) -> Annotation:
     message = words.with_remedy(words.message(finding), finding.remedy)
-    return _Annotation(level, one.at, f"{one.id}: {words.rule_words(finding.rule)}", message)
+    return Annotation(level, one.at, f"{one.id}: {words.rule_words(finding.rule)}", message)
 
 
-def _capped(level: Level, found: list[_Annotation]) -> list[_Annotation]:
+def _capped(level: Level, found: list[Annotation]) -> list[Annotation]:
     if len(found) <= MOST_OF_A_LEVEL:
         return found
     more = len(found) - MOST_OF_A_LEVEL + 1
     rest = f"{more} more of this level are not shown here; all stand in the summary."
-    return [*found[: MOST_OF_A_LEVEL - 1], _Annotation(level, None, f"{more} more in the summary", rest)]
+    return [*found[: MOST_OF_A_LEVEL - 1], Annotation(level, None, f"{more} more in the summary", rest)]
 
 
-def _command(one: _Annotation) -> str:
+def _command(one: Annotation) -> str:
     title = f"title={fitted(plain(one.title), _LONGEST_TITLE, command_property)}"
     head = f"::{one.level} {_position(one.at)}{title}::"
     message = cut(plain(one.message), LONGEST_MESSAGE)

@@ -7,7 +7,7 @@ import math
 from typing import Any
 
 from gatecheck.model.verdict import Figures, Finding, Judged, Place, Verdict
-from gatecheck.render.order import by_place, by_rule, place_key, problems_by_place
+from gatecheck.render.order import by_place, by_rule, changes, place_key, problems_by_place
 
 KIND = "verdict/1"
 
@@ -28,6 +28,13 @@ def document(verdict: Verdict) -> str:
             for problem in problems_by_place(verdict.problems)
         ],
         "notes": list(verdict.notes),
+        "changes": [
+            {"id": one.id, "change": one.kind, "at": _place(one.at), "told": one.told} for one in changes(verdict)
+        ],
+        "plans": [{"path": path, "digest": digest} for path, digest in sorted(verdict.plans)],
+        "base": verdict.base,
+        "head": verdict.head,
+        "tool": {"name": "gatecheck", "version": verdict.version},
     }
     return json.dumps(whole, indent=2, ensure_ascii=True, allow_nan=False) + "\n"
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import textwrap
+from collections.abc import Iterable
 
 from gatecheck.model.verdict import Problem
 from gatecheck.render import words
@@ -12,7 +13,13 @@ NARROWEST = 40
 _INDENT = "  "
 _LABEL_WIDTH = 9
 BLANK_LINE = "\n\n"
+#: Between records that hold blank lines themselves, so that it is seen where one ends.
+TWO_BLANK_LINES = "\n\n\n"
+#: SOURCE: ECMA-48, select graphic rendition, parameters 1 and 22 (from memory).
+_BOLD, _NOT_BOLD = "\x1b[1m", "\x1b[22m"
 _HARD_SPACE = "\u00a0"
+#: Not broken across lines: a number stays with its unit, a name with its value, a formula in one piece.
+_WHOLE = (" %", " = ", "-e p ln p")
 
 
 def paragraph(text: str, width: int, first: str = "", later: str | None = None) -> str:
@@ -21,9 +28,11 @@ def paragraph(text: str, width: int, first: str = "", later: str | None = None) 
     Words are never broken, so a longer one makes a longer line. Cleaning comes before wrapping, and wrapping only
     takes apart: it cannot put a command together.
     """
+    cleaned = plain(text)
+    for whole in _WHOLE:
+        cleaned = cleaned.replace(whole, whole.replace(" ", _HARD_SPACE))
     lines = textwrap.wrap(
-        # A number stays with its unit.
-        plain(text).replace(" %", f"{_HARD_SPACE}%"),
+        cleaned,
         width=max(width, NARROWEST),
         initial_indent=first,
         subsequent_indent=first if later is None else later,
@@ -36,6 +45,27 @@ def paragraph(text: str, width: int, first: str = "", later: str | None = None) 
 def item(text: str, width: int) -> str:
     """Return one entry of a list of short entries."""
     return paragraph(text, width, _INDENT, _INDENT * 2)
+
+
+def entry(name: str, texts: Iterable[str], width: int, *, bold: bool) -> str:
+    """Return a name with the paragraphs that are told of it below."""
+    below = (paragraph(text, width, _INDENT * 2, _INDENT * 3) for text in texts)
+    return "\n".join([strong(item(name, width), bold=bold), *below])
+
+
+def strong(lines: str, *, bold: bool) -> str:
+    """Return finished lines in bold type where a terminal shows it, and else as they are.
+
+    It comes after cleaning and wrapping, so it changes neither, and no text can bring such a mark along.
+    """
+    if not bold:
+        return lines
+    return "\n".join(_in_bold(line) for line in lines.split("\n"))
+
+
+def _in_bold(line: str) -> str:
+    words = line.lstrip(" ")
+    return f"{line[: len(line) - len(words)]}{_BOLD}{words}{_NOT_BOLD}"
 
 
 def labelled(label: str, text: str, width: int) -> str:

@@ -6,7 +6,7 @@ from gatecheck.model.found import Found, Scan
 from gatecheck.model.verdict import Figures, Finding, Judged, Verdict
 from gatecheck.render import order, words
 from gatecheck.render.curve import risk_against_prior
-from gatecheck.render.layout import BLANK_LINE, finding, item, labelled, page, paragraph, problem, section
+from gatecheck.render.layout import BLANK_LINE, finding, item, labelled, page, paragraph, problem, section, strong
 
 _STANDINGS = {
     "stands": "stands",
@@ -16,8 +16,11 @@ _STANDINGS = {
 }
 
 
-def survey(scan: Scan, width: int) -> str:
-    """Return counts, the records by place, and what could not be read with what to do about it."""
+def survey(scan: Scan, width: int, *, bold: bool = False) -> str:
+    """Return counts, the records by place, and what could not be read with what to do about it.
+
+    With `bold` the counts and the ids of records are in bold type.
+    """
     claiming = sum(found.record.claim is not None for found in scan.found)
     problems = order.problems_by_place(scan.problems)
     head = [
@@ -28,19 +31,19 @@ def survey(scan: Scan, width: int) -> str:
     found = sorted(scan.found, key=lambda one: (order.place_key(one.at), one.record.id))
     return page(
         [
-            paragraph(f"{'; '.join(head)}.", width),
-            section("Records", [_found(one, width) for one in found], BLANK_LINE),
+            strong(paragraph(f"{'; '.join(head)}.", width), bold=bold),
+            section("Records", [_found(one, width, bold) for one in found], BLANK_LINE),
             section("Could not be read", [problem(one, width) for one in problems], BLANK_LINE),
         ],
     )
 
 
-def _found(found: Found, width: int) -> str:
+def _found(found: Found, width: int, bold: bool) -> str:
     record = found.record
     also = "".join(f"; also in {words.where(place)}" for place in sorted(found.also_at, key=order.place_key))
     return "\n".join(
         [
-            item(record.id, width),
+            strong(item(record.id, width), bold=bold),
             labelled("Status", f"{record.status}, {record.role} outcome", width),
             labelled("Claim", record.claim or "nothing claimed", width),
             labelled("Place", words.where(found.at) + also, width),
@@ -48,18 +51,21 @@ def _found(found: Found, width: int) -> str:
     )
 
 
-def explain(verdict: Verdict, record_id: str, width: int) -> str:
-    """Return everything found of the records with that id, or a sentence where there is none."""
+def explain(verdict: Verdict, record_id: str, width: int, *, bold: bool = False) -> str:
+    """Return everything found of the records with that id, or a sentence where there is none.
+
+    With `bold` the verdict on each is in bold type.
+    """
     chosen = [one for one in order.by_place(verdict.judged) if one.id == record_id]
     if not chosen:
         missing = f"No record has the id {record_id}. The survey of this tree lists the ids that there are."
         return page([paragraph(missing, width)])
-    parts = [part for one in chosen for part in _explained(one, width)]
+    parts = [part for one in chosen for part in _explained(one, width, bold)]
     closing = [paragraph(words.CAUTION, width), paragraph(words.policy_used(verdict.policy), width)]
     return page([*parts, *closing])
 
 
-def _explained(one: Judged, width: int) -> list[str]:
+def _explained(one: Judged, width: int, bold: bool) -> list[str]:
     unchanged = "" if one.counts_now else " It is unchanged, and does not count now."
     identity = [
         labelled("Claim", one.claim or "nothing claimed", width),
@@ -70,12 +76,13 @@ def _explained(one: Judged, width: int) -> list[str]:
     other = [_figures(one, figures, width) for figures in one.alternatives]
     findings = sorted(order.by_rule(one.findings), key=order.outcome_rank)
     return [
-        paragraph(f"{one.id} {_STANDINGS[one.standing]}.{unchanged}", width),
+        strong(paragraph(f"{one.id} {_STANDINGS[one.standing]}.{unchanged}", width), bold=bold),
         "\n".join(line for line in identity if line),
         section("Evidence", evidence or [item("None was computed for this record.", width)]),
         section("The same result under other assumptions", other, BLANK_LINE),
         section("Risk against prior", [] if one.sensitivity is None else risk_against_prior(one.sensitivity)),
         section("Rules", [_finding(finding, width) for finding in findings], BLANK_LINE),
+        section("Digest of the numbers, for a waiver", [item(one.numbers, width)] if one.numbers else []),
     ]
 
 
@@ -84,12 +91,16 @@ def _figures(one: Judged, figures: Figures, width: int) -> str:
     needed = words.probability(figures.prior_needed, words.limit_of(one, words.PRIOR_RULE))
     assumed = words.assumptions(figures)
     lines = [
-        item(f"{assumed[:1].upper()}{assumed[1:]}:", width),
+        item(f"{_capital(assumed)}:", width),
         labelled("Ratio", f"likelihood ratio {words.likelihood_ratio(figures.log_likelihood_ratio)}", width),
         labelled("Risk", f"false positive risk {risk}; prior needed {needed}", width),
-        labelled("Note", figures.note, width) if figures.note else "",
+        labelled("Note", _capital(figures.note), width) if figures.note else "",
     ]
     return "\n".join(line for line in lines if line)
+
+
+def _capital(text: str) -> str:
+    return f"{text[:1].upper()}{text[1:]}"
 
 
 def _finding(one: Finding, width: int) -> str:

@@ -4,9 +4,10 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 
-from gatecheck.model.verdict import Finding, Judged, Place, Problem, Verdict
+from gatecheck.model.verdict import Change, Finding, Judged, Place, Problem, Verdict
 
 _OUTCOMES = ("short", "undecided", "waived", "met", "does-not-apply")
+_CHANGES = ("strengthened", "new", "changed", "withdrawn")
 _WITHOUT = -1
 
 PlaceKey = tuple[str, int, int, int]
@@ -27,6 +28,11 @@ def by_place(judged: Iterable[Judged]) -> list[Judged]:
 def problems_by_place(problems: Iterable[Problem]) -> list[Problem]:
     """Return the problems by place, then text."""
     return sorted(problems, key=lambda one: (place_key(one.at), one.message, one.advice))
+
+
+def changes(verdict: Verdict) -> list[Change]:
+    """Return what changed in claims since the base: what claims more first, then by id."""
+    return sorted(verdict.changes, key=lambda one: (_CHANGES.index(one.kind), one.id, place_key(one.at), one.told))
 
 
 def by_rule(findings: Iterable[Finding]) -> list[Finding]:

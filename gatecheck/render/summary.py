@@ -9,6 +9,7 @@ from functools import partial
 from gatecheck.model.shown import percent
 from gatecheck.model.verdict import Figures, Finding, Judged, Problem, Verdict
 from gatecheck.render import order, words
+from gatecheck.render.entries import left_out
 from gatecheck.render.text import cut, markdown, plain
 
 #: A page above 1 MiB is dropped whole by the build services; this leaves a margin.
@@ -87,6 +88,10 @@ def _sections(verdict: Verdict) -> list[_Section]:
             [partial(_problem, one) for one in order.problems_by_place(verdict.problems)],
         ),
         _Section((_HOW_TO_READ if explained else "") + _BLOCKED_HEAD, [partial(_held, one) for one in held]),
+        _Section(
+            "### Changed since the base\n\n",
+            [partial(_line, words.change(one)) for one in order.changes(verdict)],
+        ),
         _Section("### Notes\n\n", [partial(_line, note) for note in verdict.notes]),
         _folded("Waived", ((one, order.waived_findings(one)) for one in order.with_waiver(verdict))),
         _folded(
@@ -193,16 +198,16 @@ def _figures(one: Judged, figures: Figures) -> tuple[str, str]:
 
 def _closing(verdict: Verdict) -> str:
     policy = markdown(cut(plain(words.policy_used(verdict.policy)), _LONGEST_NAME))
+    commits = words.judged_commits(verdict)
+    judged = f"- {markdown(commits)}\n" if commits else ""
     return (
         "<details>\n<summary>What was not checked, what standing means, and the policy</summary>\n\n"
-        f"- {words.NOT_CHECKED}\n- {words.CAUTION}\n- {policy}\n\n</details>\n"
+        f"- {words.NOT_CHECKED}\n- {words.CAUTION}\n- {policy}\n{judged}\n</details>\n"
     )
 
 
 def _left_out(entries: int) -> str:
-    if not entries:
-        return ""
-    return f"\nLeft out for length: {words.count(entries, 'entry', 'entries')}. The JSON verdict holds them all.\n"
+    return f"\n{left_out(entries, 'entry', 'entries')}\n" if entries else ""
 
 
 def _md(text: str) -> str:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 import re
 import unicodedata
 from bisect import bisect_right
@@ -33,8 +34,19 @@ _MARKUP = str.maketrans(
         **{mark: f"\\{mark}" for mark in "\\`*_[]!~#$"},
     },
 )
+_ELEMENTS = str.maketrans({"&": "&amp;", "<": "&lt;", ">": "&gt;", '"': "&quot;", "'": "&#39;"})
+_IN_SCRIPT = str.maketrans({mark: f"\\u{ord(mark):04x}" for mark in "<>&\u2028\u2029"})
 _DATA = str.maketrans({"%": "%25", "\r": "%0D", "\n": "%0A"})
 _PROPERTY = str.maketrans({"%": "%25", "\r": "%0D", "\n": "%0A", ":": "%3A", ",": "%2C"})
+# An agent knows these escapes and no others, so that a percent sign needs one only where it seems to begin one.
+_AGENT_ESCAPE = re.compile(r"%(?=3B|0D|0A|5D|AZP25)", re.IGNORECASE)
+_LOGGED_PROPERTY = str.maketrans({";": "%3B", "]": "%5D"})
+#: Readers of version 13 know no escapes, so that only a mark keeps a text from becoming a directive for all.
+_POINT_TEXT = str.maketrans({mark: f"{{U+{ord(mark):04X}}}" for mark in "#\\"})
+#: SOURCE: RFC 3986, section 2.3 (from memory).
+_UNRESERVED = frozenset(b"ABCDEFGHIJKLMNOPQRSTUVWXYZabcdefghijklmnopqrstuvwxyz0123456789-._~")
+_IN_URI = _UNRESERVED | frozenset(b"/")
+_PLACEHOLDERS = str.maketrans({"{": "{{", "}": "}}"})
 
 _CUT = "..."
 
@@ -57,6 +69,16 @@ def markdown(text: str) -> str:
     return _BLOCK_OPENING.sub(r"\1\\", escaped)
 
 
+def html(text: str) -> str:
+    """Return `text`, cleaned as by `plain`, as it stands literally in an element or a quoted attribute of HTML."""
+    return plain(text).translate(_ELEMENTS)
+
+
+def script_data(document: str) -> str:
+    """Return a JSON document so that it stands within a script element of HTML and reads back to the same."""
+    return document.translate(_IN_SCRIPT)
+
+
 def command_data(text: str) -> str:
     """Return `text` escaped as the message of a workflow command."""
     return text.translate(_DATA)
@@ -65,6 +87,56 @@ def command_data(text: str) -> str:
 def command_property(text: str) -> str:
     """Return `text` escaped as a property value of a workflow command."""
     return text.translate(_PROPERTY)
+
+
+def xml(text: str) -> str:
+    """Return `text`, cleaned as by `plain`, as content or a quoted attribute of XML 1.0.
+
+    What XML 1.0 cannot hold, escaped or not, are control characters, surrogates and two noncharacters: of these
+    `plain` leaves none.
+    """
+    return plain(text).translate(_ELEMENTS)
+
+
+def json_text(text: str) -> str:
+    """Return `text`, cleaned as by `plain`, as a quoted text of one line, which JSON and YAML read alike."""
+    # YAML knows no pairs of surrogates, by which JSON could escape what is not ASCII.
+    return json.dumps(plain(text), ensure_ascii=False)
+
+
+def point_text(text: str) -> str:
+    """Return `text`, cleaned as by `plain`, as the description or a remark of a test point (TAP)."""
+    return plain(text).translate(_POINT_TEXT)
+
+
+def log_message(text: str) -> str:
+    """Return `text`, cleaned as by `plain`, as the message of a logging command of Azure Pipelines."""
+    return _AGENT_ESCAPE.sub("% ", plain(text))
+
+
+def log_property(text: str) -> str:
+    """Return `text`, cleaned as by `plain`, as a property value of a logging command of Azure Pipelines."""
+    return log_message(text).translate(_LOGGED_PROPERTY)
+
+
+def sarif_message(text: str) -> str:
+    """Return `text`, cleaned as by `plain`, as a message of SARIF without a placeholder and without a link.
+
+    Braces are doubled, as the standard wants (from memory); no two brackets meet that would make a link.
+    """
+    return plain(text).translate(_PLACEHOLDERS).replace("](", "] (")
+
+
+def uri(path: str) -> str:
+    """Return `path` as a relative URI; `path` may hold bytes that are no UTF-8, as the file system gives them."""
+    try:
+        raw = path.encode("utf-8", "surrogateescape")
+    except UnicodeEncodeError:
+        raw = path.encode("utf-8", "surrogatepass")
+    # A slash at the start would make it absolute.
+    return "".join(
+        chr(byte) if byte in (_IN_URI if at else _UNRESERVED) else f"%{byte:02X}" for at, byte in enumerate(raw)
+    )
 
 
 def cut(text: str, most: int) -> str:

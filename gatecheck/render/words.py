@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 from gatecheck.model.shown import decimal, percent
-from gatecheck.model.verdict import Figures, Finding, Judged, Place, PolicyUsed, Problem, Verdict
+from gatecheck.model.verdict import Change, Figures, Finding, Judged, Place, PolicyUsed, Problem, Verdict
 from gatecheck.render.order import blocked, blocking_findings, place_key
 
 RISK_RULE = "false-positive-risk"
@@ -44,6 +44,13 @@ _ORIGINS = {
     "tree": "from the judged tree",
     "built-in": "built in, as the tree has no policy of its own",
 }
+_CHANGES = {
+    "strengthened": "claims more than at the base",
+    "new": "a new claim",
+    "changed": "changed",
+    "withdrawn": "withdrawn",
+}
+_SHORT_COMMIT = 12
 _SHORT_DIGEST = len("sha256:") + 12
 
 _EVEN = math.log(1.05)
@@ -235,6 +242,20 @@ def assumptions(figures: Figures) -> str:
     """Return on what the figures rest."""
     origin = f", set by the {figures.prior_from}" if figures.prior_from else ""
     return f"{alternative_words(figures.alternative)}, prior {prior(figures)}{origin}"
+
+
+def change(one: Change) -> str:
+    """Return what changed in one claim since the base."""
+    return f"{one.id}, {_CHANGES[one.kind]}: {sentence(one.told)}"
+
+
+def judged_commits(verdict: Verdict) -> str:
+    """Return which state was judged, and against which base; empty outside of a git history."""
+    if verdict.head is None and verdict.base is None:
+        return ""
+    head = f"the commit {verdict.head[:_SHORT_COMMIT]}" if verdict.head else "a tree with changes not committed"
+    base = f", into the base {verdict.base[:_SHORT_COMMIT]}" if verdict.base else ""
+    return f"Judged: {head}{base}."
 
 
 def policy_used(policy: PolicyUsed | None) -> str:

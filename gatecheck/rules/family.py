@@ -3,6 +3,11 @@
 All members are in the tree, as many as declared; they declare one size and one procedure; the member's p, adjusted
 anew from the raw p of all of them, is at most `alpha`; and an adjusted p that is reported agrees with that. The
 likelihood ratio plays no part here: it comes from the raw result. Safety outcomes are exempt.
+
+By `weighted-holm` (Holm 1979, section 4) and `graphical` (Bretz and others 2009, from memory) each member has a
+share of alpha of its own, `family.weight`; in a graph a member that is rejected passes parts of it on by
+`family.passes_on`. Of a large family it is also told how many members seem to have no effect, which changes no
+decision.
 """
 
 from __future__ import annotations
@@ -14,17 +19,34 @@ from typing import Annotated
 import numpy as np
 
 from gatecheck.columns import Booleans
-from gatecheck.compare.families import FamilyFacts, family_facts
+from gatecheck.compare.families import BY_SHARES, LARGEST_GRAPH, FamilyFacts, Kind, ShareFlaw, family_facts
 from gatecheck.model.record import Family, OpenProbability
-from gatecheck.model.shown import decimal
+from gatecheck.model.shown import decimal, percent
 from gatecheck.model.struct import struct
 from gatecheck.policy import RuleSettings
 from gatecheck.rules.rule import Exemption, Judgement, Rule, Said, Table, setting
 from gatecheck.rules.words import describe_result, tell_number
 
 _SAME = 1e-6
+_MOST_NAMED = 3
 _NO_FAMILY = Family("none")
 _TAKE_ANEW = "Report every member, with one size and one procedure, and the adjusted p of the same run."
+_GIVE_P = "Give every member its statistic or raw p, and family.position where the sequence is fixed."
+_GIVE_SHARES = "Give every member family.weight, its share of alpha as planned; the shares sum to 1."
+_GIVE_PARTS = "Name other members of the family in family.passes_on, by id, with parts that sum to at most 1."
+#: What is wrong with the shares of a family, and what to do.
+_FLAWS: dict[Kind, tuple[str, str]] = {
+    "too-large": (
+        f"a graph of more than {LARGEST_GRAPH} members is not computed",
+        "Divide the family as it was planned, or take another procedure.",
+    ),
+    "no-share": ("{member} has no family.weight", _GIVE_SHARES),
+    "empty-share": ("{member} has no share of alpha above 0, which {procedure} wants", _GIVE_SHARES),
+    "sum": ("the shares of its members sum to {total:.4g} and not to 1", _GIVE_SHARES),
+    "no-member": ("{member} passes its share on to {other}, which is no member in this tree", _GIVE_PARTS),
+    "itself": ("{member} passes its share on to itself", _GIVE_PARTS),
+    "passes-too-much": ("{member} passes on parts that sum to {total:.4g}, which is more than all", _GIVE_PARTS),
+}
 
 
 @struct
@@ -47,21 +69,38 @@ def judge(table: Table, settings: Sequence[Settings | None]) -> Judgement:
     families = [one.record.family for one in table.columns.found]
     alpha = setting(settings, "alpha")
     adjusted = np.array([np.nan if each is None else each.adjusted for each in facts], np.float64)
-    broken = [each is not None and bool(_broken(each)) for each in facts]
+    broken = [bool(_broken(each, table, family)) for each, family in zip(facts, families, strict=True)]
     differs = [each is not None and _differs(each, family) for each, family in zip(facts, families, strict=True)]
     short = np.array(broken) | np.array(differs) | (adjusted > alpha)
     return Judgement(short, adjusted, alpha, known=np.array(broken) | np.isfinite(adjusted), facts=facts)
 
 
-def _broken(facts: FamilyFacts) -> list[str]:
+def _broken(facts: FamilyFacts | None, table: Table, family: Family | None) -> list[str]:
     """What is wrong with the family itself."""
-    told = []
+    if facts is None or family is None:
+        return []
+    told = _lost(table, family, facts)
     if len(facts.sizes) > 1:
         told.append(f"its members declare the sizes {' and '.join(map(str, facts.sizes))}")
     if len(facts.procedures) > 1:
         told.append(f"its members declare the procedures {' and '.join(facts.procedures)}")
     if len(facts.sizes) == 1 and facts.members != facts.sizes[0]:
         told.append(f"{facts.members} of {facts.sizes[0]} members are in this tree")
+    return told
+
+
+def _lost(table: Table, family: Family, facts: FamilyFacts) -> list[str]:
+    """What the family had at the base and has no more: results that did not fit must not vanish from it."""
+    before = table.families_before.get(family.name)
+    if before is None:
+        return []
+    told = []
+    if before.lost:
+        more = f" and {len(before.lost) - _MOST_NAMED} more" if len(before.lost) > _MOST_NAMED else ""
+        lost = f"{', '.join(before.lost[:_MOST_NAMED])}{more}"
+        told.append(f"since the base it has lost {lost} (gone, or renamed without aliases)")
+    if before.size is not None and facts.sizes and max(facts.sizes) < before.size:
+        told.append(f"it had {before.size} members at the base and declares {max(facts.sizes)}")
     return told
 
 
@@ -80,22 +119,50 @@ def explain(table: Table, row: int, settings: Settings, judgement: Judgement) ->
     family = table.record(row).family or _NO_FAMILY
     result = describe_result(table.record(row))
     if judgement.known is not None and not judgement.known[row]:
-        return Said(
-            f"The place of {result} in the family {family.name} cannot be told: a raw p of a member, or its place "
-            "in a fixed sequence, is missing.",
-            "Give every member its statistic or raw p, and family.position where the sequence is fixed.",
-        )
-    if broken := _broken(facts):
+        why, advice = _why_unknown(facts.flaw, family)
+        return Said(f"The place of {result} in the family {family.name} cannot be told: {why}.", advice)
+    if broken := _broken(facts, table, family):
         return Said(f"The family {family.name} is not whole: {'; '.join(broken)}.", _TAKE_ANEW)
     adjusted = decimal(facts.adjusted, settings.alpha)
-    whole = f"{family.procedure}, {facts.members} members"
+    whole = f"{family.procedure}, {facts.members} members{_tell_share(family)}"
     place = f"{result} has an adjusted p of {adjusted} in the family {family.name} ({whole})"
     if _differs(facts, family):
         return Said(f"{place}, and {tell_number(family.adjusted_p)} is reported.", _TAKE_ANEW)
+    nulls = _tell_true_nulls(facts, settings.alpha)
     return Said(
-        f"{place}; the policy allows {decimal(settings.alpha, settings.alpha)}.",
+        f"{place}; the policy allows {decimal(settings.alpha, settings.alpha)}.{nulls}",
         "Claim the members that the procedure rejects, or confirm this one in a study of its own.",
     )
+
+
+def _why_unknown(flaw: ShareFlaw | None, family: Family) -> tuple[str, str]:
+    """Why the adjusted p cannot be told, and what to do."""
+    if flaw is None:
+        return "a raw p of a member, or its place in a fixed sequence, is missing", _GIVE_P
+    why, advice = _FLAWS[flaw.kind]
+    told = why.format(member=flaw.member, other=flaw.other, total=flaw.total, procedure=family.procedure)
+    return told, advice
+
+
+def _tell_share(family: Family) -> str:
+    """The member's share of alpha, where the procedure has such shares."""
+    if family.procedure not in BY_SHARES or family.weight is None:
+        return ""
+    at_the_start = " at the start" if family.procedure == "graphical" else ""
+    return f", share of alpha {family.weight:.4g}{at_the_start}"
+
+
+def _tell_true_nulls(facts: FamilyFacts, alpha: float) -> str:
+    """A sentence on a large family: how many members seem to have no effect, and how many rejections are false."""
+    nulls = facts.true_nulls
+    if nulls is None:
+        return ""
+    share = f"The share of true nulls in it is estimated at {percent(nulls.share)}"
+    rejected = nulls.rejected(alpha)
+    if not rejected:
+        return f" {share}, and none of its members is rejected."
+    false = decimal(nulls.false_ones(alpha))
+    return f" {share}, so about {false} of the {rejected} members rejected are expected to be false."
 
 
 RULE = Rule(

@@ -2,8 +2,9 @@
 
 Each look at 0.05 without a boundary adds to the type I error: five of them make it 0.142 (Armitage, McPherson and
 Rowe, Journal of the Royal Statistical Society A 132 (1969) 235-244). A boundary chosen after the fact is no help.
-Looks are taken as equally spaced unless `look.schedule` gives the information at each. Setting: `alpha`, the type I
-error of all looks together, where the record gives no `test.alpha`.
+Looks are taken as equally spaced unless `look.schedule` gives the information at each. In a git repository the
+looks are also counted in the history of the record: what counts is the greater number. Setting: `alpha`, the type
+I error of all looks together, where the record gives no `test.alpha`.
 """
 
 from __future__ import annotations
@@ -15,13 +16,17 @@ from typing import Annotated
 import numpy as np
 
 from gatecheck.columns import Booleans, Floats
-from gatecheck.compare.looks import LookFacts, is_single, look_facts
+from gatecheck.compare.looks import LookFacts, is_one_of_several, look_facts
+from gatecheck.model.looks_seen import LooksSeen, Seen
 from gatecheck.model.record import Look, OpenProbability
 from gatecheck.model.shown import decimal
 from gatecheck.model.struct import struct
 from gatecheck.policy import RuleSettings
 from gatecheck.rules.rule import Judgement, Rule, Said, Table, setting
 from gatecheck.rules.words import tell_result
+
+_MOST_NAMED = 5
+_SHORT = 12
 
 
 @struct
@@ -33,20 +38,36 @@ class Settings(RuleSettings):
 
 
 def concerns(table: Table, _: Sequence[Settings | None]) -> Booleans:
-    """Claims at a look that is not the only one."""
-    looked = [one.record.look is not None and not is_single(one.record.look) for one in table.columns.found]
-    return table.columns.claims & np.array(looked, np.bool_)
+    """Claims at a look that is not the only one, or whose history does not say whether it is."""
+    pairs = zip(table.columns.found, _seen(table), strict=True)
+    several = [is_one_of_several(one.record.look, seen) or not _is_known(seen) for one, seen in pairs]
+    return table.columns.claims & np.array(several, np.bool_)
 
 
 def judge(table: Table, settings: Sequence[Settings | None]) -> Judgement:
-    """Short where no boundary was planned or p is above it; undecided where either cannot be told."""
+    """Short where no boundary was planned or p is above it; undecided where either cannot be told.
+
+    Undecided, too, is what would be met if only the history were whole.
+    """
     alpha = _alpha(table, settings)
-    facts = look_facts(table.columns, alpha)
+    seen = _seen(table)
+    facts = look_facts(table.columns, alpha, seen)
+    unplanned = np.array([each is not None and not each.planned for each in facts], np.bool_)
     planned = np.array([each is not None and each.planned for each in facts], np.bool_)
     limit = np.array([np.nan if each is None else each.limit for each in facts], np.float64)
     p = np.exp(table.evidence.statistics.log_p)
-    known = ~planned | (np.isfinite(p) & np.isfinite(limit))
-    return Judgement(~planned | (p > limit), p, limit, known=known, facts=(facts, alpha))
+    short = unplanned | (planned & (p > limit))
+    told = ~planned | (np.isfinite(p) & np.isfinite(limit))
+    known = short | (told & np.array([_is_known(each) for each in seen], np.bool_))
+    return Judgement(short, p, limit, known=known, facts=(facts, alpha))
+
+
+def _seen(table: Table) -> tuple[LooksSeen | None, ...]:
+    return table.looks_seen or (None,) * len(table.columns.found)
+
+
+def _is_known(seen: LooksSeen | None) -> bool:
+    return seen is None or seen.known
 
 
 def _alpha(table: Table, settings: Sequence[Settings | None]) -> Floats:
@@ -58,34 +79,77 @@ def _alpha(table: Table, settings: Sequence[Settings | None]) -> Floats:
 def explain(table: Table, row: int, _: Settings, judgement: Judgement) -> Said:
     """What the looks cost, or where the boundary lies."""
     every, alpha = judgement.facts
-    facts: LookFacts = every[row]
+    facts: LookFacts | None = every[row]
+    seen = _seen(table)[row]
+    if facts is not None and not facts.planned:
+        return _explain_unplanned(table, row, facts, float(alpha[row]))
     look = table.record(row).look or Look(1)
-    if not facts.planned:
-        return _explain_unplanned(table, row, facts, look, float(alpha[row]))
-    if not np.isfinite(facts.limit):
+    if facts is not None and not np.isfinite(facts.limit):
         return Said(
-            f"The boundary at look {look.number} of {look.planned} cannot be told: the schedule of information and "
-            "the look do not fit together.",
+            f"The boundary at look {facts.number} of {look.planned} cannot be told: the schedule of information "
+            "and the look do not fit together.",
             "Give look.schedule with the information at each planned look, rising to 1.",
         )
+    if seen is not None and not seen.known and not judgement.short[row]:
+        return Said(seen.why, f"{seen.advice[:1].upper()}{seen.advice[1:]}.")
+    return _explain_planned(table, row, look, judgement)
+
+
+def _explain_planned(table: Table, row: int, look: Look, judgement: Judgement) -> Said:
+    facts: LookFacts = judgement.facts[0][row]
     side = "is above" if judgement.short[row] else "is within"
     return Said(
-        f"{tell_result(table.columns, table.evidence, row)} at look {look.number} of {look.planned} {side} the "
-        f"nominal {decimal(facts.limit)} of the {look.boundary} boundary that the plan sets.",
+        f"{tell_result(table.columns, table.evidence, row)} at look {facts.number} of {look.planned} {side} the "
+        f"nominal {decimal(facts.limit)} of the {look.boundary} boundary that the plan sets."
+        f"{_tell_counted(table, row)}",
         "Go on to the next look, or report the estimate without a claim.",
     )
 
 
-def _explain_unplanned(table: Table, row: int, facts: LookFacts, look: Look, alpha: float) -> Said:
-    taken = max(look.number, look.planned or 1)
+def _tell_counted(table: Table, row: int) -> str:
+    """Say by what the looks were counted, where the history was asked."""
+    if not table.looks_seen:
+        return ""
+    seen = _seen(table)[row]
+    if seen is None:
+        return " The folder is in no git repository, so only the look that the record tells counts."
+    return f" The history shows {tell_looks(seen)}."
+
+
+def _explain_unplanned(table: Table, row: int, facts: LookFacts, alpha: float) -> Said:
+    look, seen = table.record(row).look, _seen(table)[row]
     result = tell_result(table.columns, table.evidence, row)
-    real = decimal(facts.real_error)
-    return Said(
-        f"{result} was found at look {look.number}, without a boundary that was planned: {taken} unadjusted looks "
-        f"at {alpha:g} have a real type I error of {real}; the policy wants looks planned with their boundary.",
-        f"For orientation: a Pocock boundary over {taken} looks would have been {decimal(facts.pocock)} at each; "
-        "one chosen after the fact does not help, so confirm the result in a study with its looks planned.",
+    by_history = seen is not None and len(seen.looks) > (0 if look is None else look.number)
+    where = f", as the history shows ({tell_looks(seen)})" if by_history and seen is not None else ""
+    without = (
+        "with a boundary that its first look did not tell" if facts.late else "without a boundary that was planned"
     )
+    if look is not None and look.planned and look.boundary and facts.number > look.planned:
+        without = f"beyond the {look.planned} that were planned"
+    looks = f"{facts.taken} unadjusted looks at {alpha:g} have a real type I error of {decimal(facts.real_error)}"
+    return Said(
+        f"{result} was found at look {facts.number}{where}, {without}: {looks}; the policy wants looks planned "
+        "with their boundary.",
+        f"For orientation: a Pocock boundary over {facts.taken} looks would have been {decimal(facts.pocock)} at "
+        "each; one chosen after the fact does not help, so confirm the result in a study with its looks planned.",
+    )
+
+
+def tell_looks(seen: LooksSeen) -> str:
+    """The looks that a history shows, with their commits and dates."""
+    looks = seen.looks
+    named = [_tell_look(one) for one in looks[:_MOST_NAMED]]
+    more = f" and {len(looks) - _MOST_NAMED} more" if len(looks) > _MOST_NAMED else ""
+    count = "one look" if len(looks) == 1 else f"{len(looks)} looks"
+    least = "" if seen.known else "at least "
+    return f"{least}{count}: {', '.join(named)}{more}"
+
+
+def _tell_look(one: Seen) -> str:
+    if one.commit is None:
+        return "the judged tree"
+    aside = "" if one.on_line else ", off the main line"
+    return f"{one.commit[:_SHORT]} of {one.day}{aside}"
 
 
 RULE = Rule(

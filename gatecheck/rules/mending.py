@@ -18,13 +18,14 @@ _LARGEST_TOLD = 1e8
 def would_do(table: Table, short: Booleans, target_log_lr: Floats) -> Floats:
     """The least number of units per group at the effect observed, or at the effect planned.
 
-    Computed where a row is `short`; nan elsewhere, where it cannot be told, and where no larger sample helps.
+    Computed where a row is `short`; nan elsewhere, where it cannot be told or no larger sample helps, and where a
+    row is judged on several records, of which no single size can be told.
     """
-    statistics, design = table.evidence.statistics, table.evidence.design
+    statistics, design = table.evidence.weighed, table.evidence.design
     by_plan = np.array([name == "design-effect" for name in table.evidence.alternative], np.bool_)
     by_bound = np.array([name == "bound" for name in table.evidence.alternative], np.bool_)
     ncp = np.where(statistics.kind == weigh.Statistic.F, table.evidence.ncp / statistics.df1, table.evidence.ncp)
-    rows = np.flatnonzero(short & ~by_bound)
+    rows = np.flatnonzero(short & ~by_bound & ~table.evidence.on_all)
     n = np.full(short.shape, np.nan)
     n[rows] = weigh.n_to_stand(
         statistics.kind[rows],
@@ -43,7 +44,7 @@ def tell_mending(table: Table, row: int, target_log_lr: float, judgement: Judgem
     """The sample or the p that would do, and the wording that the evidence allows as it stands."""
     evidence = table.evidence
     wording = tell_wording(evidence.false_positive_risk[row], evidence.log_likelihood_ratio[row])
-    if evidence.statistics.one_sided[row] and evidence.statistics.value[row] < 0:
+    if evidence.weighed.one_sided[row] and evidence.weighed.value[row] < 0:
         wording = "as it stands, the effect points away from the direction tested: do not claim it"
     told = _what_would_do(table, row, target_log_lr, judgement)
     return f"{told}; {wording}." if told else f"{wording[0].upper()}{wording[1:]}."

@@ -1,26 +1,60 @@
 """Rule `numbers-agree`: the figures of a record that determine each other agree within their rounding.
 
-Statistic, degrees of freedom, sides and p; estimate and interval; interval, level and standard error; statistic
-and estimate; interval and p on the same side of no effect. A p that is adjusted, exact or from resampling is not
-compared with a statistic, and an interval that is not symmetric about its estimate not with a standard error.
+Statistic, degrees of freedom, sides and p; estimate, standard error, interval, statistic and p; means, standard
+deviations, counts and sizes of groups against statistic and effect; degrees of freedom against units, exclusions
+and clusters; an adjusted p against the raw one; and values that whole numbers cannot give. A p that is adjusted,
+exact or from resampling is not compared with a statistic, and an interval that is not symmetric about its estimate
+not with a standard error.
 """
 
 from __future__ import annotations
 
-import math
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 
 import numpy as np
 
-from gatecheck.compare.own_numbers import Agreement
-from gatecheck.model.numbers import exact
-from gatecheck.model.record import Estimate, Interval, Test
+from gatecheck.compare.agreement import odd_one_out
+from gatecheck.model.record import Test
 from gatecheck.policy import RuleSettings
 from gatecheck.rules.rule import Judgement, Rule, Said, Table
-from gatecheck.rules.words import describe_result, tell_number, tell_statistic
+from gatecheck.rules.words import describe_result
 
-_CLOSE = 0.02
-_EMPTY_LEVEL = 0.5
+_MOST_EXPLANATIONS = 4
+#: What a comparison is called, by its name.
+_CHECKED = {
+    "p": "statistic, df, sides and p",
+    "adjusted": "adjusted and raw p",
+    "inside": "estimate and interval",
+    "width": "interval and standard error",
+    "limits": "limits and standard error",
+    "lone-limit": "limit and standard error",
+    "centre": "estimate and middle of the interval",
+    "statistic": "estimate and statistic",
+    "statistic-interval": "interval and statistic",
+    "sides": "interval and p",
+    "p-estimate": "estimate, precision and p",
+    "correlation": "correlation and statistic",
+    "fisher": "interval of the correlation and df",
+    "sizes": "groups and n",
+    "df": "df and groups",
+    "df-n": "df and n",
+    "units": "df and independent units",
+    "proportion": "proportion and counts",
+    "proportion-error": "precision and independent units",
+    "groups-statistic": "groups and statistic",
+    "welch-df": "groups and df",
+    "groups-estimate": "means and estimate",
+    "groups-effect": "groups and standardised effect",
+    "groups-error": "groups and standard error",
+    "counts": "events and units",
+    "counts-statistic": "counts and statistic",
+    "counts-estimate": "counts and estimate",
+    "counts-error": "counts and standard error",
+    "counts-exact": "counts and exact p",
+    "item-mean": "mean and whole-number items",
+    "item-sd": "standard deviation and whole-number items",
+    "permutation": "p and resamples",
+}
 
 
 def judge(table: Table, settings: Sequence[RuleSettings | None]) -> Judgement:
@@ -30,113 +64,47 @@ def judge(table: Table, settings: Sequence[RuleSettings | None]) -> Judgement:
 
 
 def explain(table: Table, row: int, _: RuleSettings, __: Judgement) -> Said:
-    """Which figures do not fit together, and which figure would."""
+    """Which figures do not fit together, which would, which is the odd one out, and what to rule out first."""
+    short = [each for each in table.own_numbers if each.disagrees[row]]
+    if not short:
+        return Said(_tell_compared(table, row))
+    from gatecheck.rules.numbers_told import tell  # noqa: PLC0415  # most figures agree
+
+    told = [tell(table, row, each) for each in short]
+    odd = odd_one_out(table.own_numbers, row)
+    lone = f"; the other figures fit together, so the odd one out is {odd}" if odd else ""
+    found = "; ".join(dict.fromkeys(each.message for each in told))
+    explanations = list(dict.fromkeys(text for each in told for text in each.harmless))[:_MOST_EXPLANATIONS]
+    rule_out = f" Rule out first that {_or(explanations)}." if explanations else ""
+    return Said(
+        f"{found}{lone}; the policy wants figures that fit together.",
+        f"{_in_one_sentence([each.action for each in told])}{rule_out}",
+    )
+
+
+def _tell_compared(table: Table, row: int) -> str:
+    """What was compared, and what is not since it was adjusted by itself."""
     record = table.record(row)
-    told = [_TELL[each.name](table, row, each) for each in table.own_numbers if each.disagrees[row]]
-    if not told:
-        checked = [_CHECKED[each.name] for each in table.own_numbers if each.checked[row]]
-        compared = f"compared: {', '.join(checked)}" if checked else "no two of its figures determine each other"
-        return Said(f"{describe_result(record)}: {compared}.")
-    found = "; ".join(each.message for each in told)
-    return Said(f"{found}; the policy wants figures that fit together.", _in_one_sentence(told))
+    checked = dict.fromkeys(_CHECKED[each.name] for each in table.own_numbers if each.checked[row])
+    compared = f"compared: {', '.join(checked)}" if checked else "no two of its figures determine each other"
+    interval = None if record.estimate is None else record.estimate.interval
+    p_adjusted = (record.test or Test()).p_kind == "adjusted"
+    if interval is not None and p_adjusted != interval.adjusted:
+        which = "p is adjusted and the interval is not" if p_adjusted else "the interval is adjusted and p is not"
+        compared += f"; {which}, so these two are not compared"
+    return f"{describe_result(record)}: {compared}."
 
 
-def _in_one_sentence(told: list[Said]) -> str:
+def _in_one_sentence(actions: Sequence[str]) -> str:
     """What to do about each disagreement, without repeats, so that a shortfall stays short."""
-    first, *others = dict.fromkeys(each.remedy.removesuffix(".") for each in told)
+    first, *others = dict.fromkeys(actions)
     return "; ".join([first, *(f"{other[0].lower()}{other[1:]}" for other in others)]) + "."
 
 
-def _tell_p(table: Table, row: int, agreement: Agreement) -> Said:
-    test = table.record(row).test or Test()
-    implied = math.exp(float(table.evidence.statistics.log_p[row]))
-    rounded = test.value is not None and test.value.text is not None
-    within = f" ({agreement.low[row]:.3g} to {agreement.high[row]:.3g} within its rounding)" if rounded else ""
-    message = f"{tell_statistic(test)} gives p = {implied:.3g}{within}, and {tell_number(test.p)} is reported"
-    return Said(message, _hint_on_p(float(table.columns.test.p.value[row]), implied))
+def _or(texts: Sequence[str]) -> str:
+    *others, last = texts
+    return f"{', '.join(others)} or {last}" if others else last
 
-
-def _hint_on_p(reported: float, implied: float) -> str:
-    """The harmless explanation that the two figures suggest."""
-    if reported == 0:
-        return "Give all digits of p: some writers round to four decimals, which turns a small p into 0."
-    if abs(2 * reported - implied) < _CLOSE * implied:
-        return "The reported p is half of it: if one side was tested, say sides: 1 and which tail."
-    if abs(reported - 2 * implied) < _CLOSE * reported:
-        return "The reported p is twice it: if two sides were tested, say sides: 2."
-    return "Take statistic, df and p from the same run; an adjusted or resampled p is named by p_kind."
-
-
-def _tell_inside(table: Table, row: int, _: Agreement) -> Said:
-    estimate = _estimate(table, row)
-    return Said(
-        f"the estimate {tell_number(estimate.value)} lies outside its own interval {_limits(estimate)}",
-        "Take estimate and interval from the same run and on the same scale.",
-    )
-
-
-def _tell_width(table: Table, row: int, _: Agreement) -> Said:
-    estimate, column = _estimate(table, row), table.columns.estimate
-    width = (column.high.value[row] - column.low.value[row]) / 2
-    multiple = width / column.standard_error.value[row]
-    return Said(
-        f"the {100 * column.level[row]:.4g} % interval {_limits(estimate)} reaches {width:.3g} to either side"
-        f"{_on_log_scale(table, row)}, which is {multiple:.3g} standard errors of "
-        f"{tell_number(estimate.standard_error)}",
-        "Check the level, the scale (ratios: log) and whether a standard deviation stands for the standard error.",
-    )
-
-
-def _tell_statistic(table: Table, row: int, agreement: Agreement) -> Said:
-    test = table.record(row).test or Test()
-    source = "standard error" if table.columns.estimate.standard_error.known[row] else "interval"
-    size = float(agreement.low[row] / 2 + agreement.high[row] / 2)
-    return Said(
-        f"estimate and {source}{_on_log_scale(table, row)} give {test.statistic} = {size:.3g} in size, and "
-        f"{tell_number(test.value)} is reported",
-        "Take estimate and statistic from the same test, and say in estimate.null what it is compared with.",
-    )
-
-
-def _tell_sides(table: Table, row: int, agreement: Agreement) -> Said:
-    estimate, column = _estimate(table, row), table.columns.estimate
-    excludes = column.low.low[row] > 0 or column.high.high[row] < 0
-    test = table.record(row).test or Test()
-    return Said(
-        f"the interval {_limits(estimate)} {'excludes' if excludes else 'includes'} {column.null[row]:g}, which "
-        f"goes with p = {agreement.low[row]:.2g}{_on_log_scale(table, row)}, and {tell_number(test.p)} is reported",
-        "Check the scale, the level, and whether one of the two is adjusted (p_kind, interval.adjusted).",
-    )
-
-
-def _on_log_scale(table: Table, row: int) -> str:
-    return " on the log scale" if table.columns.estimate.log_scale[row] else ""
-
-
-def _estimate(table: Table, row: int) -> Estimate:
-    return table.record(row).estimate or Estimate("estimate", exact(math.nan))
-
-
-def _limits(estimate: Estimate) -> str:
-    interval = estimate.interval or Interval(_EMPTY_LEVEL)
-    return f"{tell_number(interval.low)} to {tell_number(interval.high)}"
-
-
-#: How a disagreement is told, and what the comparison is called, by the name of the comparison.
-_TELL: dict[str, Callable[[Table, int, Agreement], Said]] = {
-    "p": _tell_p,
-    "inside": _tell_inside,
-    "width": _tell_width,
-    "statistic": _tell_statistic,
-    "sides": _tell_sides,
-}
-_CHECKED = {
-    "p": "statistic, df, sides and p",
-    "inside": "estimate and interval",
-    "width": "interval and standard error",
-    "statistic": "estimate and statistic",
-    "sides": "interval and p",
-}
 
 RULE = Rule(
     name="numbers-agree",

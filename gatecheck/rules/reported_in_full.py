@@ -4,7 +4,8 @@ An exact p (an inequality only where it bounds p at 0.001 or less), a named test
 of freedom, n with its unit, and the estimate with its interval and unit. Sources: SAMPL guidelines (Lang and
 Altman 2013); CONSORT 2025, item 26; APA journal article reporting standards for quantitative research.
 A test of several effects at once (F or chi-squared with more than one numerator df) has no single estimate, an
-exact test no statistic with df, and an estimate alone needs no test.
+exact test no statistic with df, and an estimate alone needs no test. A whole screen has no single test or estimate:
+it gives its numbers of tests and hits and the level of each test (common practice, no source).
 """
 
 from __future__ import annotations
@@ -13,6 +14,7 @@ from collections.abc import Callable, Sequence
 
 import numpy as np
 
+from gatecheck.compare.screens import is_whole_screen
 from gatecheck.model.record import Estimate, Record, Sample, Test
 from gatecheck.model.struct import struct
 from gatecheck.policy import RuleSettings
@@ -32,9 +34,9 @@ class Requirement:
 
 
 def _tested(record: Record) -> Test | None:
-    """The test, where one is due: an estimate or a description alone needs none."""
+    """The test, where one is due: an estimate, a description or a whole screen needs none."""
     without = record.test is None and (record.aim == "estimation" or record.status == "descriptive")
-    return None if without else record.test or Test()
+    return None if without or is_whole_screen(record) else record.test or Test()
 
 
 def _lacks_name(record: Record) -> bool:
@@ -68,15 +70,25 @@ def _lacks_statistic(record: Record) -> bool:
 
 def _lacks_n(record: Record) -> bool:
     sample = record.sample or Sample()
-    return (sample.n is None and not sample.groups) or sample.unit is None
+    return not is_whole_screen(record) and ((sample.n is None and not sample.groups) or sample.unit is None)
 
 
 def _lacks_estimate(record: Record) -> bool:
-    return record.estimate is None and not _tests_several_effects(record.test or Test())
+    due = not is_whole_screen(record) and not _tests_several_effects(record.test or Test())
+    return due and record.estimate is None
 
 
 def _tests_several_effects(test: Test) -> bool:
     return test.statistic in {"F", "chi2"} and test.df is not None and test.df[0].value > 1
+
+
+def _lacks_counts_of_screen(record: Record) -> bool:
+    screen = record.screen
+    return screen is not None and (screen.tests is None or screen.hits is None)
+
+
+def _lacks_level_of_screen(record: Record) -> bool:
+    return record.screen is not None and record.screen.alpha is None
 
 
 def _lacks_interval(record: Record) -> bool:
@@ -98,6 +110,8 @@ REQUIREMENTS = (
     Requirement("an estimate", _lacks_estimate, "estimate with measure, value, interval and unit"),
     Requirement("the interval of the estimate", _lacks_interval, "estimate.interval"),
     Requirement("the unit of the estimate", _lacks_unit, 'estimate.unit ("1" for a number without unit)'),
+    Requirement("the numbers of tests and hits", _lacks_counts_of_screen, "screen.tests and screen.hits"),
+    Requirement("the level of each test", _lacks_level_of_screen, "screen.alpha"),
 )
 
 

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import field
 from typing import Any
 
 import numpy as np
@@ -10,6 +11,7 @@ import numpy as np
 from gatecheck.columns import Booleans, Columns, Floats
 from gatecheck.compare.own_numbers import Agreement
 from gatecheck.evidence import Evidence
+from gatecheck.model.changes import FamilyBefore
 from gatecheck.model.promise import Promise
 from gatecheck.model.record import Record
 from gatecheck.model.struct import struct
@@ -30,6 +32,8 @@ class Table:
     promises: tuple[Promise | None, ...] = ()
     looks_seen: tuple[Any, ...] = ()
     inputs: tuple[Any, ...] = ()
+    tests_behind: tuple[Any, ...] = ()
+    families_before: Mapping[str, FamilyBefore] = field(default_factory=dict)
 
     def record(self, row: int) -> Record:
         """The record of that row."""

@@ -8,6 +8,7 @@ from typing import Any
 import numpy as np
 
 from gatecheck.columns import Booleans
+from gatecheck.compare.screens import is_whole_screen
 from gatecheck.evidence import why_unweighed
 from gatecheck.rules.rule import Exemption, Need, Said, Table
 from gatecheck.rules.words import describe_result
@@ -15,6 +16,11 @@ from gatecheck.rules.words import describe_result
 
 def tell_unweighed(table: Table, row: int) -> Said:
     """Why the evidence of that row could not be weighed, and what to do."""
+    if is_whole_screen(table.record(row)):
+        return Said(
+            "A whole screen has no single result whose evidence could be weighed.",
+            "Leave the rule screen on, which judges it, or report each hit in a record of its own.",
+        )
     what, advice = why_unweighed(table.columns, table.evidence, row, table.applied[row].evidence)
     result = describe_result(table.record(row))
     return Said(
@@ -28,6 +34,15 @@ def _harm_outcomes(table: Table, settings: Sequence[Any]) -> Booleans:
     return table.columns.harm & ~included
 
 
+def _judged_as_screens(table: Table, _: Sequence[Any]) -> Booleans:
+    """Whole screens where the rule `screen` is on; without it they would pass in silence."""
+    judged = [
+        is_whole_screen(one.record) and "screen" in applied.rules
+        for one, applied in zip(table.columns.found, table.applied, strict=True)
+    ]
+    return np.array(judged, np.bool_)
+
+
 LOG_LIKELIHOOD_RATIO = Need(lambda table: table.evidence.log_likelihood_ratio, tell_unweighed)
 
 EXEMPT = (
@@ -39,5 +54,8 @@ EXEMPT = (
     Exemption(
         lambda table, _: table.columns.estimation_aim,
         "The claim is an estimate: it asserts no effect over none.",
+    ),
+    Exemption(
+        _judged_as_screens, "A whole screen is judged by the rule screen, not by the evidence of one result."
     ),
 )

@@ -11,6 +11,7 @@ from gatecheck.model.record import Record, Sample, Test
 
 _SUGGESTIVE = 0.20
 _FEW_DIGITS = 4
+_MOST_NAMED = 3
 _LARGEST_LOG_ODDS = 60.0
 #: Endings of units and of their plurals (common usage); the first that fits is taken.
 _PLURALS = {
@@ -35,12 +36,21 @@ _PLURALS = {
 def describe_result(record: Record) -> str:
     """One line that gives the result as it is reported, such as `t(34) = 2.21, p = 0.034`."""
     test = record.test or Test()
-    parts = [tell_statistic(test), _p(test), _estimate(record)]
+    parts = [tell_statistic(test), _p(test), _estimate(record), _screen(record)]
     return ", ".join(part for part in parts if part) or "no test and no estimate"
 
 
+def _screen(record: Record) -> str:
+    screen = record.screen
+    if screen is None or screen.hits is None or screen.tests is None:
+        return ""
+    return f"{screen.hits:,} hits of {screen.tests:,} tests"
+
+
 def tell_result(columns: Columns, evidence: Evidence, row: int) -> str:
-    """The result at the head of a message: `p = 0.034 (t(34) = 2.21, 18 + 18 plots)`."""
+    """The result at the head of a message: `p = 0.034 (t(34) = 2.21, 18 + 18 plots)`, or the pooled one."""
+    if evidence.on_all[row]:
+        return _tell_together(columns, evidence, row)
     record = columns.found[row].record
     test = record.test or Test()
     log_p = evidence.statistics.log_p[row]
@@ -48,6 +58,15 @@ def tell_result(columns: Columns, evidence: Evidence, row: int) -> str:
     behind = [tell_statistic(test) or test.name or "", tell_sample(record.sample)]
     inside = ", ".join(part for part in behind if part)
     return f"{head} ({inside})" if inside else head
+
+
+def _tell_together(columns: Columns, evidence: Evidence, row: int) -> str:
+    others = [columns.found[each].record.id for each in evidence.together.members[row] if each != row]
+    named = ", ".join(others[:_MOST_NAMED]) + (
+        f" and {len(others) - _MOST_NAMED} more" * (len(others) > _MOST_NAMED)
+    )
+    p = _digits(math.exp(evidence.weighed.log_p[row]))
+    return f"Together with {named}, this result (z = {evidence.weighed.value[row]:.3g}, p = {p}, pooled)"
 
 
 def tell_sample(sample: Sample | None) -> str:
@@ -77,9 +96,11 @@ def tell_number(number: Reported | None) -> str:
 
 
 def tell_prior(columns: Columns, evidence: Evidence, row: int) -> str:
-    """The prior with its origin where that is the record itself."""
+    """The prior with its origin where that is the record or its plan."""
     prior = f"prior {evidence.prior[row]:.4g}"
     own = columns.found[row].record.prior
+    if columns.prior_from_plan[row]:
+        return f"{prior}, which the plan sets"
     return prior if own is None else f"{prior}, which the record sets ({own.basis})"
 
 

@@ -12,6 +12,7 @@ from pathlib import Path
 from gatecheck.git import Entry
 from gatecheck.globs import matches
 from gatecheck.model.found import Found, Scan
+from gatecheck.model.progress import Progress
 from gatecheck.model.verdict import Problem
 from gatecheck.scan.candidates import is_pointer, looks_declared, may_declare
 from gatecheck.scan.documents import judged
@@ -21,11 +22,18 @@ from gatecheck.scan.tree import Unread, contents, listed
 from gatecheck.scan.twins import position, settled
 from gatecheck.scan.unread import as_text, of_files, of_folders, of_links, of_long, of_pointer, of_unmerged
 
+File = tuple[Entry, bytes | Unread]
 #: A longer file that declares something is not parsed, in bytes.
 LONGEST_PARSED = 32 << 20
 
 
-def scan(root: Path, include: Sequence[str], exclude: Sequence[str], revision: str | None = None) -> Scan:
+def scan(
+    root: Path,
+    include: Sequence[str],
+    exclude: Sequence[str],
+    revision: str | None = None,
+    progress: Progress | None = None,
+) -> Scan:
     """Find the records below `root`.
 
     In a git repository the tracked files and the untracked ones that are not ignored are read; a folder in no
@@ -39,6 +47,8 @@ def scan(root: Path, include: Sequence[str], exclude: Sequence[str], revision: s
         Globs of paths relative to `root`: a file is read if one of the first names it and none of the second.
     revision
         The commit to read in place of the work tree.
+    progress
+        Told after each file how many of them were read.
 
     Raises
     ------
@@ -51,7 +61,8 @@ def scan(root: Path, include: Sequence[str], exclude: Sequence[str], revision: s
     outcomes: list[Found | Problem] = []
     unread_files: list[tuple[Entry, Unread]] = []
     read: set[str] = set()
-    for entry, content in contents(tree, [entry for entry in wanted if entry.kind in {"file", "unmerged"}]):
+    files = [entry for entry in wanted if entry.kind in {"file", "unmerged"}]
+    for entry, content in _told(contents(tree, files), len(files), progress):
         if isinstance(content, Unread):
             unread_files.append((entry, content))
         else:
@@ -69,6 +80,17 @@ def scan(root: Path, include: Sequence[str], exclude: Sequence[str], revision: s
     )
     in_order = sorted(dict.fromkeys(problems), key=lambda one: (position(one.at), one.message))
     return Scan(found, tuple(in_order), len(read))
+
+
+def _told(read: Iterable[File], files: int, progress: Progress | None) -> Iterable[File]:
+    """What is `read`, which tells `progress` where there is any as it goes."""
+    return read if progress is None else _counted(read, files, progress)
+
+
+def _counted(read: Iterable[File], files: int, progress: Progress) -> Iterator[File]:
+    for number, file in enumerate(read, start=1):
+        progress("Reading {:,} of {:,} files", number, files)
+        yield file
 
 
 def _of_file(entry: Entry, content: bytes, include: Sequence[str]) -> Iterable[Found | Problem]:

@@ -8,7 +8,7 @@ from gatecheck.scan.readers.document import is_wide
 
 _WORD = b"gatecheck"
 _KEY = re.compile(rb"gatecheck[\"']?\s*:|vnd\.gatecheck")
-_DECLARATION = re.compile(rb"gatecheck[\"']?\s*:\s*[\"']?(record|plan|policy|waivers|verdict)/")
+_DECLARATION = re.compile(rb"gatecheck[\"']?\s*:\s*[\"']?(record|plan|policy|waivers|accepted|seal|verdict)/")
 _OUTPUT = re.compile(rb"vnd\.gatecheck")
 _POINTER = b"version https://git-lfs.github.com/spec/v1"
 

@@ -17,7 +17,7 @@ from gatecheck.schema.records import read_record
 Declared = Literal["record", "other", "unknown", "nothing"]
 
 _KEY = "gatecheck"
-_VERSIONS = {kind: f"{kind}/1" for kind in ("record", "plan", "policy", "waivers", "verdict")}
+_VERSIONS = {kind: f"{kind}/1" for kind in ("record", "plan", "policy", "waivers", "accepted", "seal", "verdict")}
 _TAME = re.compile(r"[A-Za-z0-9._/+-]{1,80}")
 _LONGEST_FIELD = 100
 _STORE = "store each record as its own document, as an element of a list that is the document, or as a .jsonl line"

@@ -1,7 +1,8 @@
 """How probable it is that a true effect gives a result strong enough: the assurance of standing.
 
-A two-sided result meets a wanted likelihood ratio, and a wanted p-value, just where its statistic is at least some
-value in size; the assurance is the probability, under the true effect, of at least that value in its direction.
+A result meets a wanted likelihood ratio, and a wanted p-value, just where its statistic is at least some value; the
+assurance is the probability, under the true effect, of at least that value. Of t and z only results in the
+direction of the true effect count; F and chi-squared have no direction.
 """
 
 from __future__ import annotations
@@ -10,21 +11,25 @@ from enum import IntEnum
 from typing import TYPE_CHECKING
 
 import numpy as np
+from scipy import special
 
-from gatecheck.weigh.arrays import rowwise
-from gatecheck.weigh.noncentral import upper_tail_r, upper_tail_t
-from gatecheck.weigh.quantiles import t_from_log_p
-from gatecheck.weigh.risk import log_p_for_bound
-from gatecheck.weigh.t import log_lr_t, r_from_t
+from gatecheck.weigh.crossings import least_reached
+from gatecheck.weigh.default_prior import log_bf_r, log_bf_t, log_bf_unit_information
+from gatecheck.weigh.mixed import Statistic, at_noncentrality, log_p, observed_effect, value_from_log_p
+from gatecheck.weigh.noncentral import upper_tail_chi2, upper_tail_f, upper_tail_r, upper_tail_t
+from gatecheck.weigh.planned import About
+from gatecheck.weigh.risk import log_lr_bound, log_p_for_bound
+from gatecheck.weigh.t import r_from_t
 
 if TYPE_CHECKING:
-    from numpy.typing import ArrayLike
+    from collections.abc import Callable, Iterable
 
-    from gatecheck.weigh.arrays import BoolArray, FloatArray
+    from gatecheck.weigh.arrays import FloatArray
+    from gatecheck.weigh.planned import Planned
 
+# Beyond this t, and the F and chi-squared that are its square, nothing is looked for.
 MOST_T = 1e6
-# From 1e6 down to 1e-12.
-HALVINGS = 60
+UNIFORM = 1.0
 
 
 class Weighing(IntEnum):
@@ -32,76 +37,120 @@ class Weighing(IntEnum):
 
     OBSERVED_EFFECT = 0
     DESIGN_EFFECT = 1
-    BOUND = 2
+    DEFAULT_PRIOR = 2
+    BOUND = 3
 
 
-def least_t(
-    weighing: ArrayLike, df: ArrayLike, ncp: ArrayLike, target_log_lr: ArrayLike, log_p_limit: ArrayLike
-) -> FloatArray:
-    """Least size of t at which a two-sided result has the wanted evidence and the wanted p-value.
+def log_lr(planned: Planned, weighing: Weighing, value: FloatArray) -> FloatArray:
+    """Natural log of the likelihood ratio of results of that ``value`` (not negative), one a row.
+
+    Not a number where the test has no such alternative.
+    """
+    if weighing == Weighing.OBSERVED_EFFECT:
+        return observed_effect(planned.kind, value, planned.df1, planned.df2, planned.one_sided)
+    if weighing == Weighing.DESIGN_EFFECT:
+        return at_noncentrality(planned.kind, value, planned.df1, planned.df2, planned.ncp, planned.one_sided)
+    if weighing == Weighing.DEFAULT_PRIOR:
+        return _log_bf_default(planned, value)
+    return log_lr_bound(log_p_of(planned, value))
+
+
+def log_p_of(planned: Planned, value: FloatArray) -> FloatArray:
+    """Natural log of the p-values of results of that ``value``, one a row."""
+    return log_p(planned.kind, value, planned.df1, planned.df2, planned.one_sided)
+
+
+def least_value(planned: Planned, wanted: Iterable[tuple[Weighing, float]], log_p_limit: float) -> FloatArray:
+    """Least value of the statistic at which a result has all the evidence that is wanted, and the p-value.
 
     Parameters
     ----------
-    weighing : array_like of int
-        Values of :class:`Weighing`.
-    df : array_like
-        Degrees of freedom, above zero; infinity means the normal distribution.
-    ncp : array_like
-        Non-centrality of the planned effect, at least zero; used where weighed against it.
-    target_log_lr : array_like
-        Natural log of the likelihood ratio to reach.
-    log_p_limit : array_like
+    planned : Planned
+        The test at its sizes.
+    wanted : iterable of (Weighing, float)
+        Under each of these the natural log of the likelihood ratio to reach.
+    log_p_limit : float
         Natural log of the p-value to stay within, at most zero; zero asks for nothing.
 
     Returns
     -------
-    ndarray of float64
-        Broadcast shape; infinite where no t up to 1e6 serves, nan outside the domain.
+    ndarray of float64, shape (n,)
+        Not negative; infinite where no value serves up to a t of 1e6 or its square.
     """
-    return rowwise(_least_rows, _legal, weighing, df, ncp, target_log_lr, log_p_limit)
+    least = _value_within(planned, log_p_limit)
+    for weighing, target in wanted:
+        if weighing == Weighing.BOUND:
+            limit = float(log_p_for_bound(target)) if target > 0 else 0.0
+            least = np.maximum(least, _value_within(planned, limit))
+        else:
+            least = np.maximum(least, _least_by_ratio(planned, weighing, target))
+    return least
 
 
-def assurance(least: ArrayLike, df: ArrayLike, ncp: ArrayLike) -> FloatArray:
-    """Probability that t is at least ``least`` under non-centrality ``ncp``; zero where that is infinite."""
-    return _or_never(least, upper_tail_t(np.where(np.isinf(least), 0.0, least), df, ncp))
+def _value_within(planned: Planned, log_p_limit: float) -> FloatArray:
+    """Least value, not negative, whose p-value is within the limit; any is within that of 1."""
+    return np.zeros_like(planned.ncp) if log_p_limit == 0 else np.maximum(value_at(planned, log_p_limit), 0.0)
 
 
-def assurance_of_correlation(least: ArrayLike, n: ArrayLike, rho: ArrayLike) -> FloatArray:
-    """Probability that the t of a correlation of ``n`` pairs is at least ``least`` under a true ``rho``."""
+def value_at(planned: Planned, log_p_value: float) -> FloatArray:
+    """The statistics whose p-value is that, one a row."""
+    return value_from_log_p(planned.kind, log_p_value, planned.df1, planned.df2, planned.one_sided)
+
+
+def assurance(planned: Planned, least: FloatArray) -> FloatArray:
+    """Probability that the statistic is at least ``least`` under the true effect; zero where that is infinite."""
     finite = np.where(np.isinf(least), 0.0, least)
-    return _or_never(least, upper_tail_r(r_from_t(finite, np.asarray(n) - 2), n, rho))
-
-
-def _or_never(least: ArrayLike, probability: FloatArray) -> FloatArray:
+    if planned.kind == Statistic.CHI2:
+        probability = upper_tail_chi2(finite, planned.df1, planned.ncp)
+    elif planned.kind == Statistic.F:
+        probability = upper_tail_f(finite, planned.df1, planned.df2, planned.ncp)
+    elif planned.kind == Statistic.Z:
+        probability = special.ndtr(planned.ncp - finite)
+    elif planned.about == About.CORRELATION:
+        # The pairs are random too, which a non-central t leaves out.
+        pairs = planned.df1 + 2
+        rho = planned.ncp / np.hypot(planned.ncp, np.sqrt(pairs))
+        probability = upper_tail_r(r_from_t(finite, planned.df1), pairs, rho)
+    else:
+        probability = upper_tail_t(finite, planned.df1, planned.ncp)
     return np.where(np.isinf(least), 0.0, probability)
 
 
-def _least_rows(
-    weighing: FloatArray, df: FloatArray, ncp: FloatArray, target: FloatArray, log_p_limit: FloatArray
-) -> FloatArray:
-    by_bound = t_from_log_p(np.where(target > 0, log_p_for_bound(target), 0.0), df, one_sided=False)
-    by_p = t_from_log_p(log_p_limit, df, one_sided=False)
-    by_ratio = _bisect(weighing == Weighing.DESIGN_EFFECT, df, ncp, target)
-    return np.maximum(np.where(weighing == Weighing.BOUND, by_bound, by_ratio), by_p)
+def _log_bf_default(planned: Planned, value: FloatArray) -> FloatArray:
+    if planned.about == About.MEANS:
+        return log_bf_t(value, planned.df1, planned.n, planned.scale, one_sided=planned.one_sided)
+    if planned.about == About.CORRELATION:
+        r = r_from_t(value, planned.df1)
+        return log_bf_r(r, planned.df1 + 2, UNIFORM, one_sided=planned.one_sided)
+    if planned.about == About.SEVERAL_EFFECTS or planned.one_sided:
+        return np.full_like(value, np.nan)
+    if planned.kind == Statistic.F:
+        return log_bf_unit_information(planned.n / 2 * np.log1p(value / planned.df2), planned.n)
+    return log_bf_unit_information(value / 2 if planned.kind == Statistic.CHI2 else value**2 / 2, planned.n)
 
 
-def _bisect(by_design: BoolArray, df: FloatArray, ncp: FloatArray, target: FloatArray) -> FloatArray:
-    """Least t by halving: the folded ratio rises with the size of t, at a fixed effect and at the one observed."""
+def _least_by_ratio(planned: Planned, weighing: Weighing, target: float) -> FloatArray:
+    """Least value by search: the ratio rises with the size of the statistic under every alternative.
 
-    def reaches(t: FloatArray) -> BoolArray:
-        return log_lr_t(t, df, np.where(by_design, ncp, t), one_sided=False) >= target
-
-    low, high = np.zeros_like(target), np.full_like(target, MOST_T)
-    possible, at_once = reaches(high), reaches(low)
-    for _ in range(HALVINGS):
-        middle = (low + high) / 2
-        served = reaches(middle)
-        low, high = np.where(served, low, middle), np.where(served, middle, high)
-    return np.where(at_once, 0.0, np.where(possible, high, np.inf))
+    It is looked for along the log likelihood ratio of the best estimate, in which all of them are nearly straight.
+    """
+    along, back = _straightened(planned)
+    most = np.full_like(planned.ncp, MOST_T if planned.kind in {Statistic.T, Statistic.Z} else MOST_T**2)
+    least = least_reached(lambda point: log_lr(planned, weighing, back(point)) - target, along(most))
+    return np.where(np.isinf(least), np.inf, back(np.where(np.isinf(least), 0.0, least)))
 
 
-def _legal(
-    weighing: FloatArray, df: FloatArray, ncp: FloatArray, target: FloatArray, log_p_limit: FloatArray
-) -> BoolArray:
-    kind = (weighing >= 0) & (weighing <= Weighing.BOUND)
-    return kind & (df > 0) & (ncp >= 0) & np.isfinite(ncp) & np.isfinite(target) & (log_p_limit <= 0)
+def _straightened(
+    planned: Planned,
+) -> tuple[Callable[[FloatArray], FloatArray], Callable[[FloatArray], FloatArray]]:
+    """From values to the log likelihood ratio of the best estimate, and back."""
+    df1, df2 = planned.df1, planned.df2
+    if planned.kind == Statistic.Z:
+        return lambda value: value**2 / 2, lambda point: np.sqrt(2 * point)
+    if planned.kind == Statistic.CHI2:
+        return lambda value: value / 2, lambda point: 2 * point
+    if planned.kind == Statistic.F:
+        half = (df1 + df2) / 2
+        return lambda f: half * np.log1p(df1 * f / df2), lambda point: df2 / df1 * np.expm1(point / half)
+    half = (df1 + 1) / 2
+    return lambda t: half * np.log1p(t * t / df1), lambda point: np.sqrt(df1 * np.expm1(point / half))

@@ -7,8 +7,9 @@ scale^2 n``, ``tau = t^2/df`` and ``m = (df+1)/2`` it remains ::
     BF = (1+tau)^m (2 pi)^(-1/2)  integral of  (w+c^2)^(-1/2) exp(-w/2) [1 + tau w/(w+c^2)]^(-m)  over w > 0
 
 whose every factor is positive and bounded. Where the direction was fixed beforehand the half against it is
-integrated over the effect itself, and the half along it is what that leaves of twice the whole. All integrals are
-trapezoidal sums in ``v``, the variable being ``exp(v - exp(-v))`` over a rate: they end double-exponentially.
+integrated over the effect itself, and the half along it is what that leaves of twice the whole; so it is with
+correlations. All integrals are trapezoidal sums in ``v``, the variable being ``exp(v - exp(-v))`` over a rate: they
+end double-exponentially.
 
 References
 ----------
@@ -16,6 +17,8 @@ Rouder, J. N., Speckman, P. L., Sun, D., Morey, R. D. & Iverson, G. (2009). Baye
 rejecting the null hypothesis. Psychonomic Bulletin & Review 16(2), 225-237 (the prior; not seen).
 Ly, A., Verhagen, J. & Wagenmakers, E.-J. (2016). Harold Jeffreys's default Bayes factor hypothesis tests. Journal
 of Mathematical Psychology 72, 19-32 (correlations).
+Hotelling, H. (1953). New light on the correlation coefficient and its transforms. JRSS B 15(2), 193-232 (the
+density of a correlation; from memory).
 """
 
 from __future__ import annotations
@@ -50,9 +53,10 @@ NORMAL_DF = 1e100
 LARGEST_RATE = 1e250
 # Narrower priors need smaller steps, wider ones reach further down than the first node.
 LEAST_KAPPA, LARGEST_KAPPA = 0.1, 2.0
-LEAST_PAIRS = 3
+LEAST_PAIRS, MOST_PAIRS = 3, 1e20
 # Below it the square of a correlation is more exact than what it lacks of 1.
 SMALL_R = 0.5
+NEGLIGIBLE_TERM = 1e-18
 LEAST_SPARE = 0.1
 
 
@@ -93,8 +97,8 @@ def log_bf_t(
     return rowwise(_t_rows, _legal_t, t, df, n_effective, scale, one_sided)
 
 
-def log_bf_r(r: ArrayLike, n: ArrayLike, kappa: ArrayLike) -> FloatArray:
-    """Natural log of the exact Bayes factor of a correlation under a stretched beta prior, two-sided.
+def log_bf_r(r: ArrayLike, n: ArrayLike, kappa: ArrayLike, *, one_sided: ArrayLike = False) -> FloatArray:
+    """Natural log of the exact Bayes factor of a correlation under a stretched beta prior.
 
     The prior density of the correlation is proportional to ``(1 - rho^2)^(1/kappa - 1)``: uniform at ``kappa = 1``.
     It is the ratio of marginal likelihoods with Jeffreys's priors on the means and variances.
@@ -102,11 +106,14 @@ def log_bf_r(r: ArrayLike, n: ArrayLike, kappa: ArrayLike) -> FloatArray:
     Parameters
     ----------
     r : array_like
-        The sample correlation, strictly between -1 and 1.
+        The sample correlation, strictly between -1 and 1; for one-sided rows signed so that the promised direction
+        is positive.
     n : array_like
-        Number of pairs, at least 3.
+        Number of pairs, from 3 to 1e20.
     kappa : array_like
         Width of the prior, from 0.1 to 2.
+    one_sided : array_like of bool
+        Whether the direction was fixed beforehand; then the prior is the half in that direction, doubled.
 
     Returns
     -------
@@ -119,8 +126,13 @@ def log_bf_r(r: ArrayLike, n: ArrayLike, kappa: ArrayLike) -> FloatArray:
     turns by Euler's transformation and integral, and Legendre's duplication, into ::
 
         (1-r^2)^(b+1-n/2) / B(b, M)  integral of  y^(b-1/2) (1+y)^(-M) (1 + (1-r^2) y)^(-b-1/2)  over y > 0
+
+    The half of the prior that r points away from is integrated against Hotelling's density of r, over the inverse
+    hyperbolic tangent ``u`` of the correlation. With ``x = |r| tanh u`` and ``F(y) = 2F1(1/2, 1/2; n-1/2; y)``::
+
+        2 / B(1/2, b)  integral of  cosh(u)^(-2(b+M)) (1+x)^(3/2-n) F((1-x)/2) / F(1/2)  over u > 0
     """
-    return rowwise(_r_rows, _legal_r, r, n, kappa)
+    return rowwise(_r_rows, _legal_r, r, n, kappa, one_sided)
 
 
 def log_bf_unit_information(log_lr_max: ArrayLike, n: ArrayLike) -> FloatArray:
@@ -159,14 +171,24 @@ def _t_rows(
     size, df, c = np.abs(t), np.minimum(df, NORMAL_DF), scale * np.sqrt(n_effective)
     m, tau = (df + 1) / 2, size * size / df
     both = _in_levels(_both_directions, np.log(LARGEST_W * _rate(m, tau, c)), m, tau, c)
-    against = one_sided & (t < 0)
-    along = one_sided & ~against
+    return _in_the_direction(_wrong_direction, both, one_sided, t < 0, size / np.sqrt(size * size + df), df, c)
+
+
+def _in_the_direction(
+    wrong_direction: Callable[..., FloatArray],
+    both: FloatArray,
+    one_sided: BoolArray,
+    against: BoolArray,
+    *columns: FloatArray,
+) -> FloatArray:
+    """Give one-sided rows the half against their direction, or what that leaves of twice the whole."""
     if not one_sided.any():
         return both
-    rho = size / np.sqrt(size * size + df)
-    wrong = np.full_like(both, np.nan)
-    wrong[one_sided] = _wrong_direction(rho[one_sided], df[one_sided], c[one_sided])
-    return np.where(against, wrong, np.where(along, both + np.log1p(-np.expm1(wrong - both)), both))
+    wrong = wrong_direction(*(column[one_sided] for column in columns))
+    whole = both[one_sided]
+    result = both.copy()
+    result[one_sided] = np.where(against[one_sided], wrong, whole + np.log1p(-np.expm1(wrong - whole)))
+    return result
 
 
 def _rate(m: FloatArray, tau: FloatArray, c: FloatArray) -> FloatArray:
@@ -214,16 +236,18 @@ def _over_effects(end: float, rho: FloatArray, df: FloatArray, c: FloatArray, ra
     return log_mean
 
 
-def _r_rows(r: FloatArray, n: FloatArray, kappa: FloatArray) -> FloatArray:
+def _r_rows(r: FloatArray, n: FloatArray, kappa: FloatArray, one_sided: BoolArray) -> FloatArray:
     b, m, left = 1 / kappa, (n - 1) / 2, (1 - r) * (1 + r)
     log_left = np.where(np.abs(r) < SMALL_R, np.log1p(-r * r), np.log(left))
-    # Beyond the lesser of two bounds on log y the integrand is below exp(-REACH).
-    by_left = REACH / m - log_left
+    # Beyond the lesser of two bounds on log y the integrand is below exp(-REACH) of its peak, which falls with b.
+    reach = REACH + 3 * b
+    by_left = reach / m - log_left
     spare = m - b - 0.5
-    by_power = np.where(spare > LEAST_SPARE, REACH / np.maximum(spare, LEAST_SPARE), np.inf)
+    by_power = np.where(spare > LEAST_SPARE, reach / np.maximum(spare, LEAST_SPARE), np.inf)
     log_y = np.minimum(by_left, by_power + np.log(-np.expm1(-by_power)))
     log_integral = _in_levels(_over_odds, log_y + np.log(m + 1), b, m, left)
-    return (b + 1 - n / 2) * log_left - _log_beta(b, m) + log_integral
+    both = (b + 1 - n / 2) * log_left - _log_beta(b, m) + log_integral
+    return _in_the_direction(_wrong_correlation, both, one_sided, r < 0, np.abs(r), n, b)
 
 
 def _over_odds(end: float, b: FloatArray, m: FloatArray, left: FloatArray) -> FloatArray:
@@ -233,6 +257,42 @@ def _over_odds(end: float, b: FloatArray, m: FloatArray, left: FloatArray) -> Fl
         y = node / rate
         total += weight * np.exp((b - 0.5) * np.log(y) - m * np.log1p(y) - (b + 0.5) * np.log1p(left * y))
     return np.log(total / rate)
+
+
+def _wrong_correlation(s: FloatArray, n: FloatArray, b: FloatArray) -> FloatArray:
+    """Log of the factor of the half prior that a correlation of size ``s`` points away from."""
+    m = b + (n - 1) / 2
+    # Beyond the lesser of two bounds on u the integrand is below exp(-REACH): that of cosh, and that of 1 + s tanh.
+    excess = np.expm1(REACH / (2 * m))
+    by_cosh = np.log1p(excess + np.sqrt(excess * (excess + 2)))
+    tangent = np.expm1(REACH / (n - 1.5)) / s
+    by_tangent = np.where(tangent < 1, np.arctanh(np.minimum(tangent, 1)), np.inf)
+    rate = 1 + np.sqrt(m) + s * n
+    log_integral = _in_levels(_over_angles, np.log(np.minimum(by_cosh, by_tangent) * rate), s, n, m, rate)
+    log_factor: FloatArray = np.log(2.0) - special.betaln(0.5, b) + log_integral
+    return log_factor
+
+
+def _over_angles(end: float, s: FloatArray, n: FloatArray, m: FloatArray, rate: FloatArray) -> FloatArray:
+    total = np.zeros_like(s)
+    middle = _hypergeometric(n - 0.5, np.full_like(n, 0.5))
+    for node, weight in _nodes(end, EFFECT_STEP):
+        u = node / rate
+        along = s * np.tanh(u)
+        log_cosh = np.log1p(2 * np.sinh(u / 2) ** 2)
+        density = np.exp(-2 * m * log_cosh - (n - 1.5) * np.log1p(along))
+        total += weight * density * _hypergeometric(n - 0.5, (1 - along) / 2)
+    return np.log(total / middle / rate)
+
+
+def _hypergeometric(c: FloatArray, y: FloatArray) -> FloatArray:
+    """Compute ``2F1(1/2, 1/2; c; y)``, ``c`` from 2.5 on and ``y`` from 0 to 1/2, by its positive series."""
+    total, term, k = np.ones_like(c), np.ones_like(c), 0
+    while term.max() > NEGLIGIBLE_TERM:
+        term *= (k + 0.5) ** 2 / ((c + k) * (k + 1)) * y
+        total += term
+        k += 1
+    return total
 
 
 def _log_beta(b: FloatArray, m: FloatArray) -> FloatArray:
@@ -265,5 +325,6 @@ def _legal_t(t: FloatArray, df: FloatArray, n_effective: FloatArray, scale: Floa
     return positive & finite & manageable
 
 
-def _legal_r(r: FloatArray, n: FloatArray, kappa: FloatArray) -> BoolArray:
-    return (np.abs(r) < 1) & np.isfinite(n) & (n >= LEAST_PAIRS) & (kappa >= LEAST_KAPPA) & (kappa <= LARGEST_KAPPA)
+def _legal_r(r: FloatArray, n: FloatArray, kappa: FloatArray, _: BoolArray) -> BoolArray:
+    pairs = (n >= LEAST_PAIRS) & (n <= MOST_PAIRS)
+    return (np.abs(r) < 1) & pairs & (kappa >= LEAST_KAPPA) & (kappa <= LARGEST_KAPPA)

@@ -62,40 +62,22 @@ def n_one_sample_t(d: ArrayLike, power: ArrayLike, alpha: ArrayLike, *, one_side
     ndarray of float64
         Broadcast shape; nan outside the domain and where no number up to 2^40 serves.
     """
-    return _least(
-        lambda n, d, alpha, one: power_one_sample_t(d, n, alpha, one_sided=one > 0), 2, power, d, alpha, one_sided
-    )
+    return _least_sided(_n_at(power_one_sample_t, 1), 2, power, d, alpha, one_sided)
 
 
 def n_two_sample_t(d: ArrayLike, power: ArrayLike, alpha: ArrayLike, *, one_sided: ArrayLike) -> FloatArray:
     """Least number in each of two equal groups for the pooled t test; see :func:`n_one_sample_t`."""
-    return _least(
-        lambda n, d, alpha, one: power_two_sample_t(d, n, n, alpha, one_sided=one > 0),
-        2,
-        power,
-        d,
-        alpha,
-        one_sided,
-    )
+    return _least_sided(_n_at(power_two_sample_t, 1, 2), 2, power, d, alpha, one_sided)
 
 
 def n_one_sample_z(d: ArrayLike, power: ArrayLike, alpha: ArrayLike, *, one_sided: ArrayLike) -> FloatArray:
     """Least number of units for the z test of one sample, known variance; see :func:`n_one_sample_t`."""
-    return _least(
-        lambda n, d, alpha, one: power_one_sample_z(d, n, alpha, one_sided=one > 0), 1, power, d, alpha, one_sided
-    )
+    return _least_sided(_n_at(power_one_sample_z, 1), 1, power, d, alpha, one_sided)
 
 
 def n_proportions_arcsine(h: ArrayLike, power: ArrayLike, alpha: ArrayLike, *, one_sided: ArrayLike) -> FloatArray:
     """Least number in each of two equal groups for two proportions by arcsines; see :func:`n_one_sample_t`."""
-    return _least(
-        lambda n, h, alpha, one: power_proportions_arcsine(h, n, n, alpha, one_sided=one > 0),
-        1,
-        power,
-        h,
-        alpha,
-        one_sided,
-    )
+    return _least_sided(_n_at(power_proportions_arcsine, 1, 2), 1, power, h, alpha, one_sided)
 
 
 def n_proportions_pooled(
@@ -105,15 +87,7 @@ def n_proportions_pooled(
 
     See :func:`gatecheck.weigh.power.power_proportions_pooled` and :func:`n_one_sample_t`.
     """
-    return _least(
-        lambda n, p1, p2, alpha, one: power_proportions_pooled(p1, p2, n, alpha, one_sided=one > 0),
-        1,
-        power,
-        p1,
-        p2,
-        alpha,
-        one_sided,
-    )
+    return _least_sided(_n_at(power_proportions_pooled, 2), 1, power, p1, p2, alpha, one_sided)
 
 
 def n_non_inferiority_proportions(
@@ -128,48 +102,28 @@ def n_non_inferiority_proportions(
 
 def n_correlation_exact(rho: ArrayLike, power: ArrayLike, alpha: ArrayLike, *, one_sided: ArrayLike) -> FloatArray:
     """Least number of pairs for the t test of a correlation, exact distribution; see :func:`n_one_sample_t`."""
-    return _least(
-        lambda n, rho, alpha, one: power_correlation_exact(rho, n, alpha, one_sided=one > 0),
-        3,
-        power,
-        rho,
-        alpha,
-        one_sided,
-    )
+    return _least_sided(_n_at(power_correlation_exact, 1), 3, power, rho, alpha, one_sided)
 
 
 def n_correlation_fisher(rho: ArrayLike, power: ArrayLike, alpha: ArrayLike, *, one_sided: ArrayLike) -> FloatArray:
     """Least number of pairs for the z test of ``atanh r``, an approximation; see :func:`n_one_sample_t`."""
-    return _least(
-        lambda n, rho, alpha, one: power_correlation_fisher(rho, n, alpha, one_sided=one > 0),
-        4,
-        power,
-        rho,
-        alpha,
-        one_sided,
-    )
+    return _least_sided(_n_at(power_correlation_fisher, 1), 4, power, rho, alpha, one_sided)
 
 
 def n_chi2(w: ArrayLike, df: ArrayLike, power: ArrayLike, alpha: ArrayLike) -> FloatArray:
     """Least number of units in all for the chi-squared test of an effect ``w``; see :func:`n_one_sample_t`."""
-    return _least(lambda n, w, df, alpha: power_chi2(w, n, df, alpha), 1, power, w, df, alpha)
+    return _least(_n_at(power_chi2, 1), 1, power, w, df, alpha)
 
 
 def n_anova(f: ArrayLike, groups: ArrayLike, power: ArrayLike, alpha: ArrayLike) -> FloatArray:
     """Least number in each group for the one-way analysis of an effect ``f``; see :func:`n_one_sample_t`."""
-    return _least(lambda n, f, groups, alpha: power_anova(f, groups, n, alpha), 2, power, f, groups, alpha)
+    return _least(_n_at(power_anova, 2), 2, power, f, groups, alpha)
 
 
 def n_regression(f2: ArrayLike, predictors: ArrayLike, power: ArrayLike, alpha: ArrayLike) -> FloatArray:
     """Least number of units for the F test of all so many predictors at once; see :func:`n_one_sample_t`."""
-    return _least(
-        lambda more, f2, predictors, alpha: power_regression(f2, predictors, more, alpha),
-        1,
-        power,
-        f2,
-        predictors,
-        alpha,
-    ) + (np.asarray(predictors, dtype=np.float64) + 1)
+    error_df = _least(_n_at(power_regression, 2), 1, power, f2, predictors, alpha)
+    return error_df + (np.asarray(predictors, dtype=np.float64) + 1)
 
 
 def events_log_rank(
@@ -179,15 +133,7 @@ def events_log_rank(
 
     See :func:`gatecheck.weigh.power.power_log_rank` and :func:`n_one_sample_t`.
     """
-    return _least(
-        lambda n, ratio, share, alpha, one: power_log_rank(ratio, n, share, alpha, one_sided=one > 0),
-        1,
-        power,
-        hazard_ratio,
-        share,
-        alpha,
-        one_sided,
-    )
+    return _least_sided(_n_at(power_log_rank, 1), 1, power, hazard_ratio, share, alpha, one_sided)
 
 
 def n_equivalence_crossover(
@@ -223,6 +169,49 @@ def n_equivalence_parallel(
     return _even_total(4.0, ratio, cv, power, low, high, alpha)
 
 
+def n_equivalence_at_error(  # noqa: PLR0913  # the study as it stands, and what it is to show
+    standard_error: ArrayLike,
+    df: ArrayLike,
+    n: ArrayLike,
+    groups: ArrayLike,
+    power: ArrayLike,
+    *,
+    low: ArrayLike,
+    high: ArrayLike,
+    alpha: ArrayLike,
+) -> FloatArray:
+    """Least number in each of equal groups at which the absence of an effect is shown, were there none.
+
+    The standard error falls with the root of the number of units, and as many degrees of freedom are added as
+    there are new units.
+
+    Parameters
+    ----------
+    standard_error, df : array_like
+        As of :func:`gatecheck.weigh.equivalence.power_equivalence`, in the study as it stands.
+    n, groups : array_like
+        Units of the study as it stands and number of its groups, above zero.
+    power : array_like
+        Power wanted, strictly between 0 and 1.
+    low, high : array_like
+        Margins, less the value of no effect; one may be infinite.
+    alpha : array_like
+        Level of each of the two one-sided tests.
+
+    Returns
+    -------
+    ndarray of float64
+        Broadcast shape; nan outside the domain and where no number serves.
+    """
+
+    def power_at(each: FloatArray, *columns: FloatArray) -> FloatArray:
+        error, df, n, groups, low, high, alpha = columns
+        total = each * groups
+        return power_equivalence(0.0, error * np.sqrt(n / total), df + (total - n), low=low, high=high, alpha=alpha)
+
+    return _least(power_at, 1, power, standard_error, df, n, groups, low, high, alpha)
+
+
 def _even_total(
     variance: float, ratio: ArrayLike, cv: ArrayLike, power: ArrayLike, *limits: ArrayLike
 ) -> FloatArray:
@@ -249,6 +238,28 @@ def _non_inferiority_power(
         margin,
     )
     return power_z(ncp, alpha, one_sided=True)
+
+
+def _n_at(power_of: PowerAt, *places: int) -> PowerAt:
+    """Put first the number of units that ``power_of`` takes in these places among its columns."""
+
+    def power_at(n: FloatArray, *columns: FloatArray, **side: BoolArray) -> FloatArray:
+        arguments = list(columns)
+        for place in places:
+            arguments.insert(place, n)
+        return power_of(*arguments, **side)
+
+    return power_at
+
+
+def _least_sided(power_at: PowerAt, fewest: int, power: ArrayLike, *columns: ArrayLike) -> FloatArray:
+    """Search for a test whose last column says whether it is one-sided; ``power_at`` takes that by its name."""
+
+    def power_of_side(n: FloatArray, *others: FloatArray) -> FloatArray:
+        *rest, one_sided = others
+        return power_at(n, *rest, one_sided=one_sided > 0)
+
+    return _least(power_of_side, fewest, power, *columns)
 
 
 def _least(power_at: PowerAt, fewest: int, power: ArrayLike, *columns: ArrayLike) -> FloatArray:

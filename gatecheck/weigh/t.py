@@ -7,6 +7,8 @@ With ``q = t^2 + df`` and ``mu = ncp t / sqrt(q)`` the ratio of the non-central 
 
 The expectation is a parabolic cylinder function. Its logarithm has a uniform expansion in ``1/(df + 1/2)``
 whose leading part holds all that is large, so that no density is formed and nothing under- or overflows.
+Most rows are of ordinary size, and have one formula in few passes over memory; a row's result is the same to the
+last bit whichever rows stand beside it.
 
 References
 ----------
@@ -17,36 +19,50 @@ expansion) and 13 (confluent hypergeometric functions; 13.7 large argument).
 from __future__ import annotations
 
 from functools import partial
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any, NamedTuple
 
 import numpy as np
 from scipy import special
 
-from gatecheck.weigh.arrays import piecewise, polynomial, rowwise
-from gatecheck.weigh.polynomials import parabolic_cylinder_terms
+from gatecheck.weigh.arrays import piecewise, rowwise
+from gatecheck.weigh.t_any_size import SAFE_TO_SQUARE, chi_exponent
+from gatecheck.weigh.t_few import few_df_two_sided
+from gatecheck.weigh.t_ordinary import LARGEST, MOST_DF, halves, scratch_for
 from gatecheck.weigh.z import log_lr_z_rows
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Sequence
+    from collections.abc import Callable
 
-    from numpy.typing import ArrayLike
+    from numpy.typing import ArrayLike, NDArray
 
-    from gatecheck.weigh.arrays import BoolArray, FloatArray
+    from gatecheck.weigh.arrays import BoolArray, Column, FloatArray
 
 # Least degrees of freedom and the number of terms that err by less than 3e-14 from there on.
 ORDERS = ((250.0, 4), (120.0, 5), (60.0, 6), (30.0, 8), (20.0, 10), (12.0, 16))
 LEAST_EXPANDED = ORDERS[-1][0]
-LARGE_X = 100.0
-LARGE_TERMS = 20
-SMALL_AX = 0.1
-SMALL_TERMS = 14
+# Ordinary statistics from here on are computed by one formula; fewer degrees of freedom have their own orders.
+COMMON = ORDERS[2]
+UNCOMMON = ORDERS[3:]
+# Up to this share of other rows a formula is computed for all, and once more for those.
+MOST_OTHERS = 0.25
+# So many rows keep what the formula for ordinary statistics holds at once in the second-level cache, and their
+# columns just below the 128 KiB from which on allocators fetch fresh memory every time.
+LONG_CHUNK = 12288
+# Of so many rows the uncommon ones are computed together.
+SPAN = 40 * LONG_CHUNK
 # The downward recursion starts this far above the wanted degrees of freedom, where the expansion holds.
 STEPS_ABOVE = 20
 STEPS_ORDER = 10
 LARGE_MU = 1000.0
 LARGE_MU_TERMS = 8
-# Squares of larger numbers overflow; beyond it the larger part alone decides.
-SAFE_TO_SQUARE = 1e150
+
+
+class Methods(NamedTuple):
+    """Which rows are common, their one formula, given scratch arrays, and what computes the others."""
+
+    is_common: Callable[..., BoolArray]
+    common: Callable[..., FloatArray]
+    other: Callable[..., FloatArray]
 
 
 def log_lr_t(t: ArrayLike, df: ArrayLike, ncp: ArrayLike, *, one_sided: ArrayLike) -> FloatArray:
@@ -69,12 +85,12 @@ def log_lr_t(t: ArrayLike, df: ArrayLike, ncp: ArrayLike, *, one_sided: ArrayLik
     ndarray of float64
         Broadcast shape; nan where an input is not finite or ``df`` is not positive.
     """
-    return rowwise(log_lr_t_rows, _legal, t, df, ncp, one_sided)
+    return _any_rows(AT_NONCENTRALITY, t, df, ncp, one_sided)
 
 
 def observed_t(t: ArrayLike, df: ArrayLike, *, one_sided: ArrayLike) -> FloatArray:
     """Log likelihood ratio at the effect as observed: ``ncp = |t|``, or ``max(t, 0)`` where one-sided."""
-    return rowwise(_observed_rows, _legal_observed, t, df, one_sided)
+    return _any_rows(AS_OBSERVED, t, df, one_sided)
 
 
 def t_from_r(r: ArrayLike, df: ArrayLike) -> FloatArray:
@@ -94,17 +110,118 @@ def r_from_t(t: ArrayLike, df: ArrayLike) -> FloatArray:
 
 def log_lr_t_rows(t: FloatArray, df: FloatArray, ncp: FloatArray, one_sided: BoolArray) -> FloatArray:
     """Compute rows known to be legal."""
-    few = df < LEAST_EXPANDED
-    pieces: list[tuple[BoolArray, Callable[..., FloatArray]]] = [
-        (few & ~one_sided, _few_df_two_sided),
-        (few & one_sided, _few_df_one_sided),
-        (np.isinf(df), lambda t, _, ncp, one_sided: log_lr_z_rows(t, ncp, one_sided)),
-    ]
-    above = np.inf
-    for least, order in ORDERS:
-        pieces.append(((df >= least) & (df < above), _expansion(order)))
-        above = least
+    return _commonest_first(LEGAL_ROWS, t, df, ncp, one_sided)
+
+
+def _any_rows(methods: Methods, *columns: ArrayLike) -> FloatArray:
+    """Broadcast, and compute; what is not legal is not common, and left to the other methods."""
+    arrays = np.broadcast_arrays(*(np.asarray(column) for column in columns))
+    with np.errstate(all="ignore"):
+        return _commonest_first(methods, *map(_flat, arrays)).reshape(arrays[0].shape)
+
+
+def _flat(values: NDArray[Any]) -> Column:
+    """Booleans stay, all else becomes float64."""
+    kept: Column
+    if values.dtype == np.bool_:
+        kept = values.reshape(-1).astype(np.bool_, copy=False)
+    else:
+        kept = values.reshape(-1).astype(np.float64, copy=False)
+    return kept
+
+
+def _commonest_first(methods: Methods, *columns: Column) -> FloatArray:
+    """Compute common rows by one formula, chunk by chunk; the others wait until they are many of each kind."""
+    result = np.empty(columns[0].size)
+    formula = partial(methods.common, scratch_for(min(result.size, LONG_CHUNK)))
+    for first in range(0, result.size, SPAN):
+        left = []
+        for start in range(first, min(first + SPAN, result.size), LONG_CHUNK):
+            rows = slice(start, start + LONG_CHUNK)
+            chunk = [column[rows] for column in columns]
+            common = methods.is_common(*chunk)
+            others = np.flatnonzero(~common)
+            # To compute a few others in vain costs less than to pick out the rest.
+            many = others.size > MOST_OTHERS * common.size
+            result[rows] = piecewise([(common, formula)], *chunk) if many else formula(*chunk)
+            others += start
+            left.append(others)
+        rest = np.concatenate(left)
+        if rest.size:
+            result[rest] = methods.other(*(column.take(rest) for column in columns))
+    return result
+
+
+def _is_common(t: FloatArray, df: FloatArray, ncp: FloatArray, _: BoolArray) -> BoolArray:
+    return _ordinary(t, df, ncp) & (df >= COMMON[0])
+
+
+def _observed_is_common(t: FloatArray, df: FloatArray, _: BoolArray) -> BoolArray:
+    return _ordinary(t, df, t) & (df >= COMMON[0])
+
+
+def _ordinary(t: FloatArray, df: FloatArray, ncp: FloatArray) -> BoolArray:
+    """Whether the halves can be computed."""
+    ordinary = np.abs(t) <= LARGEST
+    if ncp is not t:
+        ordinary &= np.abs(ncp) <= LARGEST
+    ordinary &= df <= MOST_DF
+    return ordinary
+
+
+def _uncommon_rows(t: FloatArray, df: FloatArray, ncp: FloatArray, one_sided: BoolArray) -> FloatArray:
+    # The number of orders that the degrees of freedom suffice for.
+    level = np.zeros(df.shape, np.uint8)
+    for least, _ in ORDERS:
+        level += df >= least
+    ordinary = _ordinary(t, df, ncp)
+    pieces: list[tuple[BoolArray, Callable[..., FloatArray]]] = [(level == 0, _few_df)]
+    for reached, least_and_order in enumerate(reversed(UNCOMMON), start=1):
+        pieces.append((ordinary & (level == reached), partial(_by_halves, least_and_order, None)))
+    if not ordinary.all():
+        normal = np.isinf(df)
+        pieces.append((normal, lambda t, _, ncp, one_sided: log_lr_z_rows(t, ncp, one_sided)))
+        beyond = ~ordinary & ~normal
+        for reached, (_, order) in enumerate(reversed(ORDERS), start=1):
+            pieces.append((beyond & (level == reached), _expansion(order)))
     return piecewise(pieces, t, df, ncp, one_sided)
+
+
+def _common_observed(scratch: FloatArray, t: FloatArray, df: FloatArray, one_sided: BoolArray) -> FloatArray:
+    if one_sided.any():
+        return _by_halves(COMMON, scratch, t, df, _observed_ncp(t, one_sided), one_sided)
+    square = t * t
+    half = square * 0.5
+    even, odd = halves(half, square, df, COMMON, scratch)
+    even -= half
+    even += odd
+    return _folded(even, odd)
+
+
+def _uncommon_observed(t: FloatArray, df: FloatArray, one_sided: BoolArray) -> FloatArray:
+    return _uncommon_rows(t, df, _observed_ncp(t, one_sided), one_sided)
+
+
+def _observed_ncp(t: FloatArray, one_sided: BoolArray) -> FloatArray:
+    return np.where(one_sided & (t < 0), 0.0, np.abs(t))
+
+
+def _by_halves(  # noqa: PLR0917  # where it holds and where it works, then the columns
+    order: tuple[float, int],
+    scratch: FloatArray | None,
+    t: FloatArray,
+    df: FloatArray,
+    ncp: FloatArray,
+    one_sided: BoolArray,
+) -> FloatArray:
+    scratch = scratch_for(t.size) if scratch is None else scratch
+    even, odd = halves(np.abs(t * ncp) * 0.5, t * t, df, order, scratch)
+    even -= ncp * ncp * 0.5
+    towards = even + odd
+    if not one_sided.any():
+        return _folded(towards, odd)
+    directed = np.where((t < 0) ^ (ncp < 0), even - odd, towards)
+    return directed if one_sided.all() else np.where(one_sided, directed, _folded(towards, odd))
 
 
 def _expansion(order: int) -> Callable[..., FloatArray]:
@@ -113,7 +230,7 @@ def _expansion(order: int) -> Callable[..., FloatArray]:
         root_q = _root_q(size_t, df)
         half = size_ncp / root_q
         size_t *= half
-        growth, exponent, even = _chi_exponent(size_t, df, order)
+        growth, exponent, even = chi_exponent(size_t, df, order)
         half *= half
         half *= df
         half *= 0.5
@@ -148,116 +265,14 @@ def _root_q(size_t: FloatArray, df: FloatArray) -> FloatArray:
     return np.maximum(root, size_t, out=root)
 
 
-def _chi_exponent(mu: FloatArray, df: FloatArray, order: int) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Split ``log E exp(mu Y)`` and its mirror, ``mu >= 0``, ``Y`` chi-distributed on ``df + 1``.
-
-    Work goes on in place: arrays made anew cost as much as the arithmetic.
-
-    Returns
-    -------
-    growth, exponent, even : ndarray
-        ``log E exp(mu Y) = growth + even + mu^2/2`` and ``log E exp(-mu Y) = -growth + even``; ``exponent``
-        is half the difference of the two, computed without it.
-    """
-    a = df + 0.5
-    r = np.sqrt(a)
-    r += r
-    np.divide(mu, r, out=r)
-    c = np.minimum(r, SAFE_TO_SQUARE)
-    c *= c
-    c += 1
-    np.sqrt(c, out=c)
-    np.maximum(c, r, out=c)
-    odd, even = _corrections(r / c, a, order)
-    # What c exceeds 1 by: r + excess is what the angle, asinh r, is log1p of.
-    excess = c + 1
-    np.divide(r, excess, out=excess)
-    excess *= r
-    angle = r + excess
-    np.log1p(angle, out=angle)
-    np.log1p(excess, out=excess)
-    excess *= 0.5
-    even -= excess
-    growth = np.add(r, c, out=excess)
-    np.divide(r, growth, out=growth)
-    growth += angle
-    growth *= a
-    growth += odd
-    c *= r
-    c += angle
-    c *= a
-    c += odd
-    return growth, c, even
-
-
-def _corrections(w: FloatArray, a: FloatArray, order: int) -> tuple[FloatArray, FloatArray]:
-    """Sums of the odd and of the even terms ``P_k(w) / a^k``; ``w`` is overwritten."""
-    terms = parabolic_cylinder_terms(order)
-    y = w * w
-    inverse = 1 / a
-    step = inverse * inverse
-    odd, even = (
-        _horner([terms[k - 1] for k in range(first, 0, -2)], y, step)
-        for first in (order - 1 + order % 2, order - order % 2)
-    )
-    w *= inverse
-    odd *= w
-    y *= step
-    even *= y
-    return odd, even
-
-
-def _horner(terms: list[Sequence[float]], y: FloatArray, step: FloatArray) -> FloatArray:
-    """Sum of polynomials in ``y`` times falling powers of ``step``."""
-    total = polynomial(terms[0], y)
-    term = np.empty_like(total)
-    for coefficients in terms[1:]:
-        total *= step
-        total += polynomial(coefficients, y, out=term)
-    return total
+def _few_df(t: FloatArray, df: FloatArray, ncp: FloatArray, one_sided: BoolArray) -> FloatArray:
+    return piecewise([(~one_sided, _few_df_two_sided), (one_sided, _few_df_one_sided)], t, df, ncp, one_sided)
 
 
 def _few_df_two_sided(t: FloatArray, df: FloatArray, ncp: FloatArray, _: BoolArray) -> FloatArray:
     size_t, size_ncp = np.abs(t), np.abs(ncp)
     root_q = _root_q(size_t, df)
-    mu = size_ncp * (size_t / root_q)
-    x = mu * mu / 2
-    a = (df + 1) / 2
-    large, small = x > LARGE_X, a * x < SMALL_AX
-    return piecewise(
-        [(large, _large_argument), (small, _small_argument), (~large & ~small, _middle_argument)],
-        a,
-        mu,
-        size_ncp,
-        size_ncp / root_q,
-    )
-
-
-def _large_argument(a: FloatArray, mu: FloatArray, _ncp: FloatArray, ncp_over_root_q: FloatArray) -> FloatArray:
-    log_x = 2 * np.log(mu) - np.log(2.0)
-    inverse = np.exp(-log_x)
-    total, term = np.ones_like(a), np.ones_like(a)
-    for s in range(LARGE_TERMS):
-        term *= (0.5 - a + s) * (1 - a + s) / (s + 1) * inverse
-        total += term
-    lead = -(a - 0.5) * ncp_over_root_q * ncp_over_root_q
-    scale: FloatArray = special.gammaln(0.5) - special.gammaln(a)
-    log_lr: FloatArray = lead + scale + (a - 0.5) * log_x + np.log(total)
-    return log_lr
-
-
-def _small_argument(a: FloatArray, mu: FloatArray, ncp: FloatArray, _: FloatArray) -> FloatArray:
-    x = mu * mu / 2
-    total, term = np.zeros_like(a), np.ones_like(a)
-    for s in range(SMALL_TERMS):
-        term *= (a + s) * x / ((0.5 + s) * (s + 1))
-        total += term
-    return -0.5 * ncp * ncp + np.log1p(total)
-
-
-def _middle_argument(a: FloatArray, mu: FloatArray, ncp: FloatArray, _: FloatArray) -> FloatArray:
-    log_lr: FloatArray = -0.5 * ncp * ncp + np.log(special.hyp1f1(a, 0.5, mu * mu / 2))
-    return log_lr
+    return few_df_two_sided(size_ncp * (size_t / root_q), df, size_ncp, size_ncp / root_q)
 
 
 def _few_df_one_sided(t: FloatArray, df: FloatArray, ncp: FloatArray, one_sided: BoolArray) -> FloatArray:
@@ -300,7 +315,7 @@ def _log_laplace(mu: FloatArray, df: FloatArray) -> FloatArray:
 
 
 def _log_laplace_expanded(mu: FloatArray, df: FloatArray, order: int = STEPS_ORDER) -> FloatArray:
-    growth, _, even = _chi_exponent(mu, df, order)
+    growth, _, even = chi_exponent(mu, df, order)
     return even - growth
 
 
@@ -316,12 +331,6 @@ def _log_laplace_large(mu: FloatArray, df: FloatArray) -> FloatArray:
     return logarithm
 
 
-def _observed_rows(t: FloatArray, df: FloatArray, one_sided: BoolArray) -> FloatArray:
-    ncp = np.abs(t)
-    ncp[one_sided & (t < 0)] = 0.0
-    return log_lr_t_rows(t, df, ncp, one_sided)
-
-
 def _positive(df: FloatArray) -> BoolArray:
     return np.isfinite(df) & (df > 0)
 
@@ -332,3 +341,8 @@ def _legal(t: FloatArray, df: FloatArray, ncp: FloatArray, _: BoolArray) -> Bool
 
 def _legal_observed(t: FloatArray, df: FloatArray, _: BoolArray) -> BoolArray:
     return np.isfinite(t) & (df > 0)
+
+
+LEGAL_ROWS = Methods(_is_common, partial(_by_halves, COMMON), _uncommon_rows)
+AT_NONCENTRALITY = LEGAL_ROWS._replace(other=partial(rowwise, _uncommon_rows, _legal))
+AS_OBSERVED = Methods(_observed_is_common, _common_observed, partial(rowwise, _uncommon_observed, _legal_observed))

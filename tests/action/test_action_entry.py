@@ -79,7 +79,9 @@ def test_the_inputs_become_options(job: Job) -> None:
 
     given = job.arguments()
     assert given[:7] == ["-I", "-m", "gatecheck", "weigh", "--policy=--help", "--base=--version", "--only-changed"]
-    assert given[-4:] == ["--write", "annotations=-", "--", "-results"]
+    assert "annotations=-" in given
+    assert given[-3].endswith("/verdict.html")
+    assert given[-2:] == ["--", "-results"]
 
 
 def test_outputs_are_short_tokens(job: Job) -> None:
@@ -89,6 +91,7 @@ def test_outputs_are_short_tokens(job: Job) -> None:
 
     outputs = job.outputs()
     assert Path(outputs.pop("report")).name == "verdict.json"
+    assert Path(outputs.pop("page")).name == "verdict.html"
     counts = {"claims": "3", "stands": "1", "falls-short": "1", "undecided": "0", "waived": "1"}
     assert outputs == {"verdict": "falls-short", "exit": "1", **counts}
 

@@ -59,7 +59,7 @@ def test_the_inputs_are_the_options_of_the_command() -> None:
 
 def test_every_output_is_one_of_the_step() -> None:
     action = _load(ACTION)
-    written = ["verdict", "exit", "claims", "stands", "falls-short", "undecided", "waived", "report"]
+    written = ["verdict", "exit", "claims", "stands", "falls-short", "undecided", "waived", "report", "page"]
 
     assert {name: output["value"] for name, output in action["outputs"].items()} == {
         name: f"${{{{ steps.weigh.outputs.{name} }}}}" for name in written
@@ -140,7 +140,7 @@ def merge_request(tmp_path: Path) -> tuple[Path, str]:
 
 
 def test_the_gitlab_job_judges_by_the_base(merge_request: tuple[Path, str]) -> None:
-    """The base is fetched, since the checkout lacks it; both artifacts are there although the job fails."""
+    """The base is fetched, since the checkout lacks it; all artifacts are there although the job fails."""
     checkout, base = merge_request
 
     done = _gitlab(checkout, base)
@@ -148,7 +148,8 @@ def test_the_gitlab_job_judges_by_the_base(merge_request: tuple[Path, str]) -> N
     assert done.returncode == 1
     assert done.stdout.startswith(f"This checkout lacks the base commit {base}; fetching it alone.\n")
     assert "the policy allows 5 %" in done.stdout
-    for path in _load(GITLAB)["gatecheck"]["artifacts"]["paths"]:
+    artifacts = _load(GITLAB)["gatecheck"]["artifacts"]
+    for path in (*artifacts["paths"], *artifacts["reports"].values()):
         assert "drainage/earthworm-biomass" in (checkout / path).read_text(encoding="utf-8")
     assert _load(GITLAB)["gatecheck"]["artifacts"]["when"] == "always"
 

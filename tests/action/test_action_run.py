@@ -197,10 +197,10 @@ def test_the_build_fails_by_its_last_step(build: Build) -> None:
 def test_outputs(build: Build, name: str, verdict: str, status: str, counts: tuple[str, ...]) -> None:
     outputs = build.steps[name].outputs
 
-    report = outputs.pop("report")
+    report, page = outputs.pop("report"), outputs.pop("page")
     names = ("claims", "stands", "falls-short", "undecided", "waived")
     assert outputs == {"verdict": verdict, "exit": status, **dict(zip(names, counts, strict=True))}
-    assert report.endswith("/verdict.json")
+    assert (report[-13:], page[-13:]) == ("/verdict.json", "/verdict.html")
 
 
 def test_the_example_falls_short(build: Build) -> None:

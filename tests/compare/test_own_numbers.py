@@ -9,9 +9,9 @@ from typing import Any
 import numpy as np
 import pytest
 from scipy import stats
-from support import Answer, Document, drainage, judge
+from support import DRAINAGE, Answer, Document, drainage, judge
 
-BARE = {"estimate": ..., "alternative": ...}
+BARE = {"estimate": ..., "alternative": ..., "sample": {"unit": "plot"}}
 
 
 def outcome(tmp_path: Path, record: Document) -> tuple[str, str]:
@@ -21,7 +21,7 @@ def outcome(tmp_path: Path, record: Document) -> tuple[str, str]:
 
 
 def with_test(**test: Any) -> Document:
-    """The drainage record with another test and no estimate."""
+    """The drainage record with another test, no estimate and no sizes."""
     return drainage(**BARE, test={"name": "a test", **test})
 
 
@@ -52,7 +52,7 @@ def with_test(**test: Any) -> Document:
         {"p": 0.5},
     ],
 )
-def with_test_that_agree_raise_no_alarm(tmp_path: Path, test: Document) -> None:
+def test_tests_that_agree_raise_no_alarm(tmp_path: Path, test: Document) -> None:
     """Within rounding, of any side and kind; a p of another kind is not set against the statistic."""
     assert outcome(tmp_path, with_test(**test))[0] == "met"
 
@@ -217,6 +217,7 @@ def test_a_one_sided_p_is_doubled_before_it_is_set_against_an_interval(tmp_path:
             "standard_error": 1.0,
             "interval": {"level": 0.95, "low": -0.233, "high": 3.793},
         },
+        sample={"unit": "plot"},
     )
 
     assert outcome(tmp_path, record) == ("met", "")
@@ -238,6 +239,13 @@ def _two_groups(generator: np.random.Generator) -> Document:
             "unit": "1",
             "standard_error": difference / result.statistic,
             "interval": {"level": 0.95, "low": interval.low, "high": interval.high},
+        },
+        sample={
+            "unit": "plot",
+            "groups": [
+                {"name": name, "n": each.size, "mean": float(each.mean()), "sd": float(each.std(ddof=1))}
+                for name, each in (("first", first), ("second", second))
+            ],
         },
     )
 
@@ -276,16 +284,18 @@ def test_no_real_result_raises_an_alarm_exact_or_rounded(tmp_path: Path, real_re
 
 
 def _rounded(record: Document, digits: int) -> Document:
-    """The record with every figure of test and estimate as a text of so many significant digits."""
+    """The record with every figure of test, estimate and groups as a text of so many significant digits."""
 
     def rounded(value: Any) -> Any:
         if isinstance(value, dict):
             return {key: each if key == "level" else rounded(each) for key, each in value.items()}
+        if isinstance(value, list):
+            return [rounded(each) for each in value]
         if not isinstance(value, float):
             return value
         return re.sub(r"e([+-])0*", r"e\1", f"{value:#.{digits}g}").replace(".e", "e").rstrip(".")
 
-    return {**record, "test": rounded(record["test"]), "estimate": rounded(record["estimate"])}
+    return {**record, **{part: rounded(record[part]) for part in ("test", "estimate", "sample")}}
 
 
 @pytest.mark.parametrize(
@@ -299,7 +309,7 @@ def test_a_figure_changed_beyond_rounding_is_caught(
     part, name = field.split("__")
     faulty = [
         drainage(**{
-            **{key: record[key] for key in ("id", "test", "estimate")},
+            **{key: record[key] for key in ("id", "test", "estimate", "sample")},
             part: {**record[part], name: record[part][name] * factor},
         })
         for record in real_results
@@ -309,8 +319,8 @@ def test_a_figure_changed_beyond_rounding_is_caught(
     assert short_of(judge(tmp_path, *faulty)) == {record["id"] for record in faulty}
 
 
-def test_several_disagreements_are_told_in_two_sentences(tmp_path: Path) -> None:
-    """One for what was found and is wanted, one for what to do about all of it."""
+def test_several_disagreements_are_told_in_three_sentences(tmp_path: Path) -> None:
+    """What was found and is wanted, what to do about all of it, and what to rule out first."""
     record = drainage(
         test__p="0.34",
         estimate={
@@ -320,13 +330,17 @@ def test_several_disagreements_are_told_in_two_sentences(tmp_path: Path) -> None
             "standard_error": 1.9,
             "interval": {"level": 0.95, "low": 0.34, "high": 8.06},
         },
+        sample=DRAINAGE["sample"],
     )
 
     said = judge(tmp_path, record).rule("numbers-agree")
 
-    assert said["message"].count("is reported") == 2
+    assert said["message"].count("is reported") == 4
+    assert said["message"].count(". ") + said["remedy"].count(". ") == 1
     assert said["remedy"] == (
-        "Take statistic, df and p from the same run; an adjusted or resampled p is named by p_kind; take estimate "
-        "and interval from the same run and on the same scale; take estimate and statistic from the same test, and "
-        "say in estimate.null what it is compared with."
+        "Take statistic, df and p from the same run, and name the kind of p by p_kind; take estimate and interval "
+        "from the same run and on the same scale; take estimate and statistic from the same test, and say in "
+        "estimate.null what it is compared with; take estimate and means from the same units, and give covariates "
+        "if there are any. Rule out first that p is adjusted for several tests, from a permutation or exact, it is "
+        "one-sided, a correction was made to p alone or it is a profile or bootstrap interval."
     )

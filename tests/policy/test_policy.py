@@ -10,7 +10,7 @@ from support import POLICY, Document, changed, drainage
 from gatecheck.model.record import Record
 from gatecheck.policies import read_own_policy
 from gatecheck.policy import STARTING_POLICY, Applied, Policy
-from gatecheck.rules import false_positive_risk
+from gatecheck.rules import RULES, false_positive_risk
 from gatecheck.schema.records import read_record
 
 FPR = "false-positive-risk"
@@ -47,8 +47,7 @@ def applied(overrides: list[Document], path: str = "results/a.json", **record: A
             (
                 "rules.false-positive-rsk",
                 "is no known rule",
-                "the nearest known one is false-positive-risk (known: false-positive-risk, family, "
-                "looks, no-effect-support, numbers-agree, practical-size, prior-needed, reported-in-full, robust)",
+                "the nearest known one is false-positive-risk (known: " + ", ".join(sorted(rule.name for rule in RULES)) + ")",
             ),
         ),
         (
@@ -97,11 +96,11 @@ def test_a_document_that_is_no_policy_is_one_fault() -> None:
 def test_a_rule_that_is_off_needs_no_other_setting_and_says_nothing() -> None:
     assert faults_of({**POLICY, "rules": {FPR: {"enforce": "off"}}}) == []
     asked = applied([{"match": {"id": "drainage/*"}, "rules": {FPR: {"enforce": "off"}}}])
-    assert sorted(asked.rules) == ["no-effect-support", "numbers-agree"]
+    assert sorted(asked.rules) == ["no-effect-support", "numbers-agree", "planned-split", "screen"]
 
 
 def test_a_rule_that_is_not_named_is_off_save_those_always_on() -> None:
-    assert sorted(applied([]).rules) == [FPR, "no-effect-support", "numbers-agree"]
+    assert sorted(applied([]).rules) == [FPR, "no-effect-support", "numbers-agree", "planned-split", "screen"]
 
 
 @pytest.mark.parametrize(
@@ -167,6 +166,8 @@ def test_the_starting_policy_notes_what_is_exploratory() -> None:
         FPR: "note",
         "no-effect-support": "block",
         "numbers-agree": "block",
+        "planned-split": "block",
+        "screen": "block",
         "prior-needed": "note",
         "reported-in-full": "block",
     }

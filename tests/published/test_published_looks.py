@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 from math import log, sqrt
-from typing import TYPE_CHECKING
 
 import numpy as np
 import pytest
 from scipy import special
+from weigh.held import Array, assert_computed, assert_printed
 
 from gatecheck.weigh.looks import (
     drift_needed,
@@ -27,11 +27,6 @@ from gatecheck.weigh.spending import (
     spent_pocock,
 )
 
-if TYPE_CHECKING:
-    from numpy.typing import NDArray
-
-    Array = NDArray[np.float64]
-
 POCOCK, OBRIEN_FLEMING = BoundaryKind.POCOCK, BoundaryKind.OBRIEN_FLEMING
 TWO_TO_TEN = range(2, 11)
 FIFTHS = np.arange(1, 6) / 5
@@ -39,11 +34,6 @@ FIFTHS = np.arange(1, 6) / 5
 
 def equal(looks: int) -> Array:
     return np.arange(1, looks + 1) / looks
-
-
-def close_to_print(values: Array | float, printed: list[float] | float, digits: int) -> None:
-    """Assert that rounding to so many decimals gives the printed figure, give or take a rounding edge."""
-    np.testing.assert_allclose(values, printed, rtol=0, atol=0.5001 * 10.0**-digits)
 
 
 # Armitage, P., McPherson, C. K. & Rowe, B. C. (1969). Repeated significance tests on accumulating data. JRSS A
@@ -84,7 +74,7 @@ def test_type_one_error_of_unplanned_looks(
 
     assert error == pytest.approx(computed, abs=1.5e-12)
     if printed is not None:
-        close_to_print(error, printed, digits)
+        assert_printed(error, printed, digits)
 
 
 # COMPUTED with 400 nodes a look and once more by another rule, 16 digits (12 for the last two).
@@ -134,8 +124,8 @@ def test_unplanned_looks_to_all_digits(looks: int, error: float, tolerance: floa
 def test_obrien_fleming_constants(alpha: float, constants: list[float], printed: list[float]) -> None:
     last = np.array([boundary(OBRIEN_FLEMING, equal(looks), alpha)[-1] for looks in TWO_TO_TEN])
 
-    np.testing.assert_allclose(last, constants, rtol=0, atol=2e-11)
-    close_to_print(last, printed, 3)
+    assert_computed(last, constants)
+    assert_printed(last, printed, 3)
 
 
 # Same source, Table 2.1. K = 2 SEEN (2.178 in Lakens 2022, chapter 10); 12, 15 and 20 looks recalled; others
@@ -198,8 +188,8 @@ def test_pocock_nominal_levels(looks: int, level: float, tolerance: float) -> No
 def test_obrien_fleming_bounds(bounds: list[float], printed: list[float]) -> None:
     found = boundary(OBRIEN_FLEMING, equal(len(bounds)), 0.05)
 
-    np.testing.assert_allclose(found, bounds, rtol=0, atol=2e-11)
-    close_to_print(found, printed, 3)
+    assert_computed(found, bounds)
+    assert_printed(found, printed, 3)
 
 
 # rpact help page getDesignGroupSequential and its tests, github.com/rpact-com/rpact commit dd0f6ea3. SEEN:
@@ -208,12 +198,12 @@ def test_one_sided_obrien_fleming_bounds() -> None:
     bounds = boundary(OBRIEN_FLEMING, equal(3), 0.025, sides=1)
     spent = np.cumsum(exit_probabilities(bounds, equal(3), sides=1))
 
-    np.testing.assert_allclose(bounds, [3.47109144404, 2.4544322982, 2.0040355796], rtol=0, atol=2e-11)
+    assert_computed(bounds, [3.47109144404, 2.4544322982, 2.0040355796])
     np.testing.assert_allclose(spent, [0.000259173724093, 0.00716005942053, 0.025], rtol=0, atol=1e-13)
-    close_to_print(spent, [0.0002592, 0.0071601, 0.025], 7)
+    assert_printed(spent, [0.0002592, 0.0071601, 0.025], 7)
     levels = nominal_p(bounds, sides=1)
     np.testing.assert_allclose(levels, [0.000259173724093, 0.00705536162229, 0.022533124624], rtol=0, atol=1e-13)
-    close_to_print(levels, [0.0002592, 0.0070554, 0.0225331], 7)
+    assert_printed(levels, [0.0002592, 0.0070554, 0.0225331], 7)
 
 
 def inflation(kind: BoundaryKind, looks: int, alpha: float, wanted: float) -> float:
@@ -278,7 +268,7 @@ def inflation(kind: BoundaryKind, looks: int, alpha: float, wanted: float) -> fl
 def test_inflation_factors(kind: BoundaryKind, alpha: float, wanted: float, factors: list[float]) -> None:
     found = [inflation(kind, looks, alpha, wanted) for looks in TWO_TO_TEN]
 
-    np.testing.assert_allclose(found, factors, rtol=0, atol=2e-11)
+    assert_computed(found, factors)
 
 
 # Printed beside them, SEEN in the same copies, K = 2..10.
@@ -293,7 +283,7 @@ def test_inflation_factors(kind: BoundaryKind, alpha: float, wanted: float, fact
     ],
 )
 def test_printed_inflation_factors(kind: BoundaryKind, alpha: float, wanted: float, printed: list[float]) -> None:
-    close_to_print(np.array([inflation(kind, looks, alpha, wanted) for looks in TWO_TO_TEN]), printed, 3)
+    assert_printed(np.array([inflation(kind, looks, alpha, wanted) for looks in TWO_TO_TEN]), printed, 3)
 
 
 # SAS/STAT 12.1 User's Guide, SEQDESIGN procedure, example of two-sided Pocock and O'Brien-Fleming designs. SEEN:
@@ -350,7 +340,7 @@ def test_obrien_fleming_type_spending_half_of_alpha_on_each_side() -> None:
     exactly_spent = [1.07774252589e-6, 0.000788303513382, 0.00761612662198, 0.0244235806929, 0.05]
     nominal = [1.07774252589e-6, 0.00078789715311, 0.0073560586254, 0.0220319407289, 0.0422517441826]
 
-    np.testing.assert_allclose(bounds, exact, rtol=0, atol=2e-11)
+    assert_computed(bounds, exact)
     np.testing.assert_allclose(bounds, [4.8769, 3.3569, 2.6803, 2.2898, 2.0310], rtol=0, atol=2e-4)
     np.testing.assert_allclose(spent, exactly_spent, rtol=1e-11, atol=2e-16)
     np.testing.assert_allclose(spent, [1.0777e-06, 7.8830e-04, 7.6161e-03, 2.4424e-02, 0.05], rtol=1e-4)
@@ -370,10 +360,10 @@ def test_obrien_fleming_type_spending_of_the_whole_alpha_in_the_one_sided_formul
 def test_two_looks_of_obrien_fleming_type() -> None:
     bounds = boundary(BoundaryKind.SPENDING_OBRIEN_FLEMING, [0.5, 1], 0.05)
 
-    np.testing.assert_allclose(bounds, [2.96258804273, 1.96859564059], rtol=0, atol=2e-11)
+    assert_computed(bounds, [2.96258804273, 1.96859564059])
     np.testing.assert_allclose(nominal_p(bounds), [0.00305064551598, 0.0489995435844], rtol=0, atol=1e-12)
-    close_to_print(bounds, [2.963, 1.969], 3)
-    close_to_print(nominal_p(bounds), [0.0031, 0.0490], 4)
+    assert_printed(bounds, [2.963, 1.969], 3)
+    assert_printed(nominal_p(bounds), [0.0031, 0.0490], 4)
 
 
 # README of SeqBounds.jl, github.com/PharmCat/SeqBounds.jl. SEEN: 3.74955, 2.53993, 2.01604, 1.72014 and 8.85754e-5,
@@ -383,7 +373,7 @@ def test_one_sided_obrien_fleming_type_spending() -> None:
     spent = np.cumsum(exit_probabilities(bounds, equal(4), sides=1))
 
     exact = [3.74955183721, 2.53994257305, 2.01606985129, 1.72017706493]
-    np.testing.assert_allclose(bounds, exact, rtol=0, atol=2e-11)
+    assert_computed(bounds, exact)
     np.testing.assert_allclose(bounds, [3.74955, 2.53993, 2.01604, 1.72014], rtol=0, atol=5e-5)
     np.testing.assert_allclose(spent, [8.85754383213e-5, 0.00557459668078, 0.0236251213176, 0.05], rtol=1e-11)
 
@@ -410,7 +400,7 @@ def test_pocock_type_spending(
     found = boundary(BoundaryKind.SPENDING_POCOCK, information, 0.05)
 
     if bounds is not None:
-        np.testing.assert_allclose(found, bounds, rtol=0, atol=2e-11)
+        assert_computed(found, bounds)
     if levels is not None:
         np.testing.assert_allclose(nominal_p(found), levels, rtol=0, atol=2e-12)
     assert float(exit_probabilities(found, information)[0]) == pytest.approx(
@@ -439,7 +429,7 @@ def test_spending_chosen_by_hand() -> None:
     ],
 )
 def test_power_family_of_spending(exponent: float, bounds: list[float]) -> None:
-    np.testing.assert_allclose(spending_boundary(0.05 * FIFTHS**exponent, FIFTHS), bounds, rtol=0, atol=2e-11)
+    assert_computed(spending_boundary(0.05 * FIFTHS**exponent, FIFTHS), bounds)
 
 
 # ldbounds vignette, SEEN: 3.455209 (coarse grid) for 90 % power, with the bounds of alpha t at five equal looks.
@@ -466,11 +456,11 @@ def test_hwang_shih_decani_spending() -> None:
     exits = exit_probabilities(bounds, FIFTHS, sides=1)
 
     exact = [3.25266848844, 2.98604594587, 2.69165744742, 2.37366698578, 2.0253214094]
-    np.testing.assert_allclose(bounds, exact, rtol=0, atol=2e-11)
-    close_to_print(bounds, [3.25, 2.99, 2.69, 2.37, 2.03], 2)
+    assert_computed(bounds, exact)
+    assert_printed(bounds, [3.25, 2.99, 2.69, 2.37, 2.03], 2)
     each = [0.000571633968586, 0.0012721947932, 0.00283132158129, 0.00630122206089, 0.014023627596]
     np.testing.assert_allclose(exits, each, rtol=1e-10)
-    close_to_print(exits, [0.0006, 0.0013, 0.0028, 0.0063, 0.0140], 4)
+    assert_printed(exits, [0.0006, 0.0013, 0.0028, 0.0063, 0.0140], 4)
 
 
 # Haybittle-Peto with z = 3 before the last look. COMPUTED after Jennison & Turnbull (2000): final z, and the

@@ -15,6 +15,16 @@ from render.sample_verdicts import BY_NAME, DRAINAGE, FALLS_SHORT  # found by th
 from gatecheck.render import RENDERERS, account, explain
 
 EXPECTED = Path(__file__).parent / "expected"
+ENDINGS = {
+    "summary": "md",
+    "annotations": "txt",
+    "azure-annotations": "txt",
+    "sarif": "json",
+    "junit": "xml",
+    "junit-strict": "xml",
+    "code-quality": "json",
+    "tap": "txt",
+}
 
 
 def texts() -> dict[str, str]:
@@ -22,8 +32,8 @@ def texts() -> dict[str, str]:
     made = {"explain-drainage.txt": explain(FALLS_SHORT, DRAINAGE.id, 80)}
     for name, verdict in BY_NAME.items():
         made |= {f"account-{name}-{width}.txt": account(verdict, width) for width in (80, 140)}
-        made[f"summary-{name}.md"] = RENDERERS["summary"](verdict)
-        made[f"annotations-{name}.txt"] = RENDERERS["annotations"](verdict)
+        for form, ending in ENDINGS.items():
+            made[f"{form}-{name}.{ending}"] = RENDERERS[form](verdict)
     return made
 
 

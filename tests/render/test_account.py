@@ -11,6 +11,7 @@ from gatecheck.model.found import Found, Scan
 from gatecheck.model.record import Record
 from gatecheck.model.verdict import Figures, Finding, Judged, Place, Verdict
 from gatecheck.render import account, explain, survey
+from gatecheck.render.layout import paragraph
 
 EXPECTED = Path(__file__).parent / "expected"
 
@@ -49,6 +50,43 @@ def test_of_many_records_without_a_claim_five_are_named() -> None:
     many = tuple(Judged(f"r/{n}", Place("r.json", n), None, "t = 1", None, ()) for n in range(1, 8))
     text = account(Verdict(POLICY, many), 80)
     assert "Reported without a claim: 7 results (r/1, r/2, r/3, r/4, r/5 and 2 more).\n" in text
+
+
+def test_what_is_noted_and_what_is_waived_stands_below_the_id_of_its_record() -> None:
+    findings = (
+        Finding("robust", "short", "note", message="found 21 % at prior 0.2"),
+        Finding("fresh", "undecided", "note", message="no input is named"),
+        Finding("family", "waived", "block", message="found 3 tests; waived by the field board"),
+    )
+    one = Judged("a/b", Place("a.json"), "It grows.", "t(9) = 3", None, findings)
+    assert (
+        "Waived\n\n"
+        "  a/b\n"
+        "    Family: found 3 tests; waived by the field board.\n\n"
+        "Noted, without effect on the verdict\n\n"
+        "  a/b\n"
+        "    Robust: found 21 % at prior 0.2.\n"
+        "    Fresh: no input is named.\n\n"
+    ) in account(Verdict(POLICY, (one,)), 60)
+
+
+def test_records_with_blank_lines_in_them_are_two_apart() -> None:
+    text = account(FALLS_SHORT, 80)
+    assert "only.\n\n  Why      Prior needed" in text
+    assert "suggestive.\n\n\n  weeds/cover\n" in text
+
+
+@pytest.mark.parametrize("whole", ["t(34) = 2.21", "17 %", "-e p ln p"])
+def test_what_belongs_together_is_not_broken_across_lines(whole: str) -> None:
+    words = " ".join(f"{'x' * length} {whole}" for length in range(1, 30))
+    lines = paragraph(words, 40).splitlines()
+    assert sum(line.count(whole) for line in lines) == 29
+
+
+def test_the_note_of_the_figures_begins_as_a_sentence() -> None:
+    figures = Figures("bound", 1.0, 0.5, "policy", 0.1, 0.2, "errs in favour of the claim.")
+    one = Judged("a", Place("a.json"), "It grows.", "t(9) = 3", figures, ())
+    assert "  Note     Errs in favour of the claim.\n" in explain(Verdict(POLICY, (one,)), "a", 80)
 
 
 def test_explain() -> None:

@@ -3,13 +3,30 @@
 from __future__ import annotations
 
 import html
+import json
 import re
+from xml.etree import ElementTree as ET
 
 import pytest
+import yaml
 from hypothesis import given
 from hypothesis import strategies as st
 
-from gatecheck.render.text import command_data, command_property, cut, fitted, markdown, plain
+from gatecheck.render.text import (
+    command_data,
+    command_property,
+    cut,
+    fitted,
+    json_text,
+    log_message,
+    log_property,
+    markdown,
+    plain,
+    point_text,
+    sarif_message,
+    uri,
+    xml,
+)
 
 ANY_TEXT = st.text(st.characters(exclude_categories=()), max_size=60) | st.text(
     st.sampled_from("#[]:%@w. \n\\|`*-+=1vso"), max_size=20
@@ -89,6 +106,47 @@ def test_command_escapes() -> None:
     """Data: percent, CR, LF. Properties: colon and comma too (SOURCE: workflow commands, the runner's toolkit)."""
     assert command_data("100 %,\r\na:b%0A") == "100 %25,%0D%0Aa:b%250A"
     assert command_property("100 %,\r\na:b") == "100 %25%2C%0D%0Aa%3Ab"
+
+
+def test_xml_escapes() -> None:
+    assert xml("<a href='x'>&amp;\"]]>\x00\x1b\ufffe") == (
+        "&lt;a href=&#39;x&#39;&gt;&amp;amp;&quot;]]&gt;{U+0000}{U+001B}{U+FFFE}"
+    )
+
+
+@given(ANY_TEXT)
+def test_xml_holds_any_text(text: str) -> None:
+    """A parser that refuses what XML 1.0 cannot hold gives the cleaned text back, from both places for a text."""
+    element = ET.fromstring(f'<a b="{xml(text)}">{xml(text)}</a>'.encode())  # noqa: S314  # our own
+    assert element.attrib["b"] == (element.text or "") == plain(text)
+
+
+@given(ANY_TEXT)
+def test_json_and_yaml_read_one_quoted_text_alike(text: str) -> None:
+    quoted = json_text(text)
+    assert json.loads(quoted) == yaml.safe_load(f"- a: {quoted}")[0]["a"] == plain(text)
+    assert len(quoted.splitlines()) == 1
+
+
+def test_a_point_holds_no_mark_of_a_directive() -> None:
+    assert point_text("plot #2 \\# SKIP") == "plot {U+0023}2 {U+005C}{U+0023} SKIP"
+
+
+def test_logging_commands_escape_what_ends_a_property_and_take_apart_what_is_no_escape() -> None:
+    """SOURCE: the logging commands of Azure Pipelines; the escape of the percent sign is from memory."""
+    assert log_message("5 %; a]b %0A %5d %azp25 %0\n") == "5 %; a]b % 0A % 5d % azp25 %0"
+    assert log_property("a;b]c %3B") == "a%3Bb%5Dc % 3B"
+
+
+def test_a_message_of_sarif_has_no_placeholder_and_no_link() -> None:
+    assert sarif_message("{0} [a](1) \x1b") == "{{0}} [a] (1) {{U+001B}}"
+
+
+def test_a_path_becomes_a_uri_byte_by_byte() -> None:
+    assert uri("a b/ü#?.json") == "a%20b/%C3%BC%23%3F.json"
+    assert uri("/a") == "%2Fa"
+    assert uri("\udcff") == "%FF"
+    assert uri("\ud800") == "%ED%A0%80"
 
 
 def test_cut_keeps_what_fits() -> None:

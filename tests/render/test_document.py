@@ -65,6 +65,8 @@ COUNTS = closed(
         ["claims", "stands", "falls-short", "waived", "undecided", "reported", "reported-falling-short"], COUNT
     )
 )
+COMMIT = {"type": ["string", "null"], "pattern": "^([0-9a-f]{40}|[0-9a-f]{64})$"}
+CHANGE = closed(id=TEXT, change={"enum": ["strengthened", "new", "changed", "withdrawn"]}, at=PLACE, told=TEXT)
 CONTRACT = closed(
     gatecheck={"const": "verdict/1"},
     verdict={"enum": ["stands", "falls-short", "cannot-judge"]},
@@ -75,6 +77,11 @@ CONTRACT = closed(
     reported={"type": "array", "items": JUDGED},
     problems={"type": "array", "items": closed(at=PLACE, message=TEXT, advice=TEXT)},
     notes={"type": "array", "items": TEXT},
+    changes={"type": "array", "items": CHANGE},
+    plans={"type": "array", "items": closed(path=TEXT, digest=TEXT)},
+    base=COMMIT,
+    head=COMMIT,
+    tool=closed(name={"const": "gatecheck"}, version=TEXT),
 )
 
 

@@ -89,6 +89,16 @@ def test_an_override_may_widen_the_prior(tmp_path: Path) -> None:
             lambda: default_prior.log_bf_r(0.4, 30, 1.0),
         ),
         (
+            {"test": {"name": "Pearson", "statistic": "r", "value": -0.4, "df": 28, "sides": 1, "tail": "less"},
+             "sample": {"n": 30}},
+            lambda: default_prior.log_bf_r(0.4, 30, 1.0, one_sided=True),
+        ),
+        (
+            {"test": {"name": "Pearson", "statistic": "r", "value": -0.4, "df": 28, "sides": 1, "tail": "greater"},
+             "sample": {"n": 30}},
+            lambda: default_prior.log_bf_r(-0.4, 30, 1.0, one_sided=True),
+        ),
+        (
             {"test": {"name": "Wald", "statistic": "z", "value": 3.0}, "sample": {"n": 400}},
             lambda: default_prior.log_bf_unit_information(4.5, 400),
         ),
@@ -125,7 +135,6 @@ def test_each_test_has_its_default_prior(tmp_path: Path, changes: Document, expe
     [
         {"test": {"name": "F", "statistic": "F", "value": 4.0, "df": [2, 33]}},
         {"test": {"name": "chi-squared", "statistic": "chi2", "value": 9.1, "df": 3}},
-        {"test": {"name": "Pearson", "statistic": "r", "value": 0.4, "df": 28, "sides": 1, "tail": "greater"}},
         {"test": {"name": "Wald", "statistic": "z", "value": 3.0}, "sample": {"unit": "plot"}},
         {
             "test": {"name": "Fisher", "statistic": "z", "value": 2.0, "sides": 1, "tail": "less"},

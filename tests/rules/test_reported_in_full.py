@@ -107,3 +107,35 @@ def test_what_is_met_is_explained_too(tmp_path: Path, capsys: pytest.CaptureFixt
     assert main(["explain", "drainage/earthworm-biomass", str(tmp_path)]) == 0
 
     assert "nothing that guidelines ask for is missing." in " ".join(capsys.readouterr().out.split())
+
+
+@pytest.mark.parametrize(
+    ("screen", "lacks", "advice"),
+    [
+        ({"tests": 10_000, "hits": 139, "alpha": 0.01}, "", ""),
+        ({"hits": 139, "alpha": 0.01}, "the numbers of tests and hits", "screen.tests and screen.hits"),
+        ({"tests": 10_000, "alpha": 0.01}, "the numbers of tests and hits", "screen.tests and screen.hits"),
+        ({"tests": 10_000, "hits": 139}, "the level of each test", "screen.alpha"),
+    ],
+)
+@pytest.mark.parametrize("test", [None, {"name": "robust z"}])
+def test_a_whole_screen_gives_its_counts_and_its_level(
+    tmp_path: Path, screen: Document, lacks: str, advice: str, test: Document | None
+) -> None:
+    """It has no single test, estimate or sample; a record without a claim is held to this alone."""
+    record = {"gatecheck": "record/1", "id": "compounds", "screen": screen, "test": test}
+
+    said = judge(tmp_path, record, policy=IN_FULL).rule("reported-in-full", "compounds")
+
+    assert said["outcome"] == ("short" if lacks else "met")
+    if lacks:
+        assert f" lacks {lacks}; the policy wants" in said["message"]
+        assert said["remedy"] == f"Give {advice}."
+
+
+def test_a_screen_beside_a_single_result_is_no_whole_screen(tmp_path: Path) -> None:
+    screen = {"tests": 10_000, "hits": 139, "alpha": 0.01}
+
+    said = judge(tmp_path, drainage(screen=screen, estimate=...), policy=IN_FULL).rule("reported-in-full")
+
+    assert " lacks an estimate; the policy wants" in said["message"]

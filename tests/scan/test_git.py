@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import contextlib
 import os
 import re
 import shutil
@@ -260,6 +259,30 @@ def test_git_that_stops_is_no_missing_blob(root: Path) -> None:
     assert error.advice == "run `git fsck` there"
 
 
+@pytest.mark.parametrize(
+    ("batch", "asked", "before"),
+    [
+        ("exit", ["aa"], []),  # all that is asked for is here, and git ends all the same
+        ("exit", ["bb", "aa"], [Blob(None, None)]),  # what is not here is missing; of the rest git says nothing
+        ("echo 'aa blob 2'; echo 12; echo 'aa blob 9'; printf 123; exit", ["aa", "aa"], [Blob(2, b"12")]),
+    ],
+)
+def test_git_that_stops_halfway_is_no_missing_blob(  # three cases and their folder
+    root: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, batch: str, asked: list[str], before: list[Blob]
+) -> None:
+    program = tmp_path / "bin" / "git"
+    program.parent.mkdir()
+    program.write_text(f'#!/bin/sh\ncase "$*" in *--batch-all-objects*) echo aa;; *) {batch};; esac\n')
+    program.chmod(0o755)
+    monkeypatch.setenv("PATH", f"{program.parent}:/usr/bin:/bin")
+    given: list[Blob] = []
+
+    error = refusal(lambda: given.extend(read_blobs(root, asked, MOST)))
+
+    assert error.message == f"git stopped before it had read the files of {root}"
+    assert given == before
+
+
 def test_a_file_at_a_revision(git: Git, root: Path, write: Write) -> None:
     write("sub/policy.yaml", "first\n")
     (root / "link.yaml").symlink_to("sub/policy.yaml")
@@ -316,8 +339,26 @@ def test_a_partial_clone_is_not_filled_by_reading(git: Git, root: Path, write: W
     git("clone", "-q", "--no-checkout", "--filter=blob:none", f"file://{root}", str(clone))
     (entry,) = list_tree(clone, "HEAD")
     before = git("count-objects", "-v", at=clone)
-    with contextlib.suppress(CannotJudge):  # versions of git that do not know GIT_NO_LAZY_FETCH end there
-        assert list(read_blobs(clone, [entry.object_id or ""], MOST)) == [Blob(None, None)]
+    assert list(read_blobs(clone, [entry.object_id or ""], MOST)) == [Blob(None, None)]
+    assert git("count-objects", "-v", at=clone) == before
+
+
+def test_a_partial_clone_gives_the_blobs_that_it_has(git: Git, root: Path, write: Write, tmp_path: Path) -> None:
+    """Git ends at the first object that it may not fetch, and says nothing of those behind it."""
+    asked = []
+    for number in range(6):
+        write("a.json", str(number))
+        git("add", ".")
+        git("commit", "-q", "-m", "files")
+        asked.append(git("rev-parse", "HEAD:a.json"))
+    git("config", "uploadpack.allowFilter", "true")
+    clone = tmp_path / "clone"
+    git("clone", "-q", "--filter=blob:none", f"file://{root}", str(clone))
+    before = git("count-objects", "-v", at=clone)
+    here, gone = Blob(1, b"5"), Blob(None, None)
+
+    assert list(read_blobs(clone, asked, MOST)) == [gone] * 5 + [here]
+    assert list(read_blobs(clone, [asked[5], asked[0], "", asked[5]], MOST)) == [here, gone, gone, here]
     assert git("count-objects", "-v", at=clone) == before
 
 

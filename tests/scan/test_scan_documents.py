@@ -140,7 +140,7 @@ def test_an_unknown_kind(root: Path, write: Write) -> None:
     assert problem(root, write, "a.json", {"gatecheck": "recrod/1\n::error::"}) == (
         "a.json:2",
         "the document is declared as 'recrod/1\\n::error::', which is no known kind of document",
-        "the nearest known one is record (known: plan, policy, record, verdict, waivers)",
+        "the nearest known one is record (known: accepted, plan, policy, record, seal, verdict, waivers)",
     )
 
 

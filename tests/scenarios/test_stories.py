@@ -186,6 +186,7 @@ def test_exploratory_work_is_left_alone(tmp_path: Path) -> None:
             status="exploratory",
             test={"name": "Pearson correlation", "statistic": "r", "value": 0.1 + number / 50, "df": 60},
             estimate=...,
+            sample={"unit": "plot", "n": 62},
         )
         for number in range(14)
     ]

@@ -21,7 +21,23 @@ from gatecheck.schema.read import read
 KINDS = ("record", "plan", "waivers", "policy", "verdict")
 FULL = drainage(
     prior={"probability": 0.25, "basis": "earlier work"},
-    family={"name": "growth", "size": 6, "procedure": "holm", "adjusted_p": "0.12"},
+    family={
+        "name": "growth",
+        "size": 6,
+        "procedure": "graphical",
+        "adjusted_p": "0.12",
+        "weight": 0.5,
+        "passes_on": {"growth/height": 0.5, "growth/leaf-area": 0.5},
+    },
+    screen={
+        "tests": 10_000,
+        "hits": 139,
+        "alpha": 0.01,
+        "power": 0.8,
+        "prior": 0.005,
+        "called": "candidates",
+        "removed": [{"n": 2300, "reason": "low cell count", "planned": True}],
+    },
     look={"number": 1, "planned": 1, "information": 1.0, "boundary": "pocock"},
     plan={"file": "plans/drainage.yaml", "hypothesis": "H1"},
     deviations=[{"field": "n", "planned": "40", "done": "36", "reason": "flood", "known": "before-data"}],

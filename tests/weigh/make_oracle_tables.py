@@ -134,12 +134,15 @@ def bf_t_rows() -> Iterator[Row]:
 
 
 def bf_r_rows() -> Iterator[Row]:
-    """r, pairs, kappa."""
+    """r, pairs, kappa, one-sided."""
     sizes = (0.0, 1e-4, -0.1, 0.3, 0.5, -0.7, 0.95, 0.9999)
     for (i, r), (j, n) in itertools.product(
         enumerate(sizes), enumerate((3.0, 4.0, 7.0, 20.0, 57.0, 200.0, 2000.0))
     ):
-        yield from ((r, n, kappa) for kappa in ((1.0, 0.1), (1 / 3, 2.0), (0.5, 1.0))[(i + j) % 3])
+        yield from ((r, n, kappa, 0) for kappa in ((1.0, 0.1), (1 / 3, 2.0), (0.5, 1.0))[(i + j) % 3])
+    one_way = (1e-300, 1e-6, 1e-3, 0.05, 0.3, below(0.5), 0.5, 0.95, 0.9999, below(1.0))
+    for (i, r), (j, n) in itertools.product(enumerate(one_way), enumerate((3.0, 4.0, 8.0, 30.0, 300.0, 1e4, 1e7))):
+        yield from ((sign * r, n, (1.0, 0.1, 2.0, 1 / 3)[(i + j) % 4], 1) for sign in (1, -1))
 
 
 def bf_proportions_rows() -> Iterator[Row]:
@@ -163,7 +166,7 @@ SOURCES: dict[str, Source] = {
     "log_lr_chi2": (oracle.log_lr_chi2, chi2_rows, ("x", "df", "ncp")),
     "log_lr_f": (oracle.log_lr_f, f_rows, ("f", "df1", "df2", "ncp")),
     "log_bf_t": (oracle.log_bf_t, bf_t_rows, ("t", "df", "n_effective", "scale", "one_sided")),
-    "log_bf_r": (oracle.log_bf_r, bf_r_rows, ("r", "n", "kappa")),
+    "log_bf_r": (oracle.log_bf_r, bf_r_rows, ("r", "n", "kappa", "one_sided")),
     "log_bf_proportions": (
         oracle.log_bf_proportions,
         bf_proportions_rows,

@@ -7,6 +7,7 @@ here imports the package. Arguments are floats, taken as the exact numbers that 
 
 from __future__ import annotations
 
+from functools import cache
 from typing import TYPE_CHECKING
 
 import mpmath as mp
@@ -104,10 +105,16 @@ def log_bf_t(t: float, df: float, n_effective: float, scale: float, one_sided: b
         return _log_half_cauchy_factor(t, df, c) if one_sided else _log_cauchy_factor(t, df, c)
 
 
-def log_bf_r(r: float, n: float, kappa: float) -> mp.mpf:
-    """Log of Jeffreys's exact factor of a correlation, by the hypergeometric function."""
+def log_bf_r(r: float, n: float, kappa: float, one_sided: bool) -> mp.mpf:
+    """Log of Jeffreys's exact factor of a correlation.
+
+    Two-sided: by the hypergeometric function. One-sided: the sampling density of r, as Fisher's integral, averaged
+    over the positive half of the prior.
+    """
     with mp.workdps(DIGITS):
         r, n, b = mp.mpf(r), mp.mpf(n), 1 / mp.mpf(kappa)
+        if one_sided:
+            return _log_half_beta_factor(r, n, b)
         scale = (1 - 2 * b) * mp.log(2) + mp.log(mp.pi) / 2 - mp.log(mp.beta(b, b))
         gammas = mp.loggamma(b + (n - 1) / 2) - mp.loggamma(b + n / 2)
         return scale + gammas + mp.log(mp.hyp2f1((n - 1) / 2, (n - 1) / 2, n / 2 + b, r * r))
@@ -186,6 +193,45 @@ def _log_half_cauchy_factor(t: mp.mpf, df: mp.mpf, c: mp.mpf) -> mp.mpf:
         return w * factor * (beyond if t < 0 else 2 - beyond)
 
     return mp.log(_sum_outward(term) / 8 / mp.sqrt(2 * mp.pi))
+
+
+def _log_half_beta_factor(r: mp.mpf, n: mp.mpf, b: mp.mpf) -> mp.mpf:
+    """Integrate over ``u``, the correlation being ``tanh(u)``, from the peak on in steps that end at u = 0."""
+    power, none = n - 1 + 2 * b, _log_fisher_integral(mp.mpf(0), n)
+    root = mp.sqrt(power * power - 4 * r * r * (2 * b + mp.mpf("0.5")) * (n - mp.mpf("1.5")))
+    peak = max(mp.mpf(0), mp.atanh((2 * n - 3) * r / (power + root)))
+    width = 2 / (mp.sqrt(n) - n * min(r, mp.mpf(0)))
+
+    def log_weighed(u: mp.mpf) -> mp.mpf:
+        return _log_fisher_integral(r * mp.tanh(u), n) - none - power * mp.log(mp.cosh(u))
+
+    def term(j: int) -> mp.mpf:
+        v = start + j * step
+        s = mp.exp(v - mp.exp(-v))
+        return mp.exp(log_weighed(width * mp.log1p(s)) - top) * s / (1 + s) * (1 + mp.exp(-v))
+
+    start, step, top = peak / width, mp.mpf("0.1"), log_weighed(peak)
+    return mp.log(_sum_outward(term) * step * width * 2 / mp.beta(b, mp.mpf("0.5"))) + top
+
+
+def _log_fisher_integral(x: mp.mpf, n: mp.mpf) -> mp.mpf:
+    """Log of the integral of ``(cosh w - x)^(1-n)`` over w > 0, the poles moved away by ``w = d sinh y``."""
+    d = mp.acos(x)
+    step = min(mp.mpf("0.1"), mp.mpf("0.2") / mp.sqrt(n))
+    least = 2 * mp.sin(d / 2) ** 2
+    total, j = mp.mpf("0.5"), 0
+    while True:
+        j += 1
+        sinh, cosh = _sinh_and_cosh(j * step)
+        term = cosh * mp.exp((1 - n) * mp.log1p(2 * mp.sinh(d * sinh / 2) ** 2 / least))
+        total += term
+        if term < total * mp.mpf("1e-36"):
+            return mp.log(total * step * d) + (1 - n) * mp.log(least)
+
+
+@cache
+def _sinh_and_cosh(y: mp.mpf) -> tuple[mp.mpf, mp.mpf]:
+    return mp.sinh(y), mp.cosh(y)
 
 
 def _sum_outward(term: Callable[[int], mp.mpf]) -> mp.mpf:

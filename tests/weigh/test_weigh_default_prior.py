@@ -102,6 +102,15 @@ def test_rows_of_a_batch_do_not_depend_on_each_other() -> None:
     assert np.isfinite(batch).all()
 
 
+def test_rows_of_correlations_do_not_depend_on_each_other() -> None:
+    rng = np.random.default_rng(4)
+    r, n, side = rng.uniform(-1, 1, 3000), 10 ** rng.uniform(0.5, 7, 3000), rng.random(3000) < 0.5
+    batch = log_bf_r(r, n, 1.0, one_sided=side)
+    alone = [float(log_bf_r(r[i], n[i], 1.0, one_sided=side[i])) for i in range(60)]
+    np.testing.assert_allclose(batch[:60], alone, rtol=1e-14, atol=1e-15)
+    np.testing.assert_array_equal(batch[~side], log_bf_r(r, n, 1.0)[~side])
+
+
 def test_the_callers_arrays_stay_as_they_were() -> None:
     t, df, side = np.array([-2.5, 3.0]), np.array([8.0, 90.0]), np.array([True, False])
     before = [column.copy() for column in (t, df, side)]
@@ -116,7 +125,8 @@ def test_the_callers_arrays_stay_as_they_were() -> None:
 @given(columns)
 def test_any_doubles_give_an_answer_or_nan(table: NDArray[np.float64]) -> None:
     a, b, c, d, e = table
-    for result in (log_bf_t(a, b, c, d, one_sided=e > 0), log_bf_r(a, b, c), log_bf_unit_information(a, b)):
+    of_r = log_bf_r(a, b, c, one_sided=e > 0)
+    for result in (log_bf_t(a, b, c, d, one_sided=e > 0), of_r, log_bf_unit_information(a, b)):
         assert result.shape == (5,)
         assert not np.isposinf(result).any()
 
@@ -145,10 +155,12 @@ def test_outside_the_domain_of_t(row: tuple[float, ...]) -> None:
 
 
 @pytest.mark.parametrize(
-    "row", [(1, 9, 1), (-1, 9, 1), (np.nan, 9, 1), (0.2, 2.9, 1), (0.2, np.inf, 1), (0.2, 9, 0.09), (0.2, 9, 2.1)]
-)
-def test_outside_the_domain_of_r(row: tuple[float, ...]) -> None:
-    both = log_bf_r(*np.array([row, (0.2, 9, 1)]).T)
+    "row", [(1, 9, 1), (-1, 9, 1), (np.nan, 9, 1), (0.2, 2.9, 1), (0.2, np.inf, 1), (0.2, 2e20, 1), (0.2, 9, 0.09),
+            (0.2, 9, 2.1)]
+)  # fmt: skip
+@pytest.mark.parametrize("one_sided", [False, True])
+def test_outside_the_domain_of_r(row: tuple[float, ...], one_sided: bool) -> None:
+    both = log_bf_r(*np.array([row, (0.2, 9, 1)]).T, one_sided=one_sided)
     assert np.isnan(both[0])
     assert np.isfinite(both[1])
 
@@ -161,12 +173,60 @@ def test_a_stronger_correlation_is_more_evidence(n: int, kappa: float, r: float)
     assert weaker == mirrored
 
 
+@settings(max_examples=40)
+@given(n=st.integers(3, 10**7), kappa=st.floats(0.1, 2), r=st.floats(-0.99, 0.98))
+def test_a_correlation_further_in_its_direction_is_more_evidence(n: int, kappa: float, r: float) -> None:
+    weaker, stronger = log_bf_r([r, r + 0.005], n, kappa, one_sided=True)
+    assert weaker < stronger
+
+
+@settings(max_examples=60)
+@given(n=st.integers(3, 10**7), kappa=st.floats(0.1, 2), r=st.floats(0, 1, exclude_max=True))
+def test_the_two_directions_of_a_correlation_average_to_the_whole(n: int, kappa: float, r: float) -> None:
+    along, against = log_bf_r([r, -r], n, kappa, one_sided=True)
+    both = float(log_bf_r(r, n, kappa))
+    assert np.logaddexp(along, against) - np.log(2) == pytest.approx(both, abs=1e-12, rel=1e-13)
+    slack = 2e-13 * max(1, abs(both))
+    assert against <= both + slack
+    assert both - slack <= along <= both + np.log(2) + slack
+
+
+@pytest.mark.parametrize("n", [3.0, 3.5, 10.0, 1e3, 1e5, 1e7, 1e20])
+@pytest.mark.parametrize("kappa", [0.1, 1.0, 2.0])
+def test_every_correlation_has_a_factor_of_each_direction(n: float, kappa: float) -> None:
+    """From the smallest double to the last below 1, and the nearer to 1 the more evidence."""
+    size = np.array([0.0, 5e-324, 1e-160, 1e-20, 1e-9, 1e-4, 0.1, 0.7, 0.99, 1 - 1e-9, 1 - 2.0**-53])
+    along, against = log_bf_r(size, n, kappa, one_sided=True), log_bf_r(-size, n, kappa, one_sided=True)
+    assert np.isfinite(along).all()
+    assert np.isfinite(against).all()
+    # Neighbours that differ by less than the last digit of 1 may stand in any order of that digit.
+    assert (np.diff(along) >= -2e-13 * np.maximum(1, np.abs(along[1:]))).all()
+    assert (np.diff(against) <= 2e-13 * np.maximum(1, np.abs(against[1:]))).all()
+
+
+def mean_over_half_prior(r: float, n: float, kappa: float) -> float:
+    """Average the density of r, as Fisher's integral of (cosh w - r rho)^(1-n), over the positive correlations."""
+    nodes, weights = np.polynomial.legendre.leggauss(300)
+    rho, w = (nodes + 1) / 2, 12 * (nodes + 1)
+    density = ((np.cosh(w) - r * rho[:, None]) ** (1 - n)) @ weights / (np.cosh(w) ** (1 - n) @ weights)
+    prior = (1 - rho**2) ** (1 / kappa - 1)
+    return float(np.log((weights * prior * (1 - rho**2) ** ((n - 1) / 2)) @ density / (weights @ prior)))
+
+
+@pytest.mark.parametrize("r", [-0.8, -0.2, 0.0, 0.4, 0.7])
+@pytest.mark.parametrize(("n", "kappa"), [(9, 1.0), (12.0, 0.5), (30.0, 1.0), (25.0, 1 / 3)])
+def test_the_half_factor_is_the_mean_of_densities(r: float, n: float, kappa: float) -> None:
+    expected = mean_over_half_prior(r, n, kappa)
+    assert float(log_bf_r(r, n, kappa, one_sided=True)) == pytest.approx(expected, rel=1e-9, abs=1e-9)
+
+
+@pytest.mark.parametrize("one_sided", [False, True])
 @pytest.mark.parametrize("kappa", [0.1, 0.5, 1.0, 2.0])
-def test_no_correlation_has_a_closed_factor(kappa: float) -> None:
+def test_no_correlation_has_a_closed_factor(kappa: float, one_sided: bool) -> None:
     """At r = 0 a ratio of beta functions: the mean of (1 - rho^2)^((n-1)/2) over the prior."""
     n, b = np.array([3.0, 10.0, 500.0]), 1 / kappa
     expected = special.betaln(0.5, b + (n - 1) / 2) - special.betaln(0.5, b)
-    np.testing.assert_allclose(log_bf_r(0, n, kappa), expected, rtol=1e-12)
+    np.testing.assert_allclose(log_bf_r(0, n, kappa, one_sided=one_sided), expected, rtol=1e-12)
 
 
 def test_unit_information() -> None:

@@ -27,7 +27,11 @@ from gatecheck.weigh.equivalence import (
     rejected_binomial,
 )
 from gatecheck.weigh.power import power_t
-from gatecheck.weigh.sizes_for_power import n_equivalence_crossover, n_equivalence_parallel
+from gatecheck.weigh.sizes_for_power import (
+    n_equivalence_at_error,
+    n_equivalence_crossover,
+    n_equivalence_parallel,
+)
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -96,12 +100,45 @@ def test_known_variance_has_a_closed_form() -> None:
     np.testing.assert_allclose(power, np.append(expected, 0.0), rtol=1e-13)
     close = power_equivalence([0, 1, 0], [1, 1, 4], 1e9, low=-3, high=3, alpha=0.05)
     np.testing.assert_allclose(close, power, atol=1e-8)
+    endless = power_equivalence([0, 1, 0], [1, 1, 4], [[1e11], [1e300]], low=-3, high=3, alpha=0.05)
+    np.testing.assert_allclose(endless, [power, power], atol=1e-10)
 
 
 def test_wide_margins_leave_one_test() -> None:
     power = power_equivalence(0.5, 0.4, 9, low=-0.5, high=1e4, alpha=0.05)
     assert float(power) == pytest.approx(float(power_non_inferiority(0.5, 0.4, 9, -0.5, 0.05)), rel=1e-11)
     assert float(power) == pytest.approx(float(power_t(2.5, 9, 0.05, one_sided=True)), rel=1e-11)
+
+
+@pytest.mark.parametrize("df", [1.0, 9.0, 400.0, np.inf])
+def test_a_side_that_is_open_leaves_one_test(df: float) -> None:
+    expected = float(power_t(2.5, df, 0.05, one_sided=True))
+    power = power_equivalence([0.5, -0.5], 0.4, df, low=[-0.5, -np.inf], high=[np.inf, 0.5], alpha=0.05)
+    np.testing.assert_allclose(power, expected, rtol=1e-11)
+    assert np.isnan(power_equivalence(0, 1, df, low=-np.inf, high=np.inf, alpha=0.05))
+
+
+@pytest.mark.parametrize(("low", "high"), [(-0.3, 0.3), (-0.2, 0.5), (-0.3, np.inf), (-np.inf, 0.25)])
+@pytest.mark.parametrize("groups", [1, 2])
+def test_the_size_at_an_error_meets_the_power_and_one_less_does_not(low: float, high: float, groups: int) -> None:
+    n = float(n_equivalence_at_error(0.3162, 40 - groups, 40, groups, 0.8, low=low, high=high, alpha=0.05))
+    total = groups * np.array([n, n - 1])
+    power = power_equivalence(0, 0.3162 * np.sqrt(40 / total), total - groups, low=low, high=high, alpha=0.05)
+    assert n == round(n)
+    assert power[0] >= 0.8 > power[1]
+
+
+def test_the_size_at_an_error_of_two_groups_is_that_of_their_standard_deviation() -> None:
+    """By the normal 2 (1.645 + 1.282)^2 / 0.3^2 = 190.3 of each group."""
+    n = n_equivalence_at_error([np.sqrt(0.1), np.sqrt(2 / 7)], [38, 12], [40, 14], 2, 0.8, low=-0.3, high=0.3,
+                               alpha=0.05)  # fmt: skip
+    np.testing.assert_array_equal(n, 191)
+
+
+def test_no_size_shows_what_lies_at_the_margin() -> None:
+    n = n_equivalence_at_error([0.1, 0.1, np.nan, 0.1], 38, [40, 40, 40, np.nan], 2, 0.8, low=[0, 0.1, -1, -1],
+                               high=1, alpha=0.05)  # fmt: skip
+    assert np.isnan(n).all()
 
 
 def test_against_a_second_library() -> None:

@@ -11,6 +11,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from scipy import stats
 from statsmodels.stats import power as other
+from weigh.held import assert_both_tails
 
 from gatecheck.weigh import sizes_for_power
 from gatecheck.weigh.noncentral import (
@@ -114,9 +115,8 @@ def exact_f(f: float, df1: float, df2: float, ncp: float) -> tuple[mp.mpf, mp.mp
 )
 def test_tails_of_t_to_twelve_digits(t: float, df: float, ncp: float) -> None:
     upper, lower = exact_upper_t(t, df, ncp), 1 - exact_upper_t(t, df, ncp)
-    assert float(upper_tail_t(t, df, ncp)) == pytest.approx(float(upper), rel=1e-12)
-    assert float(lower_tail_t(t, df, ncp)) == pytest.approx(float(lower), rel=1e-12)
-    assert float(lower_tail_t(-t, df, -ncp)) == pytest.approx(float(upper), rel=1e-12)
+    assert_both_tails((lower_tail_t, upper_tail_t), (t, df, ncp), float(lower), float(upper), rel=1e-12)
+    assert_both_tails((lower_tail_t, upper_tail_t), (-t, df, -ncp), float(upper), float(lower), rel=1e-12)
 
 
 @pytest.mark.parametrize(
@@ -133,9 +133,8 @@ def test_tails_of_t_to_twelve_digits(t: float, df: float, ncp: float) -> None:
     ],
 )
 def test_tails_of_chi_squared_to_twelve_digits(x: float, df: float, ncp: float) -> None:
-    lower, upper = exact_chi2(x, df, ncp)
-    assert float(lower_tail_chi2(x, df, ncp)) == pytest.approx(float(lower), rel=1e-12)
-    assert float(upper_tail_chi2(x, df, ncp)) == pytest.approx(float(upper), rel=1e-12)
+    lower, upper = map(float, exact_chi2(x, df, ncp))
+    assert_both_tails((lower_tail_chi2, upper_tail_chi2), (x, df, ncp), lower, upper, rel=1e-12)
 
 
 @pytest.mark.parametrize(
@@ -151,9 +150,8 @@ def test_tails_of_chi_squared_to_twelve_digits(x: float, df: float, ncp: float) 
     ],
 )
 def test_tails_of_f_to_twelve_digits(f: float, df1: float, df2: float, ncp: float) -> None:
-    lower, upper = exact_f(f, df1, df2, ncp)
-    assert float(lower_tail_f(f, df1, df2, ncp)) == pytest.approx(float(lower), rel=1e-12)
-    assert float(upper_tail_f(f, df1, df2, ncp)) == pytest.approx(float(upper), rel=1e-12)
+    lower, upper = map(float, exact_f(f, df1, df2, ncp))
+    assert_both_tails((lower_tail_f, upper_tail_f), (f, df1, df2, ncp), lower, upper, rel=1e-12)
 
 
 @pytest.mark.parametrize(("r", "n", "rho"), [(0.444, 20, 0.5), (0.9, 5, -0.3), (-0.6, 12, 0.4), (0.1, 200, 0.3)])

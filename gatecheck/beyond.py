@@ -1,0 +1,89 @@
+"""What is judged and is no record: plans, prose and code, each a row of the verdict like the records."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import replace
+from pathlib import Path
+from typing import cast
+
+from gatecheck.facts import Facts
+from gatecheck.model.code import CodeRead
+from gatecheck.model.found import Found
+from gatecheck.model.struct import struct
+from gatecheck.model.verdict import Judged, Problem
+from gatecheck.policy import Policy
+from gatecheck.rules import all_promised_reported, all_tests_recorded, text_agrees, wording
+from gatecheck.rules.rule import Table
+
+Rows = tuple[tuple[Judged, ...], tuple[Problem, ...]]
+
+
+@struct
+class Tree:
+    """The tree that is judged by a policy: its records, at the base too where only changes count."""
+
+    root: Path
+    policy: Policy
+    found: Sequence[Found]
+    base: str | None = None
+    at_base: Sequence[Found] = ()
+
+
+def judge_beyond_records(tree: Tree, facts: Facts, table: Table, records: Sequence[Judged]) -> Rows:
+    """Return a row for each plan, line of prose and file of code that falls short, and what cannot be read.
+
+    Raises
+    ------
+    CannotJudge
+        Git fails.
+    """
+    prose, problems = _prose(tree, records)
+    sentences = _sentences(tree, table)
+    return (*_plans(tree, facts), *merged((*prose, *sentences)), *_code(tree, facts.code)), problems
+
+
+def merged(rows: Sequence[Judged]) -> tuple[Judged, ...]:
+    """Return one row for each id, with the findings of all: one line of prose may fall short in several ways."""
+    by_id: dict[str, Judged] = {}
+    for row in rows:
+        there = by_id.get(row.id)
+        by_id[row.id] = row if there is None else _both(there, row)
+    return tuple(sorted(by_id.values(), key=lambda one: (one.at.path, one.at.line, one.id)))
+
+
+def _both(first: Judged, second: Judged) -> Judged:
+    findings = (*first.findings, *second.findings)
+    return replace(first, findings=findings, counts_now=first.counts_now or second.counts_now)
+
+
+def _plans(tree: Tree, facts: Facts) -> tuple[Judged, ...]:
+    settings = tree.policy.in_general.rules.get(all_promised_reported.RULE.name)
+    named = cast("all_promised_reported.Settings | None", settings)
+    return all_promised_reported.judge_plans(facts.plans, [one.record for one in tree.found], named)
+
+
+def _prose(tree: Tree, records: Sequence[Judged]) -> Rows:
+    settings = text_agrees.settings_in(tree.policy)
+    rows, problems = text_agrees.judge_prose(tree.root, tree.found, settings, judged=records)
+    if rows and tree.base is not None:
+        before, _ = text_agrees.judge_prose(tree.root, tree.at_base, settings, tree.base, records)
+        rows = text_agrees.counting_new(rows, before)
+    return rows, problems
+
+
+def _sentences(tree: Tree, table: Table) -> tuple[Judged, ...]:
+    """Sentences of prose that a link ties to a record, judged by their words."""
+    if not any(wording.RULE.name in applied.rules for applied in table.applied):
+        return ()
+    from gatecheck.prose.links import linked_sentences  # noqa: PLC0415  # few policies judge words
+
+    globs = text_agrees.settings_in(tree.policy) or text_agrees.Settings()
+    return wording.judge_sentences(linked_sentences(tree.root, globs.include, globs.exclude), table)
+
+
+def _code(tree: Tree, code: CodeRead | None) -> tuple[Judged, ...]:
+    if code is None:
+        return ()
+    settings = tree.policy.in_general.rules.get(all_tests_recorded.RULE.name)
+    return all_tests_recorded.judge_code(code, tree.found, cast("all_tests_recorded.Settings | None", settings))

@@ -1,0 +1,277 @@
+"""Counts of events in two groups against the statistic, the effect, its standard error and an exact p.
+
+A statistic of two proportions is set against every form in use: with the proportions pooled and apart, with and
+without the continuity correction, the likelihood ratio, and Wald's of the logarithms of odds and risks (textbook
+forms, from memory). One that is none of these disagrees.
+"""
+
+from __future__ import annotations
+
+import math
+import re
+from collections.abc import Callable
+
+import numpy as np
+
+from gatecheck.columns import CHI2, Columns, Interval, Z
+from gatecheck.compare.agreement import Agreement, Compared, Kind, gathered
+from gatecheck.compare.design_names import FISHER, MODELLED, PROPORTIONS, test_name
+from gatecheck.model.record import Estimate, Record
+from gatecheck.model.struct import struct
+
+COUNTS = "the counts of the groups"
+_OTHER_TEST = (
+    "the test is another one (stratified, paired, with covariates)",
+    "the counts are of other units than those analysed",
+)
+_STATISTIC = Kind("counts-statistic", (COUNTS, "the statistic"), _OTHER_TEST, (COUNTS, "the statistic"))
+_ESTIMATE = Kind(
+    "counts-estimate",
+    (COUNTS, "the estimate"),
+    ("the estimate is adjusted or conditional",),
+    (COUNTS, "the estimate"),
+)
+_ERROR = Kind("counts-error", (COUNTS, "the standard error"), _OTHER_TEST, (COUNTS, "the standard error"))
+_EXACT = Kind("counts-exact", (COUNTS, "p"), ("the exact p is of another test (mid-p, unconditional)",))
+_IMPOSSIBLE = Kind("counts", (COUNTS,), ("the events are counted by episode, not by unit",))
+#: Relative difference between figures of careful programs that are given in all their digits.
+_SAME = 1e-6
+_PAIR = 2
+#: From here on, whole numbers are not all doubles.
+_LARGEST = 2**53
+#: Of more tables with these margins an exact p is not summed.
+_MOST_TABLES = 1_000_000
+_PERCENT = 100.0
+_ADJUSTED = re.compile(r"(?<!un)adjusted|conditional|pooled|median|common", re.IGNORECASE)
+_ODDS = re.compile(r"odds ratio", re.IGNORECASE)
+_RISKS = re.compile(r"risk ratio|relative risk|ratio of proportions", re.IGNORECASE)
+_DIFFERENCE = re.compile(r"difference", re.IGNORECASE)
+_LOGARITHM = re.compile(r"\blog", re.IGNORECASE)
+
+
+@struct
+class _Table:
+    """Events and units of two groups."""
+
+    events1: float
+    n1: float
+    events2: float
+    n2: float
+
+    @property
+    def cells(self) -> tuple[float, float, float, float]:
+        """Events and others of the first group, then of the second."""
+        return self.events1, self.n1 - self.events1, self.events2, self.n2 - self.events2
+
+
+def count_numbers(columns: Columns) -> tuple[Agreement, ...]:
+    """Every comparison with counts of events, of all rows; none where no record gives them."""
+    found: dict[Kind, dict[int, Compared]] = {}
+    for row, one in enumerate(columns.found):
+        sample = one.record.sample
+        if sample is None or not any(group.events is not None for group in sample.groups):
+            continue
+        for kind, compare in _COMPARE:
+            compared = compare(columns, row, one.record)
+            if compared is not None:
+                found.setdefault(kind, {})[row] = compared
+    return tuple(gathered(kind, found[kind], len(columns.found)) for kind, _ in _COMPARE if kind in found)
+
+
+def _possible(_: Columns, __: int, record: Record) -> Compared:
+    groups = () if record.sample is None else record.sample.groups
+    counted = [(group.events, group.n) for group in groups if group.events is not None]
+    events, n = max(counted, key=lambda pair: pair[0] - pair[1])
+    return Compared(events <= n, 0.0, float(n))
+
+
+def _table(record: Record) -> _Table | None:
+    """The counts of two groups of independent units."""
+    sample = record.sample
+    if sample is None or sample.clusters is not None or record.covariates or len(sample.groups) != _PAIR:
+        return None
+    one, other = sample.groups
+    if one.events is None or other.events is None or max(one.n, other.n) > _LARGEST:
+        return None
+    if not (0 < one.n >= one.events and 0 < other.n >= other.events):
+        return None
+    return _Table(float(one.events), float(one.n), float(other.events), float(other.n))
+
+
+def _crude(columns: Columns, row: int, record: Record) -> _Table | None:
+    """The counts, where the test is plainly one of two proportions."""
+    name = test_name(columns, row)
+    return _table(record) if PROPORTIONS.search(name) and not MODELLED.search(name) else None
+
+
+def _statistic(columns: Columns, row: int, record: Record) -> Compared | None:
+    table, test = _crude(columns, row, record), columns.test
+    of_one_df = test.statistic[row] == Z or (test.statistic[row] == CHI2 and test.df1.value[row] == 1)
+    if table is None or not test.value.known[row] or not of_one_df or columns.no_effect_aim[row]:
+        return None
+    squares = [square for square in _squares(table) if math.isfinite(square)]
+    forms = [math.sqrt(square) for square in squares] if test.statistic[row] == Z else squares
+    fits = any(_covers(test.value, row, form) or _covers(test.value, row, -form) for form in forms)
+    return Compared(fits, min(forms), max(forms))
+
+
+def _covers(given: Interval, row: int, value: float) -> bool:
+    """Whether a reported number may stand for this one, computed in all digits."""
+    slack = _SAME * abs(value)
+    return bool(given.low[row] - slack <= value <= given.high[row] + slack)
+
+
+def _squares(table: _Table) -> tuple[float, ...]:
+    """Chi-squared of two proportions, or the square of z, in every form in use."""
+    n1, n2 = table.n1, table.n2
+    p1, p2 = table.events1 / n1, table.events2 / n2
+    pooled = (table.events1 + table.events2) / (n1 + n2)
+    harmonic = 1 / n1 + 1 / n2
+    together, apart = pooled * (1 - pooled) * harmonic, p1 * (1 - p1) / n1 + p2 * (1 - p2) / n2
+    difference = abs(p1 - p2)
+    corrected = max(0.0, difference - min(harmonic / 2, difference))
+    pearson = _over(difference**2, together)
+    return (
+        pearson,
+        _over(corrected**2, together),
+        _over(difference**2, apart),
+        _over(corrected**2, apart),
+        pearson * (n1 + n2 - 1) / (n1 + n2),
+        _likelihood_ratio(table),
+        _over(_log_odds(table) ** 2, _variance_of_odds(table)),
+        _over(_log_risks(table) ** 2, _variance_of_risks(table)),
+    )
+
+
+def _over(square: float, variance: float) -> float:
+    return square / variance if variance > 0 else math.nan
+
+
+def _likelihood_ratio(table: _Table) -> float:
+    total = table.n1 + table.n2
+    rows, events = (table.n1, table.n1, table.n2, table.n2), table.events1 + table.events2
+    margins = (events, total - events, events, total - events)
+    parts = zip(table.cells, rows, margins, strict=True)
+    return 2 * sum(cell * math.log(cell * total / (row * margin)) for cell, row, margin in parts if cell > 0)
+
+
+def _log_odds(table: _Table) -> float:
+    a, b, c, d = table.cells
+    return math.log(a * d / (b * c)) if min(table.cells) > 0 else math.nan
+
+
+def _variance_of_odds(table: _Table) -> float:
+    return sum(1 / cell for cell in table.cells) if min(table.cells) > 0 else math.nan
+
+
+def _log_risks(table: _Table) -> float:
+    if min(table.events1, table.events2) <= 0:
+        return math.nan
+    return math.log(table.events1 / table.n1) - math.log(table.events2 / table.n2)
+
+
+def _variance_of_risks(table: _Table) -> float:
+    if min(table.events1, table.events2) <= 0:
+        return math.nan
+    return 1 / table.events1 - 1 / table.n1 + 1 / table.events2 - 1 / table.n2
+
+
+def _estimate(columns: Columns, row: int, record: Record) -> Compared | None:
+    table, given = _crude(columns, row, record), record.estimate
+    if table is None or given is None or _ADJUSTED.search(given.measure):
+        return None
+    forms = [form for form in _effects(table, given) if math.isfinite(form)]
+    null, log_scale = float(columns.estimate.null[row]), bool(columns.estimate.log_scale[row])
+    if not forms or (log_scale and min(forms) <= 0):
+        return None
+    scaled = [math.log(form) - math.log(null) if log_scale else form - null for form in forms]
+    fits = any(_covers(columns.estimate.value, row, form) for form in scaled)
+    return Compared(fits, *sorted(forms[:_PAIR]))
+
+
+def _effects(table: _Table, estimate: Estimate) -> tuple[float, ...]:
+    """The effect in either direction, also with half a unit added to every cell as some programs do."""
+    logarithm = _LOGARITHM.search(estimate.measure) is not None
+    if _ODDS.search(estimate.measure):
+        halves = _Table(table.events1 + 0.5, table.n1 + 1, table.events2 + 0.5, table.n2 + 1)
+        return _both_ways(logarithm, _log_odds(table), _log_odds(halves))
+    if _RISKS.search(estimate.measure):
+        return _both_ways(logarithm, _log_risks(table))
+    if _DIFFERENCE.search(estimate.measure) and estimate.scale == "linear":
+        difference = table.events1 / table.n1 - table.events2 / table.n2
+        return difference, -difference, _PERCENT * difference, -_PERCENT * difference
+    return ()
+
+
+def _both_ways(as_logarithm: bool, *logs: float) -> tuple[float, ...]:
+    signed = [sign * log for log in logs for sign in (1, -1)]
+    return tuple(signed) if as_logarithm else tuple(map(math.exp, signed))
+
+
+def _error(columns: Columns, row: int, record: Record) -> Compared | None:
+    table, given = _crude(columns, row, record), record.estimate
+    if table is None or given is None or given.standard_error is None or _ADJUSTED.search(given.measure):
+        return None
+    forms = [form for form in _errors(table, given) if math.isfinite(form)]
+    if not forms:
+        return None
+    fits = any(_covers(columns.estimate.standard_error, row, form) for form in forms)
+    return Compared(fits, min(forms), max(forms))
+
+
+def _errors(table: _Table, estimate: Estimate) -> tuple[float, ...]:
+    if _ODDS.search(estimate.measure):
+        return (math.sqrt(_variance_of_odds(table)),)
+    if _RISKS.search(estimate.measure):
+        return (math.sqrt(_variance_of_risks(table)),)
+    if not _DIFFERENCE.search(estimate.measure) or estimate.scale != "linear":
+        return ()
+    p1, p2 = table.events1 / table.n1, table.events2 / table.n2
+    pooled = (table.events1 + table.events2) / (table.n1 + table.n2)
+    together = math.sqrt(pooled * (1 - pooled) * (1 / table.n1 + 1 / table.n2))
+    apart = math.sqrt(p1 * (1 - p1) / table.n1 + p2 * (1 - p2) / table.n2)
+    unbiased = math.sqrt(p1 * (1 - p1) / max(table.n1 - 1, 1) + p2 * (1 - p2) / max(table.n2 - 1, 1))
+    return tuple(unit * error for error in (together, apart, unbiased) for unit in (1.0, _PERCENT))
+
+
+def _exact(columns: Columns, row: int, record: Record) -> Compared | None:
+    """Fisher's exact p, by the tables that are less probable, doubled or of one side."""
+    table, test = _table(record), record.test
+    if table is None or test is None or test.p is None or not FISHER.search(test_name(columns, row)):
+        return None
+    if test.p_kind not in {"exact", "raw"} or MODELLED.search(test_name(columns, row)):
+        return None
+    forms = _fisher(table, one_sided=test.sides == 1)
+    reported = test.p.as_rounded()
+    fits = any(reported.low <= form * (1 + _SAME) and reported.high >= form * (1 - _SAME) for form in forms)
+    return Compared(fits, min(forms), max(forms)) if forms else None
+
+
+def _fisher(table: _Table, *, one_sided: bool) -> tuple[float, ...]:
+    drawn, total = table.events1 + table.events2, table.n1 + table.n2
+    first, last = max(0.0, drawn - table.n2), min(drawn, table.n1)
+    if last - first > _MOST_TABLES:
+        return ()
+    cells = np.arange(first, last + 1)
+    # From one table to the next, the probability changes by this factor.
+    steps = np.log((drawn - cells[:-1]) * (table.n1 - cells[:-1])) - np.log(
+        (cells[:-1] + 1) * (total - table.n1 - drawn + cells[:-1] + 1)
+    )
+    logs = np.concatenate([[0.0], np.cumsum(steps)])
+    share = np.exp(logs - logs.max())
+    share /= share.sum()
+    at = int(table.events1 - first)
+    tails = float(share[: at + 1].sum()), float(share[at:].sum())
+    if one_sided:
+        return tails
+    return float(share[share <= share[at] * (1 + _SAME)].sum()), min(1.0, 2 * min(tails))
+
+
+_Compare = Callable[[Columns, int, Record], Compared | None]
+_COMPARE: tuple[tuple[Kind, _Compare], ...] = (
+    (_IMPOSSIBLE, _possible),
+    (_STATISTIC, _statistic),
+    (_ESTIMATE, _estimate),
+    (_ERROR, _error),
+    (_EXACT, _exact),
+)

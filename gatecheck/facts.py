@@ -1,0 +1,143 @@
+"""Facts about the records of a tree that stand in its plans, its history and its files.
+
+They are looked up only where a rule asks for them: most trees have neither plans nor looks.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from pathlib import Path
+from typing import cast
+
+from gatecheck.compare.tests_recorded import Behind, behind_claims
+from gatecheck.model.code import CodeRead
+from gatecheck.model.found import Found
+from gatecheck.model.freshness import Freshness
+from gatecheck.model.looks_seen import LooksSeen
+from gatecheck.model.promise import PlanInTree, Promise
+from gatecheck.model.struct import struct
+from gatecheck.model.verdict import Problem
+from gatecheck.policy import Applied, Policy
+from gatecheck.rules import all_promised_reported, all_tests_recorded, fresh, looks
+
+_PLANS = all_promised_reported.RULE.name
+
+
+@struct
+class Asked:
+    """Where facts are looked up: a folder, the revision into which a request goes, and the policy that asks."""
+
+    root: Path
+    base: str | None
+    policy: Policy
+
+
+@struct
+class Facts:
+    """What was found, row by row or empty where nothing was asked.
+
+    `plan_digests` names each plan that was read with the digest of what it says.
+    """
+
+    promises: tuple[Promise | None, ...] = ()
+    looks_seen: tuple[LooksSeen | None, ...] = ()
+    inputs: tuple[Freshness, ...] = ()
+    code: CodeRead | None = None
+    tests_behind: tuple[Behind | None, ...] = ()
+    plans: tuple[PlanInTree, ...] = ()
+    plan_digests: tuple[tuple[str, str], ...] = ()
+    problems: tuple[Problem, ...] = ()
+
+
+def look_up(asked: Asked, found: Sequence[Found], applied: Sequence[Applied]) -> Facts:
+    """Look up all that the rules of the policy ask of the records `found`.
+
+    Raises
+    ------
+    CannotJudge
+        Git fails.
+    """
+    promises, problems = _promises(asked, found)
+    plans, unread = _plans(asked, promises)
+    code = _code(asked)
+    return Facts(
+        promises=promises,
+        looks_seen=_looks_seen(asked, found, applied),
+        inputs=_inputs(asked, found, applied),
+        code=code,
+        tests_behind=() if code is None else behind_claims(found, code),
+        plans=plans,
+        plan_digests=_digests(plans, promises),
+        problems=tuple(dict.fromkeys((*problems, *unread))),
+    )
+
+
+def _promises(asked: Asked, found: Sequence[Found]) -> tuple[tuple[Promise | None, ...], tuple[Problem, ...]]:
+    if all(one.record.plan is None for one in found):
+        return (), ()
+    from gatecheck.history.walk import has_history, history_of  # noqa: PLC0415  # most trees name no plan
+    from gatecheck.plans.promise import promises  # noqa: PLC0415
+
+    history = history_of(asked.root, asked.base or "HEAD") if has_history(asked.root) else None
+    made = promises(asked.root, found, history, asked.policy.document.plans)
+    return made.promises, made.problems
+
+
+def _plans(
+    asked: Asked, promises: Sequence[Promise | None]
+) -> tuple[tuple[PlanInTree, ...], tuple[Problem, ...]]:
+    """The plans whose promises must be reported: as they were frozen, else as the base has them, else the tree."""
+    if _PLANS not in asked.policy.in_general.rules:
+        return (), ()
+    from gatecheck.plans.reading import plans_in_tree  # noqa: PLC0415  # few policies ask for it
+
+    include = asked.policy.document.plans.include
+    here, problems = plans_in_tree(asked.root, include)
+    by_path = {one.path: one for one in here}
+    if asked.base is not None:
+        there, problems_there = plans_in_tree(asked.root, include, asked.base)
+        by_path |= {one.path: one for one in there}
+        problems = (*problems, *problems_there)
+    for one in promises:
+        if one is not None and one.plan is not None and one.file in by_path:
+            by_path[one.file] = PlanInTree(one.file, by_path[one.file].line, one.plan, one.digest)
+    return tuple(by_path[path] for path in sorted(by_path)), problems
+
+
+def _digests(plans: Sequence[PlanInTree], promises: Sequence[Promise | None]) -> tuple[tuple[str, str], ...]:
+    """Each plan with the digest of what it says, as it counted."""
+    read = {one.path: one.digest for one in plans}
+    read |= {one.file: one.digest for one in promises if one is not None and one.digest}
+    return tuple(sorted(read.items()))
+
+
+def _looks_seen(asked: Asked, found: Sequence[Found], applied: Sequence[Applied]) -> tuple[LooksSeen | None, ...]:
+    """The looks that the history shows of each claim for which they are counted."""
+    rows = [row for row, one in enumerate(found) if one.record.claim and looks.RULE.name in applied[row].rules]
+    if not rows:
+        return ()
+    from gatecheck.history.looks import looks_of_records  # noqa: PLC0415  # few policies count looks
+
+    globs = asked.policy.document.scan
+    seen = looks_of_records(asked.root, [found[row] for row in rows], globs.include, globs.exclude, asked.base)
+    by_row = dict(zip(rows, seen, strict=True))
+    return tuple(by_row.get(row) for row in range(len(found)))
+
+
+def _inputs(asked: Asked, found: Sequence[Found], applied: Sequence[Applied]) -> tuple[Freshness, ...]:
+    wanted = [fresh.RULE.name in each.rules for each in applied]
+    if not any(wanted):
+        return ()
+    from gatecheck.freshness import freshness  # noqa: PLC0415  # few policies ask for it
+
+    return freshness(asked.root, found, wanted)
+
+
+def _code(asked: Asked) -> CodeRead | None:
+    settings = asked.policy.in_general.rules.get(all_tests_recorded.RULE.name)
+    if settings is None:
+        return None
+    from gatecheck.analysis import read_code  # noqa: PLC0415  # few policies ask for it
+
+    named = cast("all_tests_recorded.Settings", settings)
+    return read_code(asked.root, named.include, named.exclude)

@@ -1,0 +1,1 @@
+"""What git knows about records through time."""

@@ -1,0 +1,216 @@
+"""Every value that a record ever had: its versions, read from the objects of all commits by one process of git."""
+
+from __future__ import annotations
+
+import functools
+import re
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
+from dataclasses import dataclass, field, replace
+from pathlib import Path
+
+from gatecheck import git
+from gatecheck.globs import matches
+from gatecheck.history.walk import Commit, History
+from gatecheck.model.found import Found
+from gatecheck.model.record import Record
+from gatecheck.model.struct import struct
+from gatecheck.model.verdict import Place, Problem
+from gatecheck.scan import LONGEST_PARSED
+from gatecheck.scan.candidates import looks_declared, may_declare
+from gatecheck.scan.documents import judged
+from gatecheck.scan.readers import READERS, suffix_of
+from gatecheck.scan.readers.document import Document
+from gatecheck.scan.twins import position
+from gatecheck.scan.unread import as_text
+
+#: Searching for more ids than this costs more than to parse.
+_MOST_SEARCHED = 16
+#: By these a text may spell an id in other bytes than its own.
+_ESCAPES = re.compile(rb"[\\\0]|vnd\.gatecheck")
+
+
+@struct
+class Version:
+    """A record as one commit leaves it, or with `commit` `None` as the judged tree holds it.
+
+    `index` is the place of the commit in the history; that of the tree comes behind all of them. `path` is the
+    path as git knows it.
+    """
+
+    index: int
+    commit: Commit | None
+    found: Found
+    path: str
+
+    @property
+    def record(self) -> Record:
+        """The record as it was."""
+        return self.found.record
+
+    @property
+    def place(self) -> Place:
+        """Where it stood."""
+        return self.found.at
+
+    @property
+    def digest(self) -> str:
+        """The SHA-256 digest of its canonical JSON."""
+        return self.found.digest
+
+
+@struct
+class Gap:
+    """A text in the history that declares a record and cannot be read: the commit, the path, and what is wrong."""
+
+    commit: Commit
+    path: str
+    message: str
+    content: bytes
+
+
+@struct
+class Recorded:
+    """The versions of each record by its id, oldest first, and what of the history could not be read.
+
+    `missing` counts the contents that this clone does not have, as a partial one does not.
+    """
+
+    by_id: Mapping[str, tuple[Version, ...]]
+    gaps: tuple[Gap, ...]
+    missing: int
+
+    def lineage(self, names: Iterable[str]) -> frozenset[str]:
+        """Return the ids `names` and all earlier ones, by the aliases of the newest version under each."""
+        known: set[str] = set()
+        waiting = list(names)
+        while waiting:
+            name = waiting.pop()
+            if name not in known:
+                known.add(name)
+                waiting.extend(alias for one in self.by_id.get(name, ())[-1:] for alias in one.record.aliases)
+        return frozenset(known)
+
+    def versions(self, ids: frozenset[str]) -> tuple[Version, ...]:
+        """Return the versions under any of `ids`, oldest first."""
+        found = (one for name in sorted(ids) for one in self.by_id.get(name, ()))
+        return tuple(sorted(found, key=lambda one: one.index))
+
+
+@dataclass(slots=True)
+class _Reading:
+    """What has been read so far."""
+
+    ids: frozenset[str] | None
+    found: list[Version] = field(default_factory=list)
+    gaps: list[Gap] = field(default_factory=list)
+    missing: int = 0
+
+
+def versions_with_aliases(
+    root: Path, history: History, ids: frozenset[str], include: Sequence[str], exclude: Sequence[str]
+) -> Recorded:
+    """Return the versions of the records `ids`, and of their earlier ids; see `record_versions`."""
+    while True:
+        recorded = record_versions(root, history, ids, include, exclude)
+        all_of_them = recorded.lineage(ids)
+        if all_of_them == ids:
+            return recorded
+        ids = all_of_them
+
+
+def record_versions(
+    root: Path,
+    history: History,
+    ids: frozenset[str] | None = None,
+    include: Sequence[str] = ("**",),
+    exclude: Sequence[str] = (),
+) -> Recorded:
+    """Return what the records `ids`, or all that there ever were, held after each commit that changed them.
+
+    A file is read if a reader knows its suffix and the globs name its path. A text that cannot be read is told as
+    a gap, where it may hold one of the records.
+
+    Raises
+    ------
+    CannotJudge
+        Git ends before it has answered.
+    """
+    uses = _uses(history, include, exclude)
+    reading = _Reading(ids)
+    may_hold = _search(ids)
+    contents = git.read_blobs(root, [blob for blob, _ in uses], LONGEST_PARSED)
+    for ((_, suffix), at), blob in zip(uses.items(), contents, strict=True):
+        if blob.size is None:
+            reading.missing += 1
+        elif blob.content is None:
+            index, path = at[0]
+            reading.gaps.append(Gap(history.commits[index], as_text(path), "the file is too long", b""))
+        elif may_declare(blob.content) and may_hold(blob.content):
+            _read(reading, history, suffix, blob.content, at)
+    reading.found.sort(key=lambda one: (one.index, position(one.place)))
+    by_id: dict[str, list[Version]] = {}
+    for version in reading.found:
+        by_id.setdefault(version.record.id, []).append(version)
+    return Recorded({name: tuple(each) for name, each in by_id.items()}, tuple(reading.gaps), reading.missing)
+
+
+_Uses = dict[tuple[str, str], list[tuple[int, str]]]
+
+
+def _uses(history: History, include: Sequence[str], exclude: Sequence[str]) -> _Uses:
+    """The commits and paths that put each content in place, by its id and the suffix that it is read by."""
+
+    @functools.cache
+    def suffix_if_wanted(path: str) -> str | None:
+        suffix = suffix_of(path)
+        wanted = suffix in READERS and matches(include, path) and not matches(exclude, path)
+        return suffix if wanted else None
+
+    uses: _Uses = {}
+    for index, commit in enumerate(history.commits):
+        for change in commit.changes:
+            suffix = suffix_if_wanted(change.path)
+            if suffix is not None and change.after is not None:
+                uses.setdefault((change.after, suffix), []).append((index, change.path))
+    return uses
+
+
+def _search(ids: frozenset[str] | None) -> Callable[[bytes], bool]:
+    """Return the test whether a text may hold one of the records; it may err on that side alone."""
+    if ids is None or len(ids) > _MOST_SEARCHED:
+        return lambda _: True
+    names = [name.encode("utf-8", "surrogatepass") for name in ids]
+    return lambda content: any(name in content for name in names) or _ESCAPES.search(content) is not None
+
+
+def _read(reading: _Reading, history: History, suffix: str, content: bytes, at: list[tuple[int, str]]) -> None:
+    index, path = at[0]
+    for one in _outcomes(suffix, as_text(path), content):
+        if isinstance(one, Found):
+            if reading.ids is None or one.record.id in reading.ids:
+                reading.found.extend(_version(history, one, *use) for use in at)
+        elif looks_declared(suffix, content):
+            reading.gaps.append(Gap(history.commits[index], as_text(path), one.message, content))
+
+
+def _outcomes(suffix: str, path: str, content: bytes) -> Iterator[Found | Problem]:
+    for one in READERS[suffix](path, content):
+        if isinstance(one, Document):
+            yield from judged(one)
+        else:
+            yield one
+
+
+def _version(history: History, found: Found, index: int, path: str) -> Version:
+    text = as_text(path)
+    here = found if found.at.path == text else replace(found, at=replace(found.at, path=text))
+    return Version(index, history.commits[index], here, path)
+
+
+def records_in(root: Path, content_id: str | None, path: str) -> tuple[Record, ...]:
+    """Return the records in one content, read as a file at `path` is; none where it is not there."""
+    if content_id is None:
+        return ()
+    (blob,) = git.read_blobs(root, [content_id], LONGEST_PARSED)
+    outcomes = _outcomes(suffix_of(path), path, blob.content or b"")
+    return tuple(one.record for one in outcomes if isinstance(one, Found))

@@ -1,0 +1,35 @@
+"""What `adopt` has done, as plain text."""
+
+from __future__ import annotations
+
+from gatecheck.model.accepted import Adoption
+from gatecheck.render import words
+from gatecheck.render.layout import page, paragraph
+
+_ONLY_REMOVES = (
+    "A list that is there only gets shorter, so that what falls short anew is not accepted unseen; to accept what "
+    "falls short now, delete the file and adopt again."
+)
+
+
+def told(done: Adoption, path: str, again: bool, width: int) -> str:
+    """Return what was written to the list at `path`, which was there before where it is done `again`."""
+    entries = words.count(len(done.entries), "shortfall")
+    if not again:
+        if not done.entries:
+            return page([
+                paragraph(f"Nothing that blocks is short of the policy, so {path} was not written.", width)
+            ])
+        records = words.count(len({each.record for each in done.entries}), "record")
+        return page([
+            paragraph(
+                f"Accepted {entries} of {records} in {path}: they do not block until the numbers of their record "
+                "change. Commit this file; on a pull request the one that counts is that of the base.",
+                width,
+            )
+        ])
+    dropped = words.count(done.dropped, "entry", "entries")
+    return page([
+        paragraph(f"{path} lists {entries}; taken off it: {dropped}.", width),
+        paragraph(_ONLY_REMOVES, width),
+    ])

@@ -1,0 +1,209 @@
+"""Rule `text-agrees`: prose says what the records say.
+
+It judges prose, not records. A number that a link ties to a record is the record's within the digits shown. A
+statistic without a link is looked for among the records, and one that no record has is listed; it blocks where the
+policy says so. A sentence that calls a result confirmed or registered whose record is not confirmatory is told.
+Common practice, no source.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import KW_ONLY, replace
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated, Any, cast
+
+import numpy as np
+
+from gatecheck.columns import Booleans
+from gatecheck.compare.names import shown
+from gatecheck.model.found import Found
+from gatecheck.model.marks import OneOrMore
+from gatecheck.model.record import Text
+from gatecheck.model.struct import struct
+from gatecheck.model.verdict import Enforce, Finding, Judged, Place, Problem
+from gatecheck.policy import Globs, Policy, RuleSettings
+from gatecheck.rules.rule import Judgement, Rule, Said, Table
+
+if TYPE_CHECKING:
+    from gatecheck.prose import agree
+
+_NAME = "text-agrees"
+_ASKS = "prose says what the records say"
+#: Where prose is looked for unless the policy says otherwise.
+PROSE: tuple[str, ...] = ("**/*.md", "**/*.qmd", "**/*.Rmd", "**/*.tex", "**/*.rst", "**/*.ipynb")
+#: Figures that links may name and that are computed, to be shown with few digits.
+_COMPUTED = {"risk", "prior-needed"}
+
+
+@struct
+class Settings(RuleSettings):
+    """Which files are prose, and what a statistic without a link means."""
+
+    _: KW_ONLY
+    include: Annotated[Globs, "globs of the files of prose"] = PROSE
+    exclude: Annotated[tuple[Text, ...], OneOrMore(least=0), "globs of the files to leave out"] = ()
+    unlinked: Annotated[
+        Enforce, "statistics without a link that no record has: block, note (they are listed) or off"
+    ] = "note"
+
+
+def settings_in(policy: Policy) -> Settings | None:
+    """Return how `policy` judges prose, or `None` where it does not name the rule or has it off."""
+    return cast("Settings | None", policy.in_general.rules.get(_NAME))
+
+
+def judge_prose(
+    root: Path,
+    found: Sequence[Found],
+    settings: Settings | None,
+    revision: str | None = None,
+    judged: Sequence[Judged] = (),
+) -> tuple[tuple[Judged, ...], tuple[Problem, ...]]:
+    """Return a row for each line of prose below `root` that does not agree with the records `found`.
+
+    The row's id is the path with the line, it claims nothing, and it has a finding for each disagreement. The
+    problems are links that lead nowhere and files that cannot be read. With `revision` the prose is that of this
+    commit. `judged` gives the figures of evidence that links may name. `settings` is `None` where the rule is off.
+
+    Raises
+    ------
+    CannotJudge
+        `root` is no folder, git fails, or the revision is not known.
+    """
+    if settings is None:
+        return (), ()
+    from gatecheck.prose.agree import held_against  # noqa: PLC0415  # loaded where the rule is on alone
+    from gatecheck.prose.fields import subjects  # noqa: PLC0415  # the same
+    from gatecheck.prose.reading import read_prose  # noqa: PLC0415  # the same
+
+    prose = read_prose(root, settings.include, settings.exclude, revision)
+    known = subjects([one.record for one in found], judged)
+    facts = held_against(prose.passages, known, unlinked=settings.unlinked != "off")
+    rows: dict[Place, list[agree.Fact]] = {}
+    for fact in facts.facts:
+        rows.setdefault(Place(fact.passage.file.path, fact.passage.line(fact.at)), []).append(fact)
+    judged_rows = tuple(_row(place, rows[place], settings) for place in sorted(rows))
+    return judged_rows, (*prose.problems, *facts.problems)
+
+
+def counting_new(rows: Sequence[Judged], before: Sequence[Judged]) -> tuple[Judged, ...]:
+    """Return `rows` so that those do not count now of which `before`, at the base, says all of the same file."""
+    said = {(one.at.path, finding.message) for one in before for finding in one.findings}
+    return tuple(
+        replace(row, counts_now=any((row.at.path, finding.message) not in said for finding in row.findings))
+        for row in rows
+    )
+
+
+def _row(place: Place, facts: Sequence[agree.Fact], settings: Settings) -> Judged:
+    from gatecheck.prose.sentences import sentence_at  # noqa: PLC0415  # loaded where something disagrees alone
+
+    passage, at = facts[0].passage, facts[0].at
+    start, end = sentence_at(passage.visible, at)
+    cell = "" if passage.cell is None else f"cell {passage.cell}, "
+    return Judged(
+        id=str(place),
+        at=place,
+        claim=None,
+        result=f"{cell}the text “{shown(passage.visible[start:end])}”",
+        evidence=None,
+        findings=tuple(_finding(fact, settings) for fact in facts),
+    )
+
+
+def _finding(fact: agree.Fact, settings: Settings) -> Finding:
+    enforce = settings.enforce
+    if not fact.linked and settings.unlinked == "note":
+        enforce = "note"
+    said = _SAY[type(fact.what).__name__](fact, fact.what)
+    return Finding(_NAME, "short", enforce, message=said.message, remedy=said.remedy)
+
+
+def _say_number(_: agree.Fact, what: agree.NumberDiffers) -> Said:
+    field, record = what.link.field, what.link.record
+    recorded = f"{what.recorded.value:.4g}" if field in _COMPUTED else what.recorded.shown
+    message = (
+        f"The text says {what.number.told} for {field} of {record}, and the record says {recorded}; the policy "
+        "wants the record's number within the digits shown."
+    )
+    if what.anew is None:
+        return Said(message, f"Write {recorded} by hand: it cannot be written in the digits that are shown.")
+    sign = " %" if what.number.percent else ""
+    return Said(message, f"Write {what.anew}{sign}; `gatecheck refresh --write` does so for every link.")
+
+
+def _say_nothing_claimed(_: agree.Fact, what: agree.NothingClaimed) -> Said:
+    return Said(
+        f"The sentence is linked to the claim of {what.record.id}, and that record claims nothing.",
+        "Link the record that claims it, or link the numbers of the sentence instead.",
+    )
+
+
+def _say_confirmed(_: agree.Fact, what: agree.CalledConfirmed) -> Said:
+    return Said(
+        f"The text calls the result of {what.record.id} “{what.word}”, and its record is {what.record.status}; the "
+        "policy wants this said of confirmatory results alone.",
+        f"Say that the result is {what.record.status}, or link the record that confirms it.",
+    )
+
+
+def _say_statistic(fact: agree.Fact, what: agree.StatisticDiffers) -> Said:
+    told = shown(fact.passage.visible[what.statistic.start : what.statistic.end])
+    if what.nearest is None:
+        return Said(
+            f"No record has {told}, which the text says; the policy wants statistics that records stand behind.",
+            "Emit a record of this result, correct the text, or leave out files that quote the results of others.",
+        )
+    record = what.nearest.record.id
+    differ = ", ".join(f"{each.figure} {each.recorded} (not {each.shown})" for each in what.nearest.differences)
+    if fact.linked:
+        message = f"The text says {told}, and {record}, to which it is linked, has {differ}"
+    else:
+        message = f"The text says {told}, and no record has all of it: the nearest, {record}, has {differ}"
+    remedy = "Write the figures of the record, or link the record that is meant."
+    return Said(f"{message}; the policy wants the record's figures.", remedy)
+
+
+def _say_share(_: agree.Fact, what: agree.ShareDiffers) -> Said:
+    share = what.share
+    digits = max(0, -share.percent.unit.adjusted()) + 1
+    return Said(
+        f"The text says {share.percent.text} % for {share.part} of {share.whole}, which is "
+        f"{100 * share.part / share.whole:.{digits}f} %; the policy wants figures that fit together.",
+        "Correct the percentage or the counts.",
+    )
+
+
+#: How each kind of fact is told.
+_SAY: dict[str, Callable[[agree.Fact, Any], Said]] = {
+    "NumberDiffers": _say_number,
+    "NothingClaimed": _say_nothing_claimed,
+    "CalledConfirmed": _say_confirmed,
+    "StatisticDiffers": _say_statistic,
+    "ShareDiffers": _say_share,
+}
+
+
+def _no_row(table: Table, _: Sequence[Settings | None]) -> Booleans:
+    return np.zeros(len(table.columns.found), np.bool_)
+
+
+def judge(table: Table, settings: Sequence[Settings | None]) -> Judgement:
+    """No record falls short of it: `judge_prose` judges the prose."""
+    return Judgement(_no_row(table, settings))
+
+
+def explain(_: Table, __: int, ___: Settings, ____: Judgement) -> Said:
+    """What is asked, which no record is held to by itself."""
+    return Said(f"This rule judges prose: {_ASKS}.")
+
+
+RULE = Rule(
+    name=_NAME,
+    asks=_ASKS,
+    settings=Settings,
+    judge=judge,
+    explain=explain,
+    concerns=_no_row,
+)

@@ -1,0 +1,95 @@
+"""Compare read_code() on 2,000 notebooks with reading their bytes and parsing their JSON once.
+
+Run as `python tests/bench/bench_code.py`; it prints both times and their ratio, and exits 1 where that is above 3.
+Every fourth notebook calls tests, without a record. Each has some 20 cells of code, and three plots of 40 kB.
+"""
+
+from __future__ import annotations
+
+import base64
+import json
+import os
+import random
+import subprocess
+import sys
+import tempfile
+import time
+from collections.abc import Callable
+from pathlib import Path
+
+from gatecheck.analysis import read_code
+
+NOTEBOOKS = 2_000
+SHARE = 4
+CELLS = 20
+PLOT = 30_000
+HIGHEST_RATIO = 3.0
+ROUNDS = 5
+ALL = ("**",)
+
+
+def build(root: Path) -> None:
+    """Write the repository."""
+    drawing = random.Random(1)  # noqa: S311  # pictures, no secrets
+    for number in range(NOTEBOOKS):
+        (root / f"n{number:04}.ipynb").write_text(json.dumps(notebook(number, drawing), indent=1), encoding="utf-8")
+    for command in (("init", "-q"), ("add", ".")):
+        subprocess.run(["git", "-C", str(root), *command], check=True)
+
+
+def notebook(number: int, drawing: random.Random) -> dict[str, object]:
+    """Return a notebook that loads data, makes plots and, every fourth one, tests."""
+    loads = "import numpy as np\nimport pandas as pd\n" + ("from scipy import stats\n" * (number % SHARE == 0))
+    cells = [cell(loads)] + [cell(code(at, with_test=number % SHARE == 0)) for at in range(CELLS)]
+    for at in (5, 10, 15):
+        picture = base64.b64encode(drawing.randbytes(PLOT)).decode()
+        cells[at]["outputs"] = [{"output_type": "display_data", "data": {"image/png": picture}, "metadata": {}}]
+    metadata = {"language_info": {"name": "python"}}
+    return {"cells": cells, "metadata": metadata, "nbformat": 4, "nbformat_minor": 5}
+
+
+def code(at: int, *, with_test: bool) -> str:
+    """Return a cell; every fifth one makes a test where the notebook does."""
+    lines = f"wet = plots[plots['depth'] > {at}]\nwet.groupby('field')['worms'].mean().plot(kind='bar')\n"
+    return lines + (f"stats.ttest_ind(wet['worms'], dry['worms{at}'])\n" if with_test and at % 5 == 0 else "")
+
+
+def cell(source: str) -> dict[str, object]:
+    """Return a cell of code."""
+    lines = source.splitlines(keepends=True)
+    return {"cell_type": "code", "metadata": {}, "execution_count": 1, "outputs": [], "source": lines}
+
+
+def least(root: Path) -> int:
+    """List with git, read each file once and parse it once."""
+    listed = subprocess.run(["git", "-C", str(root), "ls-files", "-z"], check=True, capture_output=True).stdout
+    paths = [root / os.fsdecode(path) for path in listed.split(b"\0")[:-1]]
+    return sum(len(json.loads(path.read_bytes())["cells"]) for path in paths)
+
+
+def seconds(function: Callable[[], object]) -> float:
+    """Return the shortest of some rounds."""
+    best = float("inf")
+    for _ in range(ROUNDS):
+        start = time.perf_counter()
+        function()
+        best = min(best, time.perf_counter() - start)
+    return best
+
+
+def main() -> int:
+    """Print the times and their ratio."""
+    with tempfile.TemporaryDirectory() as folder:
+        root = Path(folder)
+        build(root)
+        found = read_code(root, ALL, ())
+        tests = sum(len(one.tests) for one in found.files)
+        ours, floor = seconds(lambda: read_code(root, ALL, ())), seconds(lambda: least(root))
+    ratio = ours / floor
+    report = f"{NOTEBOOKS} notebooks, {tests} tests: {ours:.2f} s, bytes and JSON {floor:.2f} s, ratio {ratio:.2f}"
+    print(report)  # noqa: T201  # a script that reports
+    return int(ratio > HIGHEST_RATIO)
+
+
+if __name__ == "__main__":
+    sys.exit(main())
