@@ -13,9 +13,9 @@ from gatecheck.model.found import Found
 from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Judged, Problem
 from gatecheck.policy import Policy
-from gatecheck.rules import all_promised_reported, all_tests_recorded, text_agrees, wording
 from gatecheck.rules.rule import Table
 
+_PLANS, _PROSE, _WORDS, _CODE = "all-promised-reported", "text-agrees", "wording", "all-tests-recorded"
 Rows = tuple[tuple[Judged, ...], tuple[Problem, ...]]
 
 
@@ -58,25 +58,33 @@ def _both(first: Judged, second: Judged) -> Judged:
 
 
 def _plans(tree: Tree, facts: Facts) -> tuple[Judged, ...]:
-    settings = tree.policy.in_general.rules.get(all_promised_reported.RULE.name)
-    named = cast("all_promised_reported.Settings | None", settings)
-    return all_promised_reported.judge_plans(facts.plans, [one.record for one in tree.found], named)
+    settings = tree.policy.in_general.rules.get(_PLANS)
+    if settings is None:
+        return ()
+    from gatecheck.rules import all_promised_reported as rule  # noqa: PLC0415  # few policies ask for it
+
+    return rule.judge_plans(facts.plans, [one.record for one in tree.found], cast("rule.Settings", settings))
 
 
 def _prose(tree: Tree, records: Sequence[Judged]) -> Rows:
-    settings = text_agrees.settings_in(tree.policy)
-    rows, problems = text_agrees.judge_prose(tree.root, tree.found, settings, judged=records)
+    if _PROSE not in tree.policy.in_general.rules:
+        return (), ()
+    from gatecheck.rules import text_agrees as rule  # noqa: PLC0415  # few policies ask for it
+
+    settings = rule.settings_in(tree.policy)
+    rows, problems = rule.judge_prose(tree.root, tree.found, settings, judged=records)
     if rows and tree.base is not None:
-        before, _ = text_agrees.judge_prose(tree.root, tree.at_base, settings, tree.base, records)
-        rows = text_agrees.counting_new(rows, before)
+        before, _ = rule.judge_prose(tree.root, tree.at_base, settings, tree.base, records)
+        rows = rule.counting_new(rows, before)
     return rows, problems
 
 
 def _sentences(tree: Tree, table: Table) -> tuple[Judged, ...]:
     """Sentences of prose that a link ties to a record, judged by their words."""
-    if not any(wording.RULE.name in applied.rules for applied in table.applied):
+    if not any(_WORDS in applied.rules for applied in table.applied):
         return ()
     from gatecheck.prose.links import linked_sentences  # noqa: PLC0415  # few policies judge words
+    from gatecheck.rules import text_agrees, wording  # noqa: PLC0415
 
     globs = text_agrees.settings_in(tree.policy) or text_agrees.Settings()
     return wording.judge_sentences(linked_sentences(tree.root, globs.include, globs.exclude), table)
@@ -85,5 +93,6 @@ def _sentences(tree: Tree, table: Table) -> tuple[Judged, ...]:
 def _code(tree: Tree, code: CodeRead | None) -> tuple[Judged, ...]:
     if code is None:
         return ()
-    settings = tree.policy.in_general.rules.get(all_tests_recorded.RULE.name)
-    return all_tests_recorded.judge_code(code, tree.found, cast("all_tests_recorded.Settings | None", settings))
+    from gatecheck.rules import all_tests_recorded as rule  # noqa: PLC0415  # few policies ask for it
+
+    return rule.judge_code(code, tree.found, cast("rule.Settings | None", tree.policy.in_general.rules.get(_CODE)))

@@ -26,36 +26,18 @@ from gatecheck.policy import Applied, Policy
 from gatecheck.render import order, words
 from gatecheck.render.layout import paragraph
 from gatecheck.render.text import html
-from gatecheck.rules import (
-    false_positive_risk,
-    no_effect_support,
-    numbers_agree,
-    planned_split,
-    practical_size,
-    prior_needed,
-    reported_in_full,
-    robust,
-    screen,
-    wording,
-)
+from gatecheck.rules import rules_among
 from gatecheck.rules.engine import judge_all
 from gatecheck.rules.rule import Rule, Table
 from gatecheck.rules.words import describe_result
 from gatecheck.schema.records import read_record
 
+_WORDS = "wording"
 #: The rules that look at nothing but the record.
-BY_ITSELF: tuple[Rule, ...] = (
-    false_positive_risk.RULE,
-    prior_needed.RULE,
-    robust.RULE,
-    no_effect_support.RULE,
-    screen.RULE,
-    practical_size.RULE,
-    numbers_agree.RULE,
-    planned_split.RULE,
-    reported_in_full.RULE,
-    wording.RULE,
-)
+BY_ITSELF = frozenset({
+    "false-positive-risk", "prior-needed", "robust", "no-effect-support", "screen", "practical-size",
+    "numbers-agree", "planned-split", "reported-in-full", _WORDS,
+})  # fmt: skip
 CLOSING = (
     "the gate decides by the policy of the base, and with the other records (families, replications), plans, the "
     "history and waivers; none of these was looked at here."
@@ -165,7 +147,8 @@ def _judged(found: Found, applied: Applied) -> Judged:
 
 def _rules(found: Found) -> tuple[Rule, ...]:
     """The rules that can be answered: words that compare two effects need the records that they compare."""
-    return tuple(rule for rule in BY_ITSELF if rule is not wording.RULE or found.record.compares is None)
+    left_open = {_WORDS} if found.record.compares is not None else set()
+    return rules_among(BY_ITSELF - left_open)
 
 
 def _verdict(one: Judged) -> str:

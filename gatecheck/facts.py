@@ -7,9 +7,8 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from pathlib import Path
-from typing import cast
+from typing import TYPE_CHECKING, cast
 
-from gatecheck.compare.tests_recorded import Behind, behind_claims
 from gatecheck.model.code import CodeRead
 from gatecheck.model.found import Found
 from gatecheck.model.freshness import Freshness
@@ -18,9 +17,12 @@ from gatecheck.model.promise import PlanInTree, Promise
 from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Problem
 from gatecheck.policy import Applied, Policy
-from gatecheck.rules import all_promised_reported, all_tests_recorded, fresh, looks
 
-_PLANS = all_promised_reported.RULE.name
+if TYPE_CHECKING:
+    from gatecheck.compare.tests_recorded import Behind
+    from gatecheck.rules import all_tests_recorded
+
+_PLANS, _CODE, _FRESH, _LOOKS = "all-promised-reported", "all-tests-recorded", "fresh", "looks"
 
 
 @struct
@@ -59,13 +61,13 @@ def look_up(asked: Asked, found: Sequence[Found], applied: Sequence[Applied]) ->
     """
     promises, problems = _promises(asked, found)
     plans, unread = _plans(asked, promises)
-    code = _code(asked)
+    code, behind = _code(asked, found)
     return Facts(
         promises=promises,
         looks_seen=_looks_seen(asked, found, applied),
         inputs=_inputs(asked, found, applied),
         code=code,
-        tests_behind=() if code is None else behind_claims(found, code),
+        tests_behind=behind,
         plans=plans,
         plan_digests=_digests(plans, promises),
         problems=tuple(dict.fromkeys((*problems, *unread))),
@@ -113,7 +115,7 @@ def _digests(plans: Sequence[PlanInTree], promises: Sequence[Promise | None]) ->
 
 def _looks_seen(asked: Asked, found: Sequence[Found], applied: Sequence[Applied]) -> tuple[LooksSeen | None, ...]:
     """The looks that the history shows of each claim for which they are counted."""
-    rows = [row for row, one in enumerate(found) if one.record.claim and looks.RULE.name in applied[row].rules]
+    rows = [row for row, one in enumerate(found) if one.record.claim and _LOOKS in applied[row].rules]
     if not rows:
         return ()
     from gatecheck.history.looks import looks_of_records  # noqa: PLC0415  # few policies count looks
@@ -125,7 +127,7 @@ def _looks_seen(asked: Asked, found: Sequence[Found], applied: Sequence[Applied]
 
 
 def _inputs(asked: Asked, found: Sequence[Found], applied: Sequence[Applied]) -> tuple[Freshness, ...]:
-    wanted = [fresh.RULE.name in each.rules for each in applied]
+    wanted = [_FRESH in each.rules for each in applied]
     if not any(wanted):
         return ()
     from gatecheck.freshness import freshness  # noqa: PLC0415  # few policies ask for it
@@ -133,11 +135,14 @@ def _inputs(asked: Asked, found: Sequence[Found], applied: Sequence[Applied]) ->
     return freshness(asked.root, found, wanted)
 
 
-def _code(asked: Asked) -> CodeRead | None:
-    settings = asked.policy.in_general.rules.get(all_tests_recorded.RULE.name)
+def _code(asked: Asked, found: Sequence[Found]) -> tuple[CodeRead | None, tuple[Behind | None, ...]]:
+    """The tests that code calls, and how many of them stand behind each claim."""
+    settings = asked.policy.in_general.rules.get(_CODE)
     if settings is None:
-        return None
+        return None, ()
     from gatecheck.analysis import read_code  # noqa: PLC0415  # few policies ask for it
+    from gatecheck.compare.tests_recorded import behind_claims  # noqa: PLC0415
 
     named = cast("all_tests_recorded.Settings", settings)
-    return read_code(asked.root, named.include, named.exclude)
+    code = read_code(asked.root, named.include, named.exclude)
+    return code, behind_claims(found, code)

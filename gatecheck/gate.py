@@ -30,7 +30,7 @@ from gatecheck.permissions.commits import judged_commit
 from gatecheck.policies import Standing, standing_policy
 from gatecheck.policy import Applied, Policy
 from gatecheck.pull_request import SinceBase, prior_of, since_base
-from gatecheck.rules import RULES
+from gatecheck.rules import NAMES, rules_among
 from gatecheck.rules.engine import judge_all
 from gatecheck.rules.rule import Table
 from gatecheck.rules.words import describe_result
@@ -147,8 +147,9 @@ def _explained(request: Request, table: Table) -> frozenset[int]:
 
 def _settled(request: Request, table: Table) -> Settled:
     """What the rules find, and what of it is permitted all the same."""
-    setting = Setting(request.root, request.base, request.today, [rule.name for rule in RULES])
-    findings = judge_all(RULES, table, explain=_explained(request, table))
+    setting = Setting(request.root, request.base, request.today, NAMES)
+    rules = rules_among(name for applied in table.applied for name in applied.rules)
+    findings = judge_all(rules, table, explain=_explained(request, table))
     return permitted(setting, findings, table.columns.found)
 
 

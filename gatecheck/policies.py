@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from collections.abc import Iterator, Mapping
 from dataclasses import replace
 from pathlib import Path
 from typing import Any
@@ -11,14 +12,27 @@ from gatecheck import git
 from gatecheck.errors import CannotJudge
 from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Place, PolicyUsed, Problem
-from gatecheck.policy import STARTING_POLICY, Document, Policy, read_policy
-from gatecheck.rules import RULES
+from gatecheck.policy import STARTING_POLICY, Document, Policy, RuleSettings, read_policy
+from gatecheck.rules import ALWAYS_ON, NAMES, rule_named
 from gatecheck.scan.one_file import OneFile, read_one
 from gatecheck.schema.read import Fault
 
 POLICY_FILE = "gatecheck.yaml"
-_SETTINGS = {rule.name: rule.settings for rule in RULES}
-_ALWAYS_ON = frozenset(rule.name for rule in RULES if rule.always_on)
+
+
+class _SettingsOfRules(Mapping[str, type[RuleSettings]]):
+    """The type of the settings of each rule by its name; a rule is loaded where a policy names it."""
+
+    def __getitem__(self, name: str) -> type[RuleSettings]:
+        if name not in NAMES:
+            raise KeyError(name)
+        return rule_named(name).settings
+
+    def __iter__(self) -> Iterator[str]:
+        return iter(NAMES)
+
+    def __len__(self) -> int:
+        return len(NAMES)
 
 
 @struct
@@ -65,7 +79,7 @@ def standing_policy(root: Path, named: str | None, base: str | None) -> Standing
 
 def read_own_policy(document: Any) -> tuple[Policy | None, tuple[Fault, ...]]:
     """Read a parsed policy by the rules that there are; see `read_policy`."""
-    return read_policy(document, _SETTINGS, _ALWAYS_ON)
+    return read_policy(document, _SettingsOfRules(), ALWAYS_ON)
 
 
 def _from_file(file: OneFile, revision: str | None, notes: tuple[str, ...]) -> Standing:

@@ -12,7 +12,7 @@ from pathlib import Path
 from typing import Any
 
 import gatecheck.rules
-from gatecheck.rules import RULES
+from gatecheck.rules import ALWAYS_ON, NAMES, rules_among
 from gatecheck.rules.rule import Rule
 from gatecheck.schema.publish import json_schema
 
@@ -26,7 +26,7 @@ def page(rule: Rule) -> str:
     _, _, body = text.partition("\n\n")
     named = (
         "It is always on, unless the policy sets it otherwise."
-        if rule.always_on
+        if rule.name in ALWAYS_ON
         else "It is on where the policy names it."
     )
     spared = "".join(f"- {each.because}\n" for each in rule.exempt)
@@ -64,5 +64,5 @@ def _default(field: dataclasses.Field[Any]) -> str:
 
 if __name__ == "__main__":
     FOLDER.mkdir(exist_ok=True)
-    for one in RULES:
+    for one in rules_among(NAMES):
         (FOLDER / f"{one.name}.md").write_text(page(one), encoding="utf-8")

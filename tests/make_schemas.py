@@ -17,7 +17,7 @@ from gatecheck.model.record import Record
 from gatecheck.model.seal import Seal
 from gatecheck.model.waivers import Waivers
 from gatecheck.policy import PolicyDocument
-from gatecheck.rules import RULES
+from gatecheck.rules import NAMES, rules_among
 from gatecheck.schema.publish import json_schema
 
 FOLDER = Path(gatecheck.schema.__file__).parent
@@ -39,7 +39,7 @@ def schemas() -> dict[str, Schema]:
 def policy_schema() -> Schema:
     """The schema of a policy, in which each rule has its own settings; an override may give a part of them."""
     schema = json_schema(PolicyDocument, "policy/1")
-    whole = {rule.name: json_schema(rule.settings, rule.name) for rule in RULES}
+    whole = {rule.name: json_schema(rule.settings, rule.name) for rule in rules_among(NAMES)}
     off = {"type": "object", "properties": {"enforce": {"const": "off"}}, "required": ["enforce"]}
     _set_rules(schema, {name: _rule(each, off) for name, each in whole.items()})
     parts = {name: _rule({**each, "required": []}, off) for name, each in whole.items()}

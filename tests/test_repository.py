@@ -8,12 +8,13 @@ import re
 from collections.abc import Iterable, Iterator
 from pathlib import Path
 
+import make_pages
 import pytest
 from make_schemas import FOLDER, schemas, text_of
 from support import git
 
 from gatecheck.model.exit import Exit
-from gatecheck.rules import RULES
+from gatecheck.rules import ALWAYS_ON, NAMES, rules_among
 
 PROJECT = Path(__file__).parents[1]
 DOCUMENTS = ("README.md", "DEVELOPERS.md")
@@ -117,11 +118,19 @@ def test_exit_statuses_in_the_documents() -> None:
     assert [int(row) for row in rows] == [status.value for status in Exit]
 
 
-def test_each_rule_has_a_heading() -> None:
-    headings = re.findall(r"^#+ (.*)$", _text("README.md"), re.MULTILINE)
+def test_each_rule_has_a_row_and_its_page_as_generated() -> None:
+    """A rule is its module; what is told of it elsewhere follows from there."""
+    row = r"^\| \[`([a-z-]+)`\]\(gatecheck/rules/pages/([a-z-]+)\.md\) \|"
+    rows = re.findall(row, _text("README.md"), re.MULTILINE)
+    pages = {path.stem: path.read_text(encoding="utf-8") for path in make_pages.FOLDER.iterdir()}
 
-    told = {rule.name for rule in RULES for heading in headings if rule.name in re.findall(r"[a-z-]+", heading)}
-    assert told == {rule.name for rule in RULES}
+    assert rows == [(name, name) for name in NAMES]
+    assert pages == {rule.name: make_pages.page(rule) for rule in rules_among(NAMES)}
+
+
+def test_each_rule_is_the_module_of_its_name() -> None:
+    assert [rule.name for rule in rules_among(NAMES)] == list(NAMES)
+    assert set(NAMES) > ALWAYS_ON
 
 
 @pytest.mark.parametrize("kind", sorted(schemas()))

@@ -8,14 +8,13 @@ forms, from memory). One that is none of these disagrees.
 from __future__ import annotations
 
 import math
-import re
 from collections.abc import Callable
 
 import numpy as np
 
 from gatecheck.columns import CHI2, Columns, Interval, Z
 from gatecheck.compare.agreement import Agreement, Compared, Kind, gathered
-from gatecheck.compare.design_names import FISHER, MODELLED, PROPORTIONS, test_name
+from gatecheck.compare.design_names import FISHER, MODELLED, PROPORTIONS, says, test_name
 from gatecheck.model.record import Estimate, Record
 from gatecheck.model.struct import struct
 
@@ -42,11 +41,11 @@ _LARGEST = 2**53
 #: Of more tables with these margins an exact p is not summed.
 _MOST_TABLES = 1_000_000
 _PERCENT = 100.0
-_ADJUSTED = re.compile(r"(?<!un)adjusted|conditional|pooled|median|common", re.IGNORECASE)
-_ODDS = re.compile(r"odds ratio", re.IGNORECASE)
-_RISKS = re.compile(r"risk ratio|relative risk|ratio of proportions", re.IGNORECASE)
-_DIFFERENCE = re.compile(r"difference", re.IGNORECASE)
-_LOGARITHM = re.compile(r"\blog", re.IGNORECASE)
+_ADJUSTED = r"(?<!un)adjusted|conditional|pooled|median|common"
+_ODDS = r"odds ratio"
+_RISKS = r"risk ratio|relative risk|ratio of proportions"
+_DIFFERENCE = r"difference"
+_LOGARITHM = r"\blog"
 
 
 @struct
@@ -101,7 +100,7 @@ def _table(record: Record) -> _Table | None:
 def _crude(columns: Columns, row: int, record: Record) -> _Table | None:
     """The counts, where the test is plainly one of two proportions."""
     name = test_name(columns, row)
-    return _table(record) if PROPORTIONS.search(name) and not MODELLED.search(name) else None
+    return _table(record) if says(PROPORTIONS, name) and not says(MODELLED, name) else None
 
 
 def _statistic(columns: Columns, row: int, record: Record) -> Compared | None:
@@ -178,7 +177,7 @@ def _variance_of_risks(table: _Table) -> float:
 
 def _estimate(columns: Columns, row: int, record: Record) -> Compared | None:
     table, given = _crude(columns, row, record), record.estimate
-    if table is None or given is None or _ADJUSTED.search(given.measure):
+    if table is None or given is None or says(_ADJUSTED, given.measure):
         return None
     forms = [form for form in _effects(table, given) if math.isfinite(form)]
     null, log_scale = float(columns.estimate.null[row]), bool(columns.estimate.log_scale[row])
@@ -191,13 +190,13 @@ def _estimate(columns: Columns, row: int, record: Record) -> Compared | None:
 
 def _effects(table: _Table, estimate: Estimate) -> tuple[float, ...]:
     """The effect in either direction, also with half a unit added to every cell as some programs do."""
-    logarithm = _LOGARITHM.search(estimate.measure) is not None
-    if _ODDS.search(estimate.measure):
+    logarithm = says(_LOGARITHM, estimate.measure)
+    if says(_ODDS, estimate.measure):
         halves = _Table(table.events1 + 0.5, table.n1 + 1, table.events2 + 0.5, table.n2 + 1)
         return _both_ways(logarithm, _log_odds(table), _log_odds(halves))
-    if _RISKS.search(estimate.measure):
+    if says(_RISKS, estimate.measure):
         return _both_ways(logarithm, _log_risks(table))
-    if _DIFFERENCE.search(estimate.measure) and estimate.scale == "linear":
+    if says(_DIFFERENCE, estimate.measure) and estimate.scale == "linear":
         difference = table.events1 / table.n1 - table.events2 / table.n2
         return difference, -difference, _PERCENT * difference, -_PERCENT * difference
     return ()
@@ -210,7 +209,7 @@ def _both_ways(as_logarithm: bool, *logs: float) -> tuple[float, ...]:
 
 def _error(columns: Columns, row: int, record: Record) -> Compared | None:
     table, given = _crude(columns, row, record), record.estimate
-    if table is None or given is None or given.standard_error is None or _ADJUSTED.search(given.measure):
+    if table is None or given is None or given.standard_error is None or says(_ADJUSTED, given.measure):
         return None
     forms = [form for form in _errors(table, given) if math.isfinite(form)]
     if not forms:
@@ -220,11 +219,11 @@ def _error(columns: Columns, row: int, record: Record) -> Compared | None:
 
 
 def _errors(table: _Table, estimate: Estimate) -> tuple[float, ...]:
-    if _ODDS.search(estimate.measure):
+    if says(_ODDS, estimate.measure):
         return (math.sqrt(_variance_of_odds(table)),)
-    if _RISKS.search(estimate.measure):
+    if says(_RISKS, estimate.measure):
         return (math.sqrt(_variance_of_risks(table)),)
-    if not _DIFFERENCE.search(estimate.measure) or estimate.scale != "linear":
+    if not says(_DIFFERENCE, estimate.measure) or estimate.scale != "linear":
         return ()
     p1, p2 = table.events1 / table.n1, table.events2 / table.n2
     pooled = (table.events1 + table.events2) / (table.n1 + table.n2)
@@ -237,9 +236,9 @@ def _errors(table: _Table, estimate: Estimate) -> tuple[float, ...]:
 def _exact(columns: Columns, row: int, record: Record) -> Compared | None:
     """Fisher's exact p, by the tables that are less probable, doubled or of one side."""
     table, test = _table(record), record.test
-    if table is None or test is None or test.p is None or not FISHER.search(test_name(columns, row)):
+    if table is None or test is None or test.p is None or not says(FISHER, test_name(columns, row)):
         return None
-    if test.p_kind not in {"exact", "raw"} or MODELLED.search(test_name(columns, row)):
+    if test.p_kind not in {"exact", "raw"} or says(MODELLED, test_name(columns, row)):
         return None
     forms = _fisher(table, one_sided=test.sides == 1)
     reported = test.p.as_rounded()

@@ -6,8 +6,6 @@ variance, all in their textbook forms (from memory); a test is set against the o
 
 from __future__ import annotations
 
-import re
-
 import numpy as np
 
 from gatecheck.columns import Booleans, Columns, Floats, Integers, Interval, T, Z
@@ -34,9 +32,9 @@ from gatecheck.model.struct import struct
 _LOST = 1e-12
 #: The correction for small samples by its approximation and exactly (common practice, no source).
 _CORRECTION = 2e-3
-_STANDARDISED = re.compile(r"standardi[sz]ed|cohen|hedges|glass|\bsmd\b|effect size", re.IGNORECASE)
-_DIFFERENCE = re.compile(r"difference|change|\bmean", re.IGNORECASE)
-_Z_OF_MEANS = re.compile(r"two[- ]sample z", re.IGNORECASE)
+_STANDARDISED = r"standardi[sz]ed|cohen|hedges|glass|\bsmd\b|effect size"
+_DIFFERENCE = r"difference|change|\bmean"
+_Z_OF_MEANS = r"two[- ]sample z"
 
 
 def group_numbers(columns: Columns) -> tuple[Agreement, ...]:

@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Sequence
 
 import numpy as np
 
 from gatecheck.columns import Booleans, Columns, Floats, Integers, Interval
 from gatecheck.compare.agreement import overlap, widened
-from gatecheck.compare.design_names import MODELLED, named
+from gatecheck.compare.design_names import MODELLED, named, says
 from gatecheck.compare.written import rounded_alike
 from gatecheck.model.numbers import Reported
 from gatecheck.model.struct import struct
@@ -22,9 +21,7 @@ HARMLESS = (
     "the summaries are of another scale or of all units before exclusions",
     "a standard error stands for a standard deviation",
 )
-_OTHER_SCALE = re.compile(
-    r"ratio|percent|%|fold|\blog|median|rank|hodges|adjusted|relative|geometric", re.IGNORECASE
-)
+_OTHER_SCALE = r"ratio|percent|%|fold|\blog|median|rank|hodges|adjusted|relative|geometric"
 
 
 @struct
@@ -88,7 +85,7 @@ def unmodelled(columns: Columns, rows: Integers) -> Booleans:
     candidates = np.zeros(len(columns.found), np.bool_)
     candidates[rows] = True
     modelled = named(columns, candidates, MODELLED)
-    scaled = np.array([_OTHER_SCALE.search(_measure(columns, row)) is not None for row in rows.tolist()], np.bool_)
+    scaled = np.array([says(_OTHER_SCALE, _measure(columns, row)) for row in rows.tolist()], np.bool_)
     return ~modelled[rows] & ~scaled & ~columns.estimate.log_scale[rows]
 
 
@@ -97,12 +94,12 @@ def _measure(columns: Columns, row: int) -> str:
     return "" if estimate is None else estimate.measure
 
 
-def measured(columns: Columns, rows: Integers, words: re.Pattern[str]) -> Booleans:
+def measured(columns: Columns, rows: Integers, words: str) -> Booleans:
     """Which rows name what they estimate by one of `words`."""
-    return np.array([words.search(_measure(columns, row)) is not None for row in rows.tolist()], np.bool_)
+    return np.array([says(words, _measure(columns, row)) for row in rows.tolist()], np.bool_)
 
 
-def named_rows(columns: Columns, rows: Integers, words: re.Pattern[str]) -> Booleans:
+def named_rows(columns: Columns, rows: Integers, words: str) -> Booleans:
     """Which rows name their test by one of `words`."""
     candidates = np.zeros(len(columns.found), np.bool_)
     candidates[rows] = True

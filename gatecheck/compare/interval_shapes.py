@@ -2,29 +2,25 @@
 
 from __future__ import annotations
 
-import re
-
 import numpy as np
 
 from gatecheck import weigh
 from gatecheck.columns import CHI2, Booleans, Columns, F, Floats, Interval, R, T, Z
 from gatecheck.compare.agreement import in_size, minus, over_ends, where
-from gatecheck.compare.design_names import named
+from gatecheck.compare.design_names import named, says
 
 ESTIMATE, ERROR, INTERVAL, STATISTIC = "the estimate", "the standard error", "the interval", "the statistic"
 #: Relative differences that two careful programs may show between multiples of an error (1.96 for 1.959964).
 SAME_MULTIPLE = 1e-3
-_OTHER_INTERVAL = re.compile(
+_OTHER_INTERVAL = (
     r"bootstrap|percentile|\bbca\b|profile|credible|posterior|bayes|wilson|clopper|exact|binomial|score|jeffreys"
-    r"|newcombe|fieller|jackknife|simultaneous|likelihood",
-    re.IGNORECASE,
+    r"|newcombe|fieller|jackknife|simultaneous|likelihood"
 )
-_EFFECT_SIZE = re.compile(
+_EFFECT_SIZE = (
     r"standardi[sz]ed|cohen|hedges|glass|\bsmd\b|effect size|\beta\b|eta[- ]?squared|η|omega|\br ?(2|²|squared)"
-    r"|cram[eé]r|\bphi\b|correlation|median|hodges|shift|\bauc\b|common language|rank|dominance|cliff",
-    re.IGNORECASE,
+    r"|cram[eé]r|\bphi\b|correlation|median|hodges|shift|\bauc\b|common language|rank|dominance|cliff"
 )
-_BY_RANKS = re.compile(r"\brank|wilcoxon|mann|kruskal|signed", re.IGNORECASE)
+_BY_RANKS = r"\brank|wilcoxon|mann|kruskal|signed"
 
 
 def half_width(columns: Columns) -> Interval:
@@ -66,7 +62,7 @@ def otherwise_made(columns: Columns, rows: Booleans) -> Booleans:
     for row in np.flatnonzero(rows & ~found).tolist():
         record = columns.found[row].record
         told = ((record.estimate.measure if record.estimate else ""), *record.tags)
-        found[row] = any(_OTHER_INTERVAL.search(text) for text in told)
+        found[row] = any(says(_OTHER_INTERVAL, text) for text in told)
     return found
 
 
@@ -78,7 +74,7 @@ def apart_from_test(columns: Columns, rows: Booleans) -> Booleans:
     found = named(columns, rows, _BY_RANKS)
     for row in np.flatnonzero(rows & ~found).tolist():
         estimate = columns.found[row].record.estimate
-        found[row] = estimate is not None and _EFFECT_SIZE.search(estimate.measure) is not None
+        found[row] = estimate is not None and says(_EFFECT_SIZE, estimate.measure)
     return found
 
 

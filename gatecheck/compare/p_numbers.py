@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 
 import numpy as np
@@ -18,6 +19,8 @@ from gatecheck.model.record import Family, Record
 _SAME_LOG_P = 1e-6
 #: Smallest double above 0: a p below it is written as 0.
 _LOG_SMALLEST = -744.4
+#: Euler's constant.
+_EULER = 0.5772156649015329
 #: The procedures by which an adjusted p is at most the raw one times the size of the family.
 _AT_MOST_TIMES_SIZE = {"bonferroni", "holm", "hochberg", "hommel", "benjamini-hochberg"}
 
@@ -148,8 +151,8 @@ def _multiples_of_raw(family: Family | None) -> tuple[float, float]:
     if family is None or family.size is None:
         return 1.0, np.inf
     if family.procedure == "benjamini-yekutieli":
-        # The sum of 1 / k up to the size is below this, and for large ones barely so.
-        return 1.0, family.size * (1 + float(np.log(family.size)))
+        # The sum of 1 / k up to the size is below this, and barely so.
+        return 1.0, family.size * (math.log(family.size) + _EULER + 1 / (2 * family.size))
     if family.procedure not in _AT_MOST_TIMES_SIZE:
         return 1.0, np.inf
     return (float(family.size) if family.procedure == "bonferroni" else 1.0), float(family.size)

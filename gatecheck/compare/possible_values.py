@@ -72,7 +72,7 @@ def of_items(record: Record) -> tuple[Group, ...]:
     """The groups whose scores average whole-number items; of numbers too large to be told apart, none."""
     groups = () if record.sample is None else record.sample.groups
     return tuple(
-        group for group in groups if 0 < group.n * (group.integer_items or 0) and _largest(group) < _LARGEST
+        group for group in groups if group.n * (group.integer_items or 0) > 0 and _largest(group) < _LARGEST
     )
 
 

@@ -7,13 +7,12 @@ measurements of one unit. Then it tells nothing of other units.
 from __future__ import annotations
 
 import math
-import re
 
 import numpy as np
 
 from gatecheck.columns import Columns, T, Z
 from gatecheck.compare.agreement import Agreement, Compared, Kind, gathered
-from gatecheck.compare.design_names import MODELLED, test_name
+from gatecheck.compare.design_names import MODELLED, says, test_name
 from gatecheck.model.numbers import Reported, exact
 from gatecheck.model.record import Estimate, Sample
 from gatecheck.model.struct import struct
@@ -34,20 +33,16 @@ _LEAST_OF_INDEPENDENT = 0.75
 _SAME = 1e-6
 _WHOLE = 100.0
 _MULTIPLE = 1.959964
-_IN_PERCENT = re.compile(r"^\s*(%|percent|per cent|points?|pp|percentage points?|% points?)\s*$", re.IGNORECASE)
-_PROPORTION = re.compile(
+_IN_PERCENT = r"^\s*(%|percent|per cent|points?|pp|percentage points?|% points?)\s*$"
+_PROPORTION = (
     r"accuracy|proportion|percentage|share|prevalence|sensitivity|specificity|conversion"
-    r"|(pass|success|error|response|hit|failure|survival) rate",
-    re.IGNORECASE,
+    r"|(pass|success|error|response|hit|failure|survival) rate"
 )
-_NO_PROPORTION = re.compile(
-    r"difference|ratio\b|change|log|mean|increase|lift|explained|balanced|weighted|adjusted|kappa|versus|\bvs\b",
-    re.IGNORECASE,
+_NO_PROPORTION = (
+    r"difference|ratio\b|change|log|mean|increase|lift|explained|balanced|weighted|adjusted|kappa|versus|\bvs\b"
 )
 #: Units whose score is itself a share of many others.
-_OF_MANY = re.compile(
-    r"seed|run|fold|replic|repeat|session|site|cluster|batch|school|class|clinic|hospital|region", re.IGNORECASE
-)
+_OF_MANY = r"seed|run|fold|replic|repeat|session|site|cluster|batch|school|class|clinic|hospital|region"
 
 
 @struct
@@ -67,7 +62,7 @@ def proportion_numbers(columns: Columns) -> tuple[Agreement, ...]:
         estimate, sample = one.record.estimate, one.record.sample
         if estimate is None or sample is None or not _is_proportion(estimate, sample):
             continue
-        if MODELLED.search(test_name(columns, row)):
+        if says(MODELLED, test_name(columns, row)):
             continue
         value, error = _value(columns, row, sample), _error(columns, row, estimate, sample)
         if value is not None:
@@ -80,14 +75,14 @@ def proportion_numbers(columns: Columns) -> tuple[Agreement, ...]:
 
 def _is_proportion(estimate: Estimate, sample: Sample) -> bool:
     measure = estimate.measure
-    named = _PROPORTION.search(measure) is not None and _NO_PROPORTION.search(measure) is None
+    named = says(_PROPORTION, measure) and not says(_NO_PROPORTION, measure)
     return named and len(sample.groups) <= 1 and estimate.scale == "linear"
 
 
 def proportion_of(estimate: Estimate, sample: Sample) -> Proportion:
     """The proportion that a record estimates; an n of 0 where it gives none."""
     n = sample.groups[0].n if sample.n is None and sample.groups else sample.n
-    unit = _WHOLE if estimate.unit is not None and _IN_PERCENT.match(estimate.unit) else 1.0
+    unit = _WHOLE if estimate.unit is not None and says(_IN_PERCENT, estimate.unit) else 1.0
     return Proportion(estimate.value.value / unit, float(n or 0), unit)
 
 
@@ -107,7 +102,7 @@ def _error(columns: Columns, row: int, estimate: Estimate, sample: Sample) -> Co
     """The standard error, reported or implied, against that of as many independent units."""
     found, error = proportion_of(estimate, sample), implied_error(columns, row)
     unknown = not found.n or not 0 < found.share < 1 or np.isnan(error.value)
-    if unknown or columns.estimate.adjusted[row] or _OF_MANY.search(sample.unit or ""):
+    if unknown or columns.estimate.adjusted[row] or says(_OF_MANY, sample.unit or ""):
         return None
     given, null = columns.estimate.value, columns.estimate.null[row]
     ends = (given.low[row] + null, given.high[row] + null, null)

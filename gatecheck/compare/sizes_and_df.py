@@ -22,6 +22,7 @@ from gatecheck.compare.design_names import (
     T_TEST,
     WELCH,
     WITHIN_UNITS,
+    says,
     test_name,
 )
 from gatecheck.model.record import Sample
@@ -101,8 +102,8 @@ def _sizes(sample: Sample) -> _Sizes:
 def _independent_groups(columns: Columns, row: int, sizes: _Sizes) -> Compared | None:
     """The units of independent groups together against those in all."""
     name = test_name(columns, row)
-    independent = INDEPENDENT.search(name) or _is_two_sample_t(columns, row, sizes)
-    if not independent or PAIRED.search(name) or MODELLED.search(name):
+    independent = says(INDEPENDENT, name) or _is_two_sample_t(columns, row, sizes)
+    if not independent or says(PAIRED, name) or says(MODELLED, name):
         return None
     if len(sizes.groups) < _PAIR or np.isnan(sizes.n):
         return None
@@ -113,7 +114,7 @@ def _independent_groups(columns: Columns, row: int, sizes: _Sizes) -> Compared |
 def _is_two_sample_t(columns: Columns, row: int, sizes: _Sizes) -> bool:
     """Whether a t, whatever its name, has the df of two independent groups."""
     df, test = columns.test.df1, columns.test
-    if test.statistic[row] != T or len(sizes.groups) != _PAIR or not T_TEST.search(test_name(columns, row)):
+    if test.statistic[row] != T or len(sizes.groups) != _PAIR or not says(T_TEST, test_name(columns, row)):
         return False
     pooled = df.low[row] <= sizes.in_groups - 2 <= df.high[row]
     return bool(pooled or _fractional(df.value[row]))
@@ -122,7 +123,7 @@ def _is_two_sample_t(columns: Columns, row: int, sizes: _Sizes) -> bool:
 def _df_of_design(columns: Columns, row: int, sizes: _Sizes) -> Compared | None:
     """The df against those of the design, where name, statistic and groups tell it."""
     name, record, test = test_name(columns, row), columns.found[row].record, columns.test
-    if MODELLED.search(name) or record.covariates or np.isfinite(sizes.clusters):
+    if says(MODELLED, name) or record.covariates or np.isfinite(sizes.clusters):
         return None
     if test.statistic[row] == CHI2:
         return _df_of_table(columns, row, name)
@@ -137,16 +138,16 @@ def _df_of_design(columns: Columns, row: int, sizes: _Sizes) -> Compared | None:
 def _df_of_t(columns: Columns, row: int, sizes: _Sizes) -> tuple[float, ...]:
     """The df that a t has if every unit counted was analysed, by each design that it may be of."""
     name, n = test_name(columns, row), sizes.counted
-    known = not name or T_TEST.search(name) or PAIRED.search(name)
+    known = not name or says(T_TEST, name) or says(PAIRED, name)
     if len(sizes.groups) > _PAIR or np.isnan(n) or not known:
         return ()
     alike = len(set(sizes.groups)) == 1
     if len(sizes.groups) == _PAIR:
-        pairs = (sizes.groups[0] - 1.0,) if alike and not INDEPENDENT.search(name) else ()
-        return pairs if PAIRED.search(name) else (n - 2, *pairs)
-    if PAIRED.search(name) or (sizes.groups and not INDEPENDENT.search(name)):
+        pairs = (sizes.groups[0] - 1.0,) if alike and not says(INDEPENDENT, name) else ()
+        return pairs if says(PAIRED, name) else (n - 2, *pairs)
+    if says(PAIRED, name) or (sizes.groups and not says(INDEPENDENT, name)):
         return (n - 1,)
-    return (n - 2,) if INDEPENDENT.search(name) else ((n - 1, n - 2) if name else ())
+    return (n - 2,) if says(INDEPENDENT, name) else ((n - 1, n - 2) if name else ())
 
 
 def _df_of_r(_: Columns, __: int, sizes: _Sizes) -> tuple[float, ...]:
@@ -157,7 +158,7 @@ def _df_of_r(_: Columns, __: int, sizes: _Sizes) -> tuple[float, ...]:
 def _df_of_f(columns: Columns, row: int, sizes: _Sizes) -> tuple[float, ...]:
     """The df within groups of a one-way analysis of variance."""
     groups = len(sizes.groups)
-    one_way = ONE_WAY.search(test_name(columns, row)) and columns.test.df1.value[row] == groups - 1
+    one_way = says(ONE_WAY, test_name(columns, row)) and columns.test.df1.value[row] == groups - 1
     return (sizes.in_groups - groups,) if one_way and not _fractional(columns.test.df2.value[row]) else ()
 
 
@@ -179,7 +180,7 @@ def _df_of_table(columns: Columns, row: int, name: str) -> Compared | None:
     sample, df = columns.found[row].record.sample, columns.test.df1
     groups = () if sample is None else sample.groups
     counted = len(groups) > 1 and all(group.events is not None for group in groups)
-    if not counted or not PROPORTIONS.search(name) or not np.isfinite(df.value[row]):
+    if not counted or not says(PROPORTIONS, name) or not np.isfinite(df.value[row]):
         return None
     expected = float(len(groups) - 1)
     return Compared(bool(df.low[row] <= expected <= df.high[row]), expected, expected)
@@ -194,7 +195,7 @@ def _by_welch(columns: Columns, row: int, sizes: _Sizes) -> bool:
     df = columns.test.df1
     if columns.test.statistic[row] != T or len(sizes.groups) != _PAIR:
         return False
-    if WELCH.search(test_name(columns, row)) or _fractional(df.value[row]):
+    if says(WELCH, test_name(columns, row)) or _fractional(df.value[row]):
         least = min(sizes.groups) - 1 - sizes.excluded
         return bool(df.high[row] >= least and df.low[row] <= sizes.in_groups - 2)
     from gatecheck.compare.group_numbers import has_welch_df  # noqa: PLC0415  # few df are none of the plain ones
@@ -207,7 +208,7 @@ def _df_of_units(columns: Columns, row: int, sizes: _Sizes) -> Compared | None:
     test, name = columns.test, test_name(columns, row)
     of_f = test.statistic[row] == F
     df = test.df2 if of_f else test.df1
-    plain = test.statistic[row] in {T, R, F} and not WITHIN_UNITS.search(name) and np.isfinite(sizes.most)
+    plain = test.statistic[row] in {T, R, F} and not says(WITHIN_UNITS, name) and np.isfinite(sizes.most)
     if not plain or not np.isfinite(df.value[row]) or _fractional(df.value[row]):
         return None
     covariates = columns.found[row].record.covariates or ()

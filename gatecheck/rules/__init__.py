@@ -1,45 +1,44 @@
-"""The rules of a reporting policy: an explicit list, one module each."""
+"""The rules of a reporting policy: an explicit list, one module each, loaded where a policy has them on."""
 
-from gatecheck.rules import (
-    all_promised_reported,
-    all_tests_recorded,
-    false_positive_risk,
-    family,
-    fresh,
-    looks,
-    no_effect_support,
-    numbers_agree,
-    planned_split,
-    practical_size,
-    prior_needed,
-    registered,
-    replication,
-    reported_in_full,
-    robust,
-    screen,
-    text_agrees,
-    wording,
-)
+from __future__ import annotations
+
+from collections.abc import Iterable
+from importlib import import_module
+
 from gatecheck.rules.rule import Rule
 
-#: Every rule, in the order in which findings are told.
-RULES: tuple[Rule, ...] = (
-    false_positive_risk.RULE,
-    prior_needed.RULE,
-    robust.RULE,
-    no_effect_support.RULE,
-    looks.RULE,
-    family.RULE,
-    all_tests_recorded.RULE,
-    registered.RULE,
-    all_promised_reported.RULE,
-    replication.RULE,
-    screen.RULE,
-    practical_size.RULE,
-    numbers_agree.RULE,
-    planned_split.RULE,
-    reported_in_full.RULE,
-    wording.RULE,
-    fresh.RULE,
-    text_agrees.RULE,
+#: Every rule, in the order in which findings are told; its module has its name.
+NAMES = (
+    "false-positive-risk",
+    "prior-needed",
+    "robust",
+    "no-effect-support",
+    "looks",
+    "family",
+    "all-tests-recorded",
+    "registered",
+    "all-promised-reported",
+    "replication",
+    "screen",
+    "practical-size",
+    "numbers-agree",
+    "planned-split",
+    "reported-in-full",
+    "wording",
+    "fresh",
+    "text-agrees",
 )
+#: The rules that hold although a policy does not name them.
+ALWAYS_ON = frozenset({"no-effect-support", "screen", "numbers-agree", "planned-split"})
+
+
+def rule_named(name: str) -> Rule:
+    """Return the rule of that name, one of `NAMES`."""
+    rule: Rule = import_module(f"gatecheck.rules.{name.replace('-', '_')}").RULE
+    return rule
+
+
+def rules_among(names: Iterable[str]) -> tuple[Rule, ...]:
+    """Return the rules of these names, in the order in which findings are told."""
+    wanted = frozenset(names)
+    return tuple(rule_named(name) for name in NAMES if name in wanted)

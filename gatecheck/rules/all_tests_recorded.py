@@ -1,9 +1,26 @@
 """Rule `all-tests-recorded`: every hypothesis test that the code of a repository calls has a record.
 
-It judges files of code, where tests without a record are a finding, and claims: the tests without a record count in
-the family of each claim that the same file made, and where the claim declares a smaller one it falls short. Tests
-that are recorded count in the families that their records name and in no other, and checks of assumptions count in
-none. Exempt are safety outcomes, and claims whose plan came before the data, as that says what was to be tested.
+Every hypothesis test that the code of the repository calls has a record. Python and R scripts, notebooks, R
+Markdown and Quarto (`include`, `exclude`; folders named `tests` are left out unless the policy says otherwise)
+are parsed and never run. Counted are the tests of scipy, statsmodels, pingouin, lifelines and scikit-posthocs, of
+R and of its common packages, by the lists in `gatecheck/analysis/libraries`; a fitted model counts as one test
+where someone looks at its p-values. Checks of assumptions, such as of normality or equal variances, are told
+apart, and adjusted p-values and simulations on random numbers are no tests. In a loop over a list that stands in
+the text each round counts; else a loop makes at least one, and so does a function that the file itself calls.
+
+A test has a record where its result goes to `declare`, or where a record that names the file in
+`provenance.code`, or that stands among the outputs of the notebook, is left to be its own. Else it is listed at
+the file. It also counts in the family of each claim that the same file made: a claim falls short where its family
+is smaller than its members and these tests together. Tests that are recorded count in the families that their
+records name and in no other, so that recorded exploratory work costs a planned claim nothing. Exempt are claims
+whose plan came before the data, and safety outcomes. With `unknown: block` code that cannot be read, and calls of
+which the text does not tell whether they are made, make the verdict undecided; as it is without a word, they are
+noted. A library that is in none of the lists, and a test that is written out by hand, are not seen.
+
+> No record was found for 10 hypothesis tests in analysis/soil.py, so at least 11 tests stand behind this claim,
+> which names no family. Record the 10, without a claim where nothing is claimed, or report the claim in a
+> family of 11 with all its members.
+
 That all analyses are to be reported, whatever they found: ASA statement on p-values (2016), principle 4.
 """
 

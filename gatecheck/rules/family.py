@@ -1,13 +1,24 @@
 """Rule `family`: the set of tests behind a claim is whole, has one procedure, and the claim stands in it.
 
-All members are in the tree, as many as declared; they declare one size and one procedure; the member's p, adjusted
-anew from the raw p of all of them, is at most `alpha`; and an adjusted p that is reported agrees with that. The
-likelihood ratio plays no part here: it comes from the raw result. Safety outcomes are exempt.
+The set of tests behind a claim (`family: {name, size, procedure}`) is whole: as many members in the tree as
+declared, with one size and one procedure. The claim's p, adjusted anew from the raw p of all members, is at most
+`alpha` (0.05 unless the policy says otherwise), and an `adjusted_p` that is reported agrees with that.
+Procedures: `bonferroni`, `holm`, `hochberg`, `hommel`, `benjamini-hochberg`, `benjamini-yekutieli`,
+`fixed-sequence` (in the order of `family.position`), and `none`, where the raw p counts. An absent member counts
+as one that showed nothing. Safety outcomes are exempt.
 
-By `weighted-holm` (Holm 1979, section 4) and `graphical` (Bretz and others 2009, from memory) each member has a
-share of alpha of its own, `family.weight`; in a graph a member that is rejected passes parts of it on by
-`family.passes_on`. Of a large family it is also told how many members seem to have no effect, which changes no
-decision.
+Two more procedures give each member a share of alpha of its own, `family.weight`, as it was planned. In
+`weighted-holm` the shares are above 0 and sum to 1 (to within 0.01, for they are written in few decimals). In
+`graphical` they sum to at most 1 and may be 0, and a member that is rejected passes parts of its share, at most 1
+in sum, on to others: `passes_on: {"growth/height": 0.5, "growth/leaf-area": 0.5}`. Where a share is missing, or
+names no member, the claim is undecided. Of a family of 100 members or more it is also told how large the share of
+true nulls in it seems to be (Storey 2002, at 0.5), and so how many of those rejected are expected to be false;
+from that size on the standard error of that estimate is at most 0.1. It changes no decision, and is not told of
+procedures in which the members differ in their order or share.
+
+With a base, a member that the family had there and has no more, unless an `aliases` entry explains it, and a size
+declared smaller than there make it fall short too. The likelihood ratio plays no part here: it comes from the raw
+result. `weighted-holm` is Holm 1979, section 4; `graphical` is Bretz and others 2009 (from memory).
 """
 
 from __future__ import annotations

@@ -1,8 +1,13 @@
 """Rule `fresh`: a result was made from the inputs that are in the tree now.
 
-The SHA-256 digests in `provenance.inputs` are those of the files; of a file kept by Git LFS its pointer tells the
-digest. That the code changed in a later commit than the record is only said, since much code changes without effect
-on a result; with `code: true` it is a shortfall too. Common practice, no source.
+A result was made from the files that are here: the SHA-256 digests in `provenance.inputs` (`{path, sha256}`,
+which `declare(..., inputs=[...])` writes) are those of the files in the tree. Line ends may differ, as a checkout
+may convert them, and of a file kept by Git LFS its pointer tells the digest. A file that differs or is gone falls
+short; an input without a digest, or outside of the repository, is undecided, and so is a claim that names no
+input. That the code (`provenance.code`) changed in a later commit than the record is only said, unless the policy
+has `code: true`.
+
+Common practice, no source.
 """
 
 from __future__ import annotations

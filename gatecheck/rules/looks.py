@@ -1,10 +1,20 @@
 """Rule `looks`: an interim look was planned with a boundary, and the result is beyond it.
 
-Each look at 0.05 without a boundary adds to the type I error: five of them make it 0.142 (Armitage, McPherson and
-Rowe, Journal of the Royal Statistical Society A 132 (1969) 235-244). A boundary chosen after the fact is no help.
-Looks are taken as equally spaced unless `look.schedule` gives the information at each. In a git repository the
-looks are also counted in the history of the record: what counts is the greater number. Setting: `alpha`, the type
-I error of all looks together, where the record gives no `test.alpha`.
+A claim at an interim look (`look: {number, planned, boundary}`) was planned with a boundary, and its p is within
+that boundary's nominal p at this look, computed exactly by recursive numerical integration. `boundary` is
+`pocock`, `obrien-fleming`, `haybittle-peto`, `spending-obrien-fleming` or `spending-pocock`; looks are equally
+spaced unless `look.schedule` gives the information at each. Looks without a boundary fall short, with what they
+really cost: five at 0.05 have a type I error of 0.142. `alpha` is the record's `test.alpha`, else that of the
+policy (0.05).
+
+Armitage, McPherson and Rowe, Journal of the Royal Statistical Society A 132 (1969) 235-244, have the errors of
+repeated looks. In a git repository the looks are also counted in the history: a result with other numbers from
+more units than the one before it is a look, a rerun is none, and other numbers from as many or fewer units are
+listed as other data or code. Every commit that leads to `HEAD` counts, side branches too, and so do earlier ids
+under `aliases`. The greater of the looks told and the looks seen decides; a boundary that the first look did not
+tell is no plan, unless the record names a registration. Where the history is cut (a shallow or partial clone) the
+claim is undecided and the fetch that mends it is named. In a folder without git only the look that the record
+tells counts.
 """
 
 from __future__ import annotations

@@ -1,10 +1,29 @@
 """Rule `numbers-agree`: the figures of a record that determine each other agree within their rounding.
 
-Statistic, degrees of freedom, sides and p; estimate, standard error, interval, statistic and p; means, standard
-deviations, counts and sizes of groups against statistic and effect; degrees of freedom against units, exclusions
-and clusters; an adjusted p against the raw one; and values that whole numbers cannot give. A p that is adjusted,
-exact or from resampling is not compared with a statistic, and an interval that is not symmetric about its estimate
-not with a standard error.
+Figures that determine each other agree within the rounding of what was reported:
+
+- statistic, df, sides and p; an adjusted p and the raw one by the declared procedure and size of the family;
+- estimate, standard error, interval with its level, statistic and p, ratios on the log scale; a correlation and
+  its r;
+- means, standard deviations and sizes of groups against statistic (Student's, Welch's, of one sample, one-way
+  analysis of variance), difference, standardised effect, standard error and Welch's df; counts of events against
+  every form of z and chi-squared of two proportions, odds and risk ratios, differences, their errors, and
+  Fisher's exact p;
+- df against the units of the groups: who is missing stands in `sample.excluded` with the reason; and against what
+  the experimental unit allows: more df than clusters or units, and an error smaller than that of so many
+  independent units, count measurements of the same units as units;
+- values that whole numbers can give: means and standard deviations of `integer_items`, events of n, a permutation
+  p of its `resamples`.
+
+Each finding names the figure that would be consistent, the odd one out where the others bear each other out, and
+the harmless explanations to rule out first. What the name of a test does not tell is not assumed: models with
+covariates, mixed and clustered models, stratified and rank tests are not set against plain formulas. Not
+compared, since it is no fault: a p that is `adjusted`, `exact` or from `permutation` with a statistic; what is
+adjusted with what is not (`explain` says so); an interval that is not symmetric about its estimate (profile,
+bootstrap) with a standard error, unless one limit lies just where that error puts it; a score test with a Wald
+interval where they differ a little. A number written with few digits is taken as rounded to them, and one that
+may have lost its trailing zeros like those beside it. Of 4,664 faults seeded in computed results, one figure
+each, it found 95 %, with no alarm on the results as they were (`tests/bench/bench_recall.py`).
 """
 
 from __future__ import annotations
@@ -20,6 +39,7 @@ from gatecheck.rules.rule import Judgement, Rule, Said, Table
 from gatecheck.rules.words import describe_result
 
 _MOST_EXPLANATIONS = 4
+_MOST_TOLD = 5
 #: What a comparison is called, by its name.
 _CHECKED = {
     "p": "statistic, df, sides and p",
@@ -70,14 +90,15 @@ def explain(table: Table, row: int, _: RuleSettings, __: Judgement) -> Said:
         return Said(_tell_compared(table, row))
     from gatecheck.rules.numbers_told import tell  # noqa: PLC0415  # most figures agree
 
-    told = [tell(table, row, each) for each in short]
+    told = [tell(table, row, each) for each in short[:_MOST_TOLD]]
+    more = f"; {len(short) - _MOST_TOLD} more of its figures do not fit" if len(short) > _MOST_TOLD else ""
     odd = odd_one_out(table.own_numbers, row)
     lone = f"; the other figures fit together, so the odd one out is {odd}" if odd else ""
     found = "; ".join(dict.fromkeys(each.message for each in told))
     explanations = list(dict.fromkeys(text for each in told for text in each.harmless))[:_MOST_EXPLANATIONS]
     rule_out = f" Rule out first that {_or(explanations)}." if explanations else ""
     return Said(
-        f"{found}{lone}; the policy wants figures that fit together.",
+        f"{found}{more}{lone}; the policy wants figures that fit together.",
         f"{_in_one_sentence([each.action for each in told])}{rule_out}",
     )
 
@@ -112,5 +133,4 @@ RULE = Rule(
     settings=RuleSettings,
     judge=judge,
     explain=explain,
-    always_on=True,
 )

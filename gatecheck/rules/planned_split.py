@@ -1,9 +1,13 @@
 """Rule `planned-split`: the sizes of the groups are those that the planned split gives.
 
-Where units were split between groups by chance and more came to one than chance would give, something sorted them,
-and it may have sorted them by what is measured: no effect can be told apart from that. Setting: `limit`, the p
-below which a split is not that of the plan (0.001 to 0.01 are usual in online experiments; common practice, no
-source).
+The sizes of the groups are those of `sample.planned_split`, such as `[1, 1]`: a split as far from it has a p of
+`limit` (0.001) or more, by chi-squared, or exactly for few units in two groups. A claim on groups that something
+sorted (assignment, logging, a filter afterwards) tells no effect. It concerns claims whose record names a planned
+split.
+
+Where units were split between groups by chance and more came to one than chance would give, something sorted
+them, and it may have sorted them by what is measured. A limit of 0.001 to 0.01 is usual in online experiments
+(common practice, no source).
 """
 
 from __future__ import annotations
@@ -72,5 +76,4 @@ RULE = Rule(
     judge=judge,
     explain=explain,
     concerns=concerns,
-    always_on=True,
 )

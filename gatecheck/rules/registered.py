@@ -1,9 +1,13 @@
 """Rule `registered`: a confirmatory claim is as it was promised, in a plan that came before the data.
 
-The claim names a hypothesis of a plan; the evidence that the plan came first is of `grade` or better; and where the
-claim differs from the plan as it was frozen, a deviation of the record says so. A departure decided before the data
-is an amendment, one decided before the results is kept and told, one decided after them makes the claim exploratory
-unless `after_results` is `keep`. Safety outcomes are exempt: they may be reported without a registration.
+A confirmatory claim names a hypothesis of a plan (`plan: {file, hypothesis}`), the evidence that the plan came
+before the data is of `grade` or better (`repository-order` unless the policy says otherwise), and the claim is as
+the plan had it when it was frozen: outcome, test, sides, direction, alpha, n, population, exclusions, covariates,
+effect designed for, margins, prior, family, looks, role and aim. Each difference is told with both values, and
+with the p that the promise gives where sides differ. A `deviations` entry that names the field turns it into an
+amendment (decided `before-data`) or a departure that is told (`before-results`); one decided `after-results`
+makes the claim exploratory (`after_results: keep` lets it stand). Safety outcomes are exempt: nobody needs a
+registration to report a possible harm.
 """
 
 from __future__ import annotations

@@ -1,11 +1,9 @@
 """Rule `replication`: a claim whose result was tested again on data of its own held up there.
 
-Settings: `criteria`, all of which must be met; `alpha`, the one-sided level. The criteria are those in use for
-comparing an original with its repetition: `direction-and-p` (the repetition has a one-sided p of at most alpha in
-the direction of the original), `interval` (its estimate lies in the prediction interval of the original at level
-1 - 2 alpha), `sceptical` (the sceptical p-value at its golden level is at most alpha: how far one who doubts the
-original is convinced by the two). Several repetitions are taken together. It binds the claims of the original and
-of those that repeat it, wherever a record says that it `replicates` another in the tree.
+A claim whose result was tested again (a record says that it `replicates` another, on data of its own) held up
+there, by the `criteria` of the policy, all of which must be met at the one-sided `alpha` (0.025):
+`direction-and-p`, `interval` (the new estimate lies in the prediction interval of the first), `sceptical` (the
+sceptical p-value at its golden level). It binds both records; several repetitions are taken together.
 """
 
 from __future__ import annotations

@@ -107,7 +107,6 @@ class Rule:
     needs: tuple[Need, ...] = ()
     exempt: tuple[Exemption, ...] = ()
     concerns: Callable[[Table, Sequence[Any]], Booleans] = every_row
-    always_on: bool = False
 
 
 def setting(settings: Sequence[Any], name: str) -> Floats:

@@ -1,10 +1,21 @@
 """Rule `screen`: of the hits that a whole screen calls findings, few enough are expected to be false.
 
-A hit list is one claim on thousands of tests, so what is judged is the long-run risk of the design, and not the
-risk of a single result: of all tests called positive, alpha (1 - prior) / (alpha (1 - prior) + power prior) are
-false (Altman 1991, section 14.4, in the words of screening). It binds hits that are called findings; candidates are
-still to be confirmed. Tests that were left out before the hits were counted, by a filter that was not planned, fall
-short whatever the hits are called. Safety outcomes are exempt. Setting: `limit`, the largest share of false hits.
+A hit list is one claim on a whole screen of tests: `screen: {tests, hits, alpha, power, prior, called, removed}`,
+with the level of each test, its power, and the share of true effects expected among them, as assumed beforehand.
+Of all tests called positive the design is expected to get alpha · (1 - *p*) / (alpha · (1 - *p*) + power · *p*)
+wrong, where *p* is that prior (Altman 1991, section 14.4). That is the long-run risk of the whole design; the
+risk of a single hit with its own p is another figure. Hits that are called `findings`, as they are unless the
+record says otherwise, fall short where that share is above `limit` (0.05 unless the policy says otherwise); those
+called `candidates` are still to be confirmed, and stand. Tests left out before the hits were counted (`removed:
+[{n, reason, planned}]`) fall short whatever the hits are called, unless their filter was registered beforehand.
+What is missing makes the claim undecided, and so do fewer than 100 tests, each of which can be weighed by itself.
+Safety outcomes are exempt. A record with a screen and no result of a single test is judged here, and not by the
+rules on evidence.
+
+> By its design (10,000 tests at alpha 0.01, power 0.8, prior 0.005) this screen is expected to call 40 true and
+> 99.5 false positives, so 71 % of its hits are false, which is the long-run risk of the whole design and not
+> that of a single hit; the policy allows 5 % for findings. Call them candidates (screen.called) and confirm
+> them, or test each at an alpha of 0.000211 or less with the power kept at 0.8.
 """
 
 from __future__ import annotations
@@ -174,5 +185,4 @@ RULE = Rule(
         ),
     ),
     concerns=concerns,
-    always_on=True,
 )

@@ -1,8 +1,35 @@
 """Rule `text-agrees`: prose says what the records say.
 
-It judges prose, not records. A number that a link ties to a record is the record's within the digits shown. A
-statistic without a link is looked for among the records, and one that no record has is listed; it blocks where the
-policy says so. A sentence that calls a result confirmed or registered whose record is not confirmatory is told.
+Prose says what the records say. It judges text in Markdown, Markdown cells of notebooks, Quarto and R Markdown,
+LaTeX and reStructuredText (`include` and `exclude` say where), and it is off unless the policy names it. A
+**link** is a comment, invisible when rendered, that ties the number before it to a field of a record, or the
+sentence before it to the record's claim:
+
+```
+Yield rose by 3.3 g <!-- gatecheck: yield/spring estimate.value --> in spring.
+<!-- gatecheck: yield/spring claim -->
+```
+
+In LaTeX it is `% gatecheck: ID FIELD` up to the end of the line, in reStructuredText `.. gatecheck: ID FIELD` as
+a block below the paragraph.
+
+A field is a path in the record, such as `test.p`, `estimate.interval.low`, `sample.groups[0].mean`, or `risk` and
+`prior-needed`, as the gate computes them. Where several links stand together, they tie the last numbers before
+them, in order. A linked number falls short where the record's cannot be rounded to it: 3.3 may stand for 3.28, 25
+% for 0.25, and `< .001` for all below. `gatecheck refresh` shows how the text would change, and with `--write` it
+does. The statistics of a linked sentence are held against its record too.
+
+Statistics without a link are recognised as they are usually written (t, F, χ², z, r with their p, intervals with
+their level, percentages with counts) and looked for among the records; what none has is listed with the nearest,
+and blocks with `unlinked: block` (`note` unless the policy says otherwise, or `off`). A percentage that is not
+that of its own counts is listed as well. A sentence that calls a result confirmed or registered whose record is
+not confirmatory is said. Code, comments, addresses and lists of references are left alone; a cell of a table is
+read like other text, a bare number in it only where it has a link. A link that leads nowhere, and a file that is
+no UTF-8, cannot be judged.
+
+> The text says 3.8 for estimate.value of yield/spring, and the record says 3.3; the policy wants the record's
+> number within the digits shown. Write 3.3; `gatecheck refresh --write` does so for every link.
+
 Common practice, no source.
 """
 

@@ -10,6 +10,14 @@ and Altman 2013), and those beside each kind.
 
 A claim that is softened ("may", "suggests") is let be where the record is not confirmatory, and softened causal
 words are let be always.
+
+A claim of a difference between two results names both in `compares: [ID, ID]`, and the message gives their
+difference. With `design: required` in the policy causal words need a `design` in the record; without it only an
+`observational` one forbids them. Strength words follow Kass and Raftery (20 for "strong"), and "proves" is never
+met. The remedy is a sentence built from the record. `allow` names kinds of words to let be: `no-effect`, `safe`,
+`not-worse`, `difference`, `observed-power`, `hedge`, `causal`, `statistical-significance`, `importance`,
+`significant`, `strength`; `linked: false` leaves sentences in prose alone. The phrases, with what only looks like
+them, are lists in `gatecheck/compare/phrases`, one a `language`.
 """
 
 from __future__ import annotations

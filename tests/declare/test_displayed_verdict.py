@@ -20,7 +20,7 @@ from gatecheck import displaying
 from gatecheck.declaring import declare, notebook
 from gatecheck.declaring.notebook import MEDIA_TYPE, Display
 from gatecheck.displaying import BY_ITSELF, CLOSING, shown
-from gatecheck.rules import RULES
+from gatecheck.rules import NAMES
 from gatecheck.scan import scan
 
 FORMAT: Any = nbformat.v4
@@ -150,7 +150,7 @@ def test_rules_that_need_more_than_the_record_are_left_open(tmp_path: Path) -> N
         "the policy also asks for family, registered, which needs more than this record."
     )
     assert "family, registered, wording," in told(comparing, tmp_path)["left open"]
-    assert set(BY_ITSELF) < set(RULES)
+    assert set(BY_ITSELF) < set(NAMES)
 
 
 def test_a_policy_that_cannot_be_read(tmp_path: Path) -> None:

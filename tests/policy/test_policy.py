@@ -10,7 +10,7 @@ from support import POLICY, Document, changed, drainage
 from gatecheck.model.record import Record
 from gatecheck.policies import read_own_policy
 from gatecheck.policy import STARTING_POLICY, Applied, Policy
-from gatecheck.rules import RULES, false_positive_risk
+from gatecheck.rules import NAMES, false_positive_risk
 from gatecheck.schema.records import read_record
 
 FPR = "false-positive-risk"
@@ -47,7 +47,7 @@ def applied(overrides: list[Document], path: str = "results/a.json", **record: A
             (
                 "rules.false-positive-rsk",
                 "is no known rule",
-                "the nearest known one is false-positive-risk (known: " + ", ".join(sorted(rule.name for rule in RULES)) + ")",
+                "the nearest known one is false-positive-risk (known: " + ", ".join(sorted(NAMES)) + ")",
             ),
         ),
         (

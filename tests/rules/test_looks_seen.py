@@ -14,7 +14,7 @@ from gatecheck.model.looks_seen import Change, LooksSeen, Seen
 from gatecheck.model.record import Look, Record
 from gatecheck.model.verdict import Finding
 from gatecheck.policies import read_own_policy
-from gatecheck.rules import RULES
+from gatecheck.rules import rule_named
 from gatecheck.rules.engine import judge_all
 from gatecheck.rules.rule import Table
 from gatecheck.scan import scan
@@ -62,7 +62,7 @@ def judged(folder: Path, *shown: LooksSeen | None) -> Finding | None:
     columns = columns_of(found)
     evidence = weigh_columns(columns, [each.evidence for each in applied])
     table = Table(columns, evidence, (), applied, looks_seen=tuple(shown))
-    ((*findings,),) = judge_all([rule for rule in RULES if rule.name == "looks"], table, explain=frozenset([0]))
+    ((*findings,),) = judge_all([rule_named("looks")], table, explain=frozenset([0]))
     return findings[0] if findings else None
 
 
