@@ -50,7 +50,7 @@ WALD = r"\bwald\b"
 
 @functools.lru_cache(maxsize=4096)
 def says(words: str, text: str) -> bool:
-    """Whether a text holds one of `words`, a regular expression; the same few texts stand in thousands of records."""
+    """Whether a text holds one of `words`, a regular expression; thousands of records hold the same few texts."""
     return _compiled(words).search(text) is not None
 
 
