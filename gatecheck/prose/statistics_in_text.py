@@ -50,7 +50,10 @@ _INTERVAL = re.compile(
     r"[\s~-]{0,2}(?:(?P<words>CIs?\b|C\.I\.|(?:confidence|uncertainty|compatibility|credible)\s(?:intervals?|limits)"
     r"|intervals?\b)|(?=[\s~]{0,2}[:=(\[]))(?:[\s~$:=,(\[{*_]|from\b|of\b|is\b|was\b|\\left|\\\{){0,10}"
 )
-_TO = re.compile(r"(?:[\s~]?\\?%)?(?:[\s~][^\W\d_/²]{1,6})?[\s~$]{0,3}(?:to|and|,|;|–|—|--?-?|through)[\s~$]{0,3}")
+_TO = re.compile(
+    r"(?:[\s~]?\\?%)?(?:[\s~](?!(?:to|and|through)\b)[^\W\d_/²]{1,6})?[\s~$]{0,3}"
+    r"(?:to|and|,|;|–|—|--?-?|through)[\s~$]{0,3}"
+)
 _COUNT = r"\d{1,3}(?:,\d{3})+|\d{1,12}"
 _OF = rf"(?P<part>{_COUNT})\s?(?:/|of(?:\sthe)?|out\sof(?:\sthe)?)\s?(?P<whole>{_COUNT})"
 _COUNTS_BEFORE = re.compile(rf"(?<![\w./,]){_OF}(?![\d/]|\.\d)[^\d.()%]{{0,30}}[(\[]\s?\Z")
@@ -124,16 +127,27 @@ def may_hold_statistics(text: str) -> bool:
 def statistics(text: str) -> Iterator[Statistic]:
     """Yield the statistics in `text`, in order."""
     waiting: ShownTest | None = None
+    last_test: ShownTest | None = None
     for one in _recognised(text):
+        before, last_test = last_test, one if isinstance(one, ShownTest) else last_test
         if isinstance(one, ShownTest) and one.kind == "p" and waiting and _belongs(text, waiting, one):
             yield Result(waiting, one)
             waiting = None
             continue
         yield from _alone(waiting)
         waiting = one if isinstance(one, ShownTest) else None
-        if not isinstance(one, ShownTest):
+        if isinstance(one, ShownInterval):
+            yield _without_figure_of_test(one, before)
+        elif isinstance(one, ShownShare):
             yield one
     yield from _alone(waiting)
+
+
+def _without_figure_of_test(one: ShownInterval, before: ShownTest | None) -> ShownInterval:
+    """The interval, without the figure before it as its estimate where that is a statistic or p; r is an estimate."""
+    if before is None or one.estimate is None or before.kind == "r" or one.estimate.start != before.value.start:
+        return one
+    return ShownInterval(one.start, one.end, one.level, one.low, one.high, None)
 
 
 def _alone(one: ShownTest | None) -> Iterator[Result]:

@@ -95,6 +95,7 @@ def _figures(one: Judged, figures: Figures, width: int) -> str:
         labelled("Ratio", f"likelihood ratio {words.likelihood_ratio(figures.log_likelihood_ratio)}", width),
         labelled("Risk", f"false positive risk {risk}; prior needed {needed}", width),
         labelled("Note", _capital(figures.note), width) if figures.note else "",
+        labelled("Source", words.source(figures), width),
     ]
     return "\n".join(line for line in lines if line)
 

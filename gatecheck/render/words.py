@@ -31,6 +31,19 @@ _ALTERNATIVES = {
     "bound": "by the calibration -e p ln p of its p-value",
     "none": "against no alternative",
 }
+_P_EQUALS = (
+    "Colquhoun 2017, Royal Society Open Science 4, 171085 (the result as observed, and not all at least as extreme)"
+)
+_SOURCES = {
+    "observed-effect": _P_EQUALS,
+    "design-effect": _P_EQUALS,
+    "default-prior": (
+        "Rouder and others 2009, Psychonomic Bulletin & Review 16, 225-237 (means); Ly, Verhagen and Wagenmakers "
+        "2016, Journal of Mathematical Psychology 72, 19-32 (correlations); Wagenmakers 2007, Psychonomic Bulletin & "
+        "Review 14, 779-804 (a prior worth one observation)"
+    ),
+    "bound": "Sellke, Bayarri and Berger 2001, The American Statistician 55, 62-71",
+}
 _OUTCOMES = {
     "met": "met",
     "short": "short of the policy",
@@ -256,6 +269,11 @@ def judged_commits(verdict: Verdict) -> str:
     head = f"the commit {verdict.head[:_SHORT_COMMIT]}" if verdict.head else "a tree with changes not committed"
     base = f", into the base {verdict.base[:_SHORT_COMMIT]}" if verdict.base else ""
     return f"Judged: {head}{base}."
+
+
+def source(figures: Figures) -> str:
+    """Return where the way is published by which evidence was weighed; empty where none was."""
+    return _SOURCES.get(figures.alternative, "")
 
 
 def policy_used(policy: PolicyUsed | None) -> str:
