@@ -39,8 +39,8 @@ _SOURCES = {
     "design-effect": _P_EQUALS,
     "default-prior": (
         "Rouder and others 2009, Psychonomic Bulletin & Review 16, 225-237 (means); Ly, Verhagen and Wagenmakers "
-        "2016, Journal of Mathematical Psychology 72, 19-32 (correlations); Wagenmakers 2007, Psychonomic Bulletin & "
-        "Review 14, 779-804 (a prior worth one observation)"
+        "2016, Journal of Mathematical Psychology 72, 19-32 (correlations); Wagenmakers 2007, Psychonomic Bulletin "
+        "& Review 14, 779-804 (a prior worth one observation)"
     ),
     "bound": "Sellke, Bayarri and Berger 2001, The American Statistician 55, 62-71",
 }

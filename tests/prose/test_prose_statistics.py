@@ -83,6 +83,8 @@ def found(text: str) -> list[str]:
         (r"a 95\% CI $[0.3, 8.1]$", "(95 % 0.3 to 8.1)"),
         ("a 95 % confidence interval from -0.3 to 0.1", "(95 % -0.3 to 0.1)"),
         ("90 % interval 1.1 g to 5.4 g", "(90 % 1.1 to 5.4)"),
+        ("95 % CI -5.4 to -1.1", "(95 % -5.4 to -1.1)"),
+        ("95 % CI −5.4 g and −1.1 g", "(95 % −5.4 to −1.1)"),
         ("12.5 % (95 % CI 10.1 % to 15.0 %)", "12.5 (95 % 10.1 to 15.0)"),
         ("0.5 (CI 95 %: 0.3–0.8)", "0.5 (95 % 0.3 to 0.8)"),
         ("12/48 (25 %)", "12/48 (25 %)"),
@@ -169,6 +171,20 @@ def test_a_number_that_begins_out_of_sight_is_no_estimate() -> None:
 
     assert isinstance(one, ShownInterval)
     assert one.estimate is None
+
+
+@pytest.mark.parametrize(
+    ("text", "expected"),
+    [
+        ("t(34) = 2.21, p = .034, 95 % CI 0.3 to 8.1", ["t(34) = 2.21, p = .034", "(95 % 0.3 to 8.1)"]),
+        ("t(34) = 2.21, 95 % CI 0.3 to 8.1", ["t(34) = 2.21", "(95 % 0.3 to 8.1)"]),
+        ("p = .034 (95 % CI 0.3 to 8.1)", ["p = .034", "(95 % 0.3 to 8.1)"]),
+        ("t(34) = 2.21, 4.2 g (95 % CI 0.3 to 8.1)", ["t(34) = 2.21", "4.2 (95 % 0.3 to 8.1)"]),
+        ("r(28) = .36, 95 % CI .01 to .64", ["r(28) = .36", ".36 (95 % .01 to .64)"]),
+    ],
+)
+def test_a_statistic_before_an_interval_is_not_its_estimate_but_r(text: str, expected: list[str]) -> None:
+    assert found(text) == expected
 
 
 PARTS = [

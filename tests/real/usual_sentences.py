@@ -14,7 +14,12 @@ _SYMBOLS = {"t": "t", "z": "z", "F": "F", "chi2": "χ²", "r": "r"}
 _LEAST_P = Decimal("0.001")
 _MOST_DIGITS = 6
 #: Ways to write an interval; each with its level, its lower and its upper limit.
-_INTERVALS = ("{level} % CI {low} to {high}", "{level}% CI [{low}, {high}]", "{level} % confidence interval {low}, {high}")
+_INTERVALS = (
+    "{level} % CI {low} to {high}",
+    "{level}% CI [{low}, {high}]",
+    "{level} % confidence interval {low}, {high}",
+    "{level} % CI: {low} to {high}",
+)
 
 
 @struct
@@ -37,6 +42,8 @@ class Sentence:
 def sentence(case: Case) -> Sentence:
     """The sentence on one record."""
     told = [each for each in (_test(case.document), _interval(case), *_shares(case.document)) if each]
+    if len(case.id) % 2:
+        told.reverse()
     parts: list[tuple[str, str]] = [("", "In all, ")]
     for number, (_, figures) in enumerate(told):
         parts += [("", ", " if number else ""), *figures]
@@ -89,7 +96,10 @@ def _interval(case: Case) -> tuple[str, list[tuple[str, str]]] | None:
         return None
     pattern = _INTERVALS[len(case.id) % len(_INTERVALS)]
     shown = {"level": f"{100 * interval['level']:g}", "low": low, "high": high}
-    pieces = re.split(r"{(level|low|high)}", pattern)
+    value = _shown(case.document["estimate"]["value"], 2)
+    if value is not None and len(case.id) % 2:
+        pattern, shown["estimate"] = f"{{estimate}} ({pattern})", value
+    pieces = re.split(r"{(estimate|level|low|high)}", pattern)
     return "interval", [
         (piece if at % 2 else "", shown[piece] if at % 2 else piece) for at, piece in enumerate(pieces) if piece
     ]
