@@ -65,7 +65,9 @@ def summary(verdict: Verdict, budget: int = BUDGET) -> str:
     The headline, the cautions and the policy always stand; a budget below 4 KiB may be too small for them.
     Where entries had to be left out, the last line says how many.
     """
-    head, tail = f"## {markdown(words.headline(verdict))}\n\n", _closing(verdict)
+    brief = words.changes_in_brief(verdict)
+    head = f"## {markdown(words.headline(verdict))}\n\n" + (f"{markdown(brief)}\n\n" if brief else "")
+    tail = _closing(verdict)
     sections = [section for section in _sections(verdict) if section.entries]
     entries = sum(len(section.entries) for section in sections)
     room = budget - _size(head) - _size(tail) - _size(_left_out(entries))

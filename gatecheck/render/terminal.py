@@ -36,6 +36,7 @@ def account(verdict: Verdict, width: int, *, bold: bool = False) -> str:
     return page(
         [
             strong(paragraph(words.headline(verdict), width), bold=bold),
+            paragraph(words.changes_in_brief(verdict), width),
             section("Could not be read or judged", problems, BLANK_LINE),
             section("Short of the policy", short, TWO_BLANK_LINES),
             section("Undecided", undecided, TWO_BLANK_LINES),

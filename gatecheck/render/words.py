@@ -63,6 +63,7 @@ _CHANGES = {
     "changed": "changed",
     "withdrawn": "withdrawn",
 }
+_IN_BRIEF = {"strengthened": "claiming more", "new": "new", "changed": "changed", "withdrawn": "withdrawn"}
 _SHORT_COMMIT = 12
 _SHORT_DIGEST = len("sha256:") + 12
 
@@ -260,6 +261,16 @@ def assumptions(figures: Figures) -> str:
 def change(one: Change) -> str:
     """Return what changed in one claim since the base."""
     return f"{one.id}, {_CHANGES[one.kind]}: {sentence(one.told)}"
+
+
+def changes_in_brief(verdict: Verdict) -> str:
+    """Return in one sentence how many claims changed since the base, and how; empty where there is no base."""
+    if verdict.base is None:
+        return ""
+    kinds = [one.kind for one in verdict.changes]
+    told = [f"{kinds.count(kind)} {words}" for kind, words in _IN_BRIEF.items() if kind in kinds]
+    counted = ", ".join(told) if told else "no claim changed"
+    return f"Since the base {verdict.base[:_SHORT_COMMIT]}: {counted}."
 
 
 def judged_commits(verdict: Verdict) -> str:

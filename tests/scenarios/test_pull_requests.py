@@ -56,7 +56,9 @@ def test_the_account_and_the_summary_tell_the_changes(repository: Path) -> None:
         in account
     )
     assert "Judged: a tree with changes not committed, into the base " in account
-    assert "Changed since the base" not in summary
+    assert f"Since the base {git(repository, 'rev-parse', 'HEAD')[:12]}: 1 claiming more." in account
+    assert f"Since the base {base[:12]}: no claim changed.\n" in summary
+    assert "### Changed since the base" not in summary
     assert f"into the base {base[:12]}" in summary
 
 
