@@ -261,7 +261,7 @@ TOLD = [
             test={"name": "z", "statistic": "z", "value": "2.65", "p": "0.008"},
             family={"name": "growth", "size": 4, "procedure": "benjamini-yekutieli", "adjusted_p": "0.30"},
         ),
-        "by benjamini-yekutieli in a family of 4 the raw result gives an adjusted p of 0.00793 to 0.0681, and "
+        "by benjamini-yekutieli in a family of 4 the raw result gives an adjusted p of 0.00793 to 0.0682, and "
         "0.30 is",
         "Adjust the raw p of all members of the family anew.",
     ),

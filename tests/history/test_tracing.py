@@ -14,7 +14,7 @@ from gatecheck.errors import CannotJudge
 from gatecheck.model.looks_seen import Course
 from gatecheck.policies import read_own_policy
 from gatecheck.policy import Policy
-from gatecheck.render import course_account
+from gatecheck.render import course_account as course
 from gatecheck.tracing import trace
 
 
@@ -76,7 +76,7 @@ def test_what_changed_is_told_below_the_figures_where_it_has_no_room_beside_them
     repo = with_looks(tmp_path / "repo")
     repo.commit("2031-06-02", r=result(0.031, 100, claim="A sentence about earthworms."))
 
-    lines = course_account(traced(repo), 70).splitlines()
+    lines = course(traced(repo), 70).splitlines()
 
     first = short_ids(repo)[0]
     assert lines[2:6] == [
@@ -107,7 +107,7 @@ def test_all_that_can_change(repo: Repository) -> None:
         ("", "look", "kept", None),
     ]
     assert told.steps[0].p == "0.151"
-    text = course_account(told, 140)
+    text = course(told, 140)
     for said in (
         "first state, claim added",
         "rerun, claim taken out, id changed from older",
@@ -129,11 +129,11 @@ def test_a_look_off_the_main_line_is_marked(repo: Repository) -> None:
     repo.commit(r=result(0.03, 60))
     repo.git("merge", "-q", "--no-ff", "-m", "merged", "-s", "ours", "side")
 
-    text = course_account(traced(repo), 100)
+    text = course(traced(repo), 100)
 
     assert text.count("off the main line") == 1
     assert "40  z          0.2   46 %  new look, off the main line" in text
-    assert "off the main line" not in course_account(traced(repo, base="HEAD^1"), 100)
+    assert "off the main line" not in course(traced(repo, base="HEAD^1"), 100)
 
 
 def test_each_state_is_weighed_as_the_policy_asks_for_it_then(repo: Repository) -> None:
@@ -154,7 +154,7 @@ def test_each_state_is_weighed_as_the_policy_asks_for_it_then(repo: Repository) 
     assert even == pytest.approx(0.226512, abs=1e-6)
     assert low / (1 - low) == pytest.approx(9 * even / (1 - even))
     assert told.assumed == (("observed-effect", 0.1), ("observed-effect", 0.5))
-    assert "prior 0.1; against the effect as observed, prior 0.5." in course_account(told, 200)
+    assert "prior 0.1; against the effect as observed, prior 0.5." in course(told, 200)
 
 
 def test_earlier_states_are_no_further_evidence(repo: Repository) -> None:
@@ -177,7 +177,7 @@ def test_what_cannot_be_weighed_has_no_risk(repo: Repository) -> None:
 
     assert [(each.p, each.risk) for each in told.steps] == [("", None), ("0.2", None)]
     repo.put("r.json", result(0.2, 20, test=..., id="another"))
-    assert "No risk is given, as no result could be weighed." in course_account(traced(repo, "another"), 80)
+    assert "No risk is given, as no result could be weighed." in course(traced(repo, "another"), 80)
 
 
 def test_the_level_is_that_of_the_record_else_of_the_rule(tmp_path: Path) -> None:
@@ -188,13 +188,13 @@ def test_the_level_is_that_of_the_record_else_of_the_rule(tmp_path: Path) -> Non
     repo.put("r.json", result(0.01, 120, test__alpha=0.025))
     told = traced(repo, rules={"looks": {"alpha": 0.01}})
     assert (told.alpha, len(told.looks.looks)) == (0.025, 6)
-    assert "6 looks: without a boundary planned for them, as many at 0.025" in " ".join(course_account(told, 80).split())
+    assert "6 looks: without a boundary planned for them, as many at 0.025" in " ".join(course(told, 80).split())
 
 
 def test_one_look_has_the_error_of_one_test(repo: Repository) -> None:
     repo.commit(r=result(0.2, 20))
 
-    assert "The history shows one look, so its type I error is that of one test: 0.05." in course_account(traced(repo), 80)
+    assert "The history shows one look, so its type I error is that of one test: 0.05." in course(traced(repo), 80)
     assert traced(repo).error == pytest.approx(0.05)
 
 
@@ -202,7 +202,7 @@ def test_a_record_that_is_gone_has_its_course_still(repo: Repository) -> None:
     repo.commit(r=result(0.2, 20))
     repo.commit(r=None)
 
-    text = course_account(traced(repo), 100)
+    text = course(traced(repo), 100)
 
     assert text.startswith("drainage/earthworm-biomass through 1 state, oldest first. The tree holds it no longer.")
 
@@ -234,7 +234,7 @@ def test_what_could_not_be_read_is_listed(repo: Repository) -> None:
     told = traced(repo)
 
     assert [(each.path, each.commit[:12]) for each in told.unreadable] == [("r.json", short_ids(repo)[0])]
-    listed = " ".join(course_account(told, 80).split())
+    listed = " ".join(course(told, 80).split())
     assert f"Could not be read r.json at {short_ids(repo)[0]}: the text is no JSON" in listed
 
 
@@ -262,7 +262,7 @@ def test_an_id_that_was_rewritten_is_no_more_than_a_hint(
 
     assert told.maybe_before == hinted
     assert len(told.steps) == (2 if now.get("aliases") else 1)
-    assert ("the same file held old for the same hypothesis" in " ".join(course_account(told, 80).split())) == bool(hinted)
+    assert ("the same file held old for the same hypothesis" in " ".join(course(told, 80).split())) == bool(hinted)
 
 
 def test_a_record_beside_another_of_its_hypothesis_is_no_rewritten_one(repo: Repository) -> None:
@@ -278,7 +278,7 @@ def test_text_from_a_record_is_cleaned(repo: Repository) -> None:
     repo.commit(r=result(0.2, 20, id="old::error"))
     repo.commit(r=result(0.2, 20, aliases=["old::error"], test={"name": "z\x1b[2J", "p": 0.2}))
 
-    text = course_account(traced(repo), 200)
+    text = course(traced(repo), 200)
 
     assert "::error" not in text
     assert "\x1b" not in text
