@@ -35,6 +35,8 @@ _EXACT = Kind("counts-exact", (COUNTS, "p"), ("the exact p is of another test (m
 _IMPOSSIBLE = Kind("counts", (COUNTS,), ("the events are counted by episode, not by unit",))
 #: Relative difference between figures of careful programs that are given in all their digits.
 _SAME = 1e-6
+#: A statistic so small is 0 but for the rounding inside a program.
+_NOTHING = 1e-12
 _PAIR = 2
 #: From here on, whole numbers are not all doubles.
 _LARGEST = 2**53
@@ -111,6 +113,7 @@ def _statistic(columns: Columns, row: int, record: Record) -> Compared | None:
     squares = [square for square in _squares(table) if math.isfinite(square)]
     forms = [math.sqrt(square) for square in squares] if test.statistic[row] == Z else squares
     fits = any(_covers(test.value, row, form) or _covers(test.value, row, -form) for form in forms)
+    fits |= abs(test.value.value[row]) < _NOTHING > min(forms)
     return Compared(fits, min(forms), max(forms))
 
 

@@ -42,7 +42,7 @@ INDEPENDENT = (
 )
 #: For spread that differs between conditions df are made smaller, and p is that of the smaller ones.
 SPHERICITY = r"greenhouse|geisser|huynh|feldt|sphericity|lower[- ]bound"
-CONTINUITY = r"yates|continuity"
+CONTINUITY = r"(?<!without )(?<!no )(?:yates|continuity)"
 #: Tests that are no estimate over its error, and differ from it by more where effects are large.
 OTHER_METHOD = r"score|log-?rank|likelihood|mantel|\bcmh\b|mcnemar|exact"
 WALD = r"\bwald\b"

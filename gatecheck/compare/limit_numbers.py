@@ -26,7 +26,7 @@ from gatecheck.compare.interval_shapes import (
 
 #: How sharp the place of a limit must be known, and by which share of its distance the other one then is off
 #: (common practice, no source).
-_SHARPNESS = ((0.03, 0.10), (0.10, 0.25))
+_SHARPNESS = ((0.03, 0.10), (0.10, 0.25), (0.30, 2.00))
 #: An interval of a correlation by ranks is at most so much wider than Fisher's (common practice, no source).
 _BY_RANKS = 1.25
 _SKEWED = ("it is a profile or bootstrap interval", "the level is another one")

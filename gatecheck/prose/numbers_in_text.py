@@ -23,7 +23,7 @@ _MINUS = "−"
 #: What separates thousands; a comma with any other number of digits behind it is a decimal mark.
 _THOUSANDS = r"(?:,|\{,\}|\\,|[\u2009\u202f\u00a0])"
 _DIGITS = (
-    rf"(?:\d{{1,3}}(?:{_THOUSANDS}\d{{3}})+(?!\d)(?:\.\d{{1,30}})?|\d{{1,40}},(?:\d{{1,2}}|\d{{4,30}})(?!\d|\.\d)"
+    rf"(?:\d{{1,3}}(?:{_THOUSANDS}\d{{3}})+(?!\d)(?:\.\d{{1,30}})?|\d{{1,40}},(?:\d{{1,2}}|\d{{4,30}})(?!\d|[.,]\d)"
     r"|\d{1,40}(?:\.\d{1,30})?|\.\d{1,30})(?!\d)"
 )
 _DECIMAL_COMMA = re.compile(r"\d+,(?:\d{1,2}|\d{4,})")

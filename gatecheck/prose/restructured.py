@@ -1,4 +1,4 @@
-"""reStructuredText: comments, literal blocks, code and addresses are no prose.
+"""reStructuredText: comments, literal blocks, code, Python sessions and addresses are no prose.
 
 A marker is a comment, a block of its own below the paragraph: `.. gatecheck: ID FIELD`.
 """
@@ -12,7 +12,8 @@ from gatecheck.prose.markers import marker_in
 from gatecheck.prose.source import Hidden
 
 _OPENING = re.compile(
-    r"``|`_|https?://|(?P<literal>::[ \t]*\r?\n)|^(?P<indent>[ \t]*)\.\.(?=[ \t\r\n]|\Z)(?P<says>[^\n]*)",
+    r"``|`_|https?://|(?P<literal>::[ \t]*\r?\n)|^(?P<indent>[ \t]*)\.\.(?=[ \t\r\n]|\Z)(?P<says>[^\n]*)"
+    r"|^(?P<session>[ \t]*>>>[ \t][^\n]*(?:\n[ \t]*\S[^\n]*)*)",
     re.MULTILINE,
 )
 _CODE = re.compile(r"\s*(?:code|code-block|sourcecode|parsed-literal|literalinclude|raw|doctest)::")
@@ -24,7 +25,7 @@ _LONGEST_SPAN = 10_000
 
 
 def hidden(text: str) -> Iterator[Hidden]:
-    """Yield comments, literal blocks, inline literals and addresses, in order."""
+    """Yield comments, literal blocks, Python sessions, inline literals and addresses, in order."""
     at = 0
     while found := _OPENING.search(text, at):
         at = found.end()
@@ -42,6 +43,8 @@ def _opened(text: str, found: re.Match[str]) -> Hidden | None:
         line = text.rfind("\n", 0, start) + 1
         end = _block_end(text, after, _indent(text, line))
         return Hidden(after, end) if end > after else None
+    if found["session"]:
+        return Hidden(start, after)
     if found[0] == "``":
         closing = text.find("``", after, after + _LONGEST_SPAN)
         return Hidden(start, closing + 2) if closing >= 0 else None

@@ -55,7 +55,7 @@ _TO = re.compile(
     r"(?:to|and|,|;|–|—|--?-?|through)[\s~$]{0,3}"
 )
 _COUNT = r"\d{1,3}(?:,\d{3})+|\d{1,12}"
-_OF = rf"(?P<part>{_COUNT})\s?(?:/|of(?:\sthe)?|out\sof(?:\sthe)?)\s?(?P<whole>{_COUNT})"
+_OF = rf"(?P<part>{_COUNT})\s?(?:(?P<slash>/)|of(?:\sthe)?|out\sof(?:\sthe)?)\s?(?P<whole>{_COUNT})"
 _COUNTS_BEFORE = re.compile(rf"(?<![\w./,]){_OF}(?![\d/]|\.\d)[^\d.()%]{{0,30}}[(\[]\s?\Z")
 _COUNTS_BEHIND = re.compile(rf"%\s?[(\[]\s?{_OF}(?![\d/])[^\d()%]{{0,30}}[)\]]")
 _BESIDE_COUNTS = re.compile(r"%\s?[()\[\]]")
@@ -144,15 +144,22 @@ def statistics(text: str) -> Iterator[Statistic]:
 
 
 def _without_figure_of_test(one: ShownInterval, before: ShownTest | None) -> ShownInterval:
-    """The interval, without the figure before it as its estimate where that is a statistic or p; r is an estimate."""
+    """The interval without its estimate where that is the figure of a statistic or p; r is an estimate."""
     if before is None or one.estimate is None or before.kind == "r" or one.estimate.start != before.value.start:
         return one
     return ShownInterval(one.start, one.end, one.level, one.low, one.high, None)
 
 
 def _alone(one: ShownTest | None) -> Iterator[Result]:
-    """A statistic without a p, or a p alone: letters that stand for much else need their degrees of freedom."""
-    if one is not None and (one.df or one.kind == "chi2" or (one.kind == "p" and one.value.relation == "=")):
+    """A statistic without a p, or a p alone: letters that stand for much else need their degrees of freedom.
+
+    A p alone of 0 or 1 without decimals is an order or a power as often as a probability, and x² a square.
+    """
+    if one is None:
+        return
+    is_probability = one.kind == "p" and one.value.relation == "=" and not one.value.text.isdigit()
+    is_square = one.value.found.string[one.start] == "x"
+    if one.df or (one.kind == "chi2" and not is_square) or is_probability:
         yield Result(one)
 
 
@@ -179,7 +186,9 @@ def _at_relation(text: str, anchor: re.Match[str]) -> ShownTest | None:
     if symbol is None or value is None or kind is None:
         return None
     df = tuple(each for each in (_inside(text, symbol, "df"), _inside(text, symbol, "df2")) if each is not None)
-    if len(df) not in _DEGREES[kind] or (kind == "p" and not 0 <= value.value <= 1):
+    if len(df) not in _DEGREES[kind] or any(each.value == 0 for each in df):
+        return None
+    if kind == "p" and not 0 <= value.value <= 1:
         return None
     return ShownTest(kind, symbol.start(), value.end, value, df, _inside(text, symbol, "n"))
 
@@ -244,7 +253,8 @@ def _share(text: str, at: int) -> ShownShare | None:
     if counts is None:
         return None
     part, whole = (int(counts[name].replace(",", "")) for name in ("part", "whole"))
-    if not 0 < whole >= part:
+    # 12/10 may be a date or a ratio; "12 of 10" is a slip.
+    if whole == 0 or (part > whole and counts["slash"]):
         return None
     end = max(counts.end(), at + 1)
     end += text[end : end + 1] in {")", "]"}

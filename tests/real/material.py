@@ -12,7 +12,8 @@ from gatecheck.model.struct import struct
 
 #: A p below this is told as a bound, by the number of places in which p is printed.
 _BOUNDS = {3: ("<0.001", 0.001), 4: ("<0.0001", 0.0001)}
-_WHOLE = {"n", "events", "level", "size", "resamples", "sides"}
+#: Counts, and what was chosen and not computed.
+_EXACT = {"n", "events", "level", "size", "resamples", "sides", "null"}
 _ALPHA = 0.05
 
 
@@ -61,7 +62,7 @@ def as_printed(part: Any, digits: int, places: int) -> Any:
             return {name: told(name, each) for name, each in value.items()}
         if isinstance(value, list):
             return [told(key, each) for each in value]
-        if not isinstance(value, float) or key in _WHOLE:
+        if not isinstance(value, float) or key in _EXACT:
             return value
         if key == "p":
             bound, least = _BOUNDS[places]

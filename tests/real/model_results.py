@@ -33,7 +33,12 @@ def _coefficients() -> Iterator[tuple[str, str, dict[str, Any], bool]]:
                 folder=None,
             )
             document = declared.document
-            yield f"coefficient of {type(fit.model).__name__}", f"statsmodels {name}", document, "n" in document["sample"]
+            yield (
+                f"coefficient of {type(fit.model).__name__}",
+                f"statsmodels {name}",
+                document,
+                "n" in document["sample"],
+            )
 
 
 def _fits() -> Iterator[tuple[str, Any]]:
@@ -76,7 +81,12 @@ def _tables() -> Iterator[tuple[str, str, dict[str, Any], bool]]:
                 identifier = f"statsmodels/anova-{name}-{kind}/{term}"
                 sample = {"unit": "row", "n": int(fit.nobs)}
                 document = declare(table, id=identifier, coefficient=term, sample=sample, folder=None).document
-                yield "analysis of variance", f"statsmodels anova_lm {name}", document, document["test"]["df"][0] > 1
+                yield (
+                    "analysis of variance",
+                    f"statsmodels anova_lm {name}",
+                    document,
+                    document["test"]["df"][0] > 1,
+                )
 
 
 def _tests() -> Iterator[tuple[str, str, dict[str, Any], bool]]:

@@ -1,15 +1,16 @@
-"""One figure of a documented result changed beyond rounding, as people change one: a digit, two places, the point."""
+"""One figure of a documented result changed beyond rounding, as by a slip: a digit, two places, the point."""
 
 from __future__ import annotations
 
 import copy
+import itertools
 from collections.abc import Iterator, Sequence
 from decimal import Decimal
 from typing import Any
 
 import numpy as np
-from material import Case
-from usual_sentences import Sentence
+from real.material import Case
+from real.usual_sentences import Sentence
 
 from gatecheck.model.struct import struct
 from gatecheck.schema.records import read_record
@@ -18,6 +19,8 @@ from gatecheck.schema.records import read_record
 LEAST_SHARE, LEAST_UNITS = 0.2, 10
 #: The same of a count, which has no rounding.
 LEAST_COUNT = 3
+#: The figures of which a sign may be lost or added.
+SIGNED = {"statistic", "estimate", "lower limit", "upper limit", "group mean"}
 #: Where each figure of a record stands; the figures of the first two groups by themselves.
 PLACES: dict[str, tuple[tuple[str | int, ...], ...]] = {
     "statistic": (("test", "value"),),
@@ -41,7 +44,6 @@ class Mutation:
 
     case: Case
     figure: str
-    path: tuple[str | int, ...]
     before: Any
     after: Any
     document: dict[str, Any]
@@ -50,14 +52,13 @@ class Mutation:
 def mutations_of(cases: Sequence[Case], seed: int, each: int = 1) -> Iterator[Mutation]:
     """Yield up to `each` mutations of every figure of every case; a record stays one that can be read."""
     generator = np.random.default_rng(seed)
-    for case in cases:
-        for figure, paths in PLACES.items():
-            for path in paths:
-                before = _at(case.document, path)
-                for after in _changes(before, figure, generator, each):
-                    made = _with(case.document, path, after)
-                    if read_record(made)[0] is not None:
-                        yield Mutation(case, figure, path, before, after, made)
+    places = [(figure, path) for figure, paths in PLACES.items() for path in paths]
+    for case, (figure, path) in itertools.product(cases, places):
+        before = _at(case.document, path)
+        for after in _changes(before, figure, generator, each):
+            made = _with(case.document, path, after)
+            if read_record(made)[0] is not None:
+                yield Mutation(case, figure, before, after, made)
 
 
 def mutated_sentences(told: Sequence[Sentence], seed: int) -> Iterator[tuple[str, Sentence, str]]:
@@ -65,7 +66,7 @@ def mutated_sentences(told: Sequence[Sentence], seed: int) -> Iterator[tuple[str
     generator = np.random.default_rng(seed)
     for one in told:
         for number, (figure, shown) in enumerate(one.parts):
-            if not figure:
+            if figure in {"", "bound on p"}:  # a wider bound is true as well
                 continue
             for after in _changes(int(shown) if figure in {"N", "part", "whole"} else shown, figure, generator, 1):
                 parts = [str(after) if at == number else text for at, (_, text) in enumerate(one.parts)]
@@ -95,29 +96,30 @@ def _changes(value: Any, figure: str, generator: np.random.Generator, most: int)
     """Up to `most` other figures, chosen among all changes of a hand that are large enough."""
     if isinstance(value, bool) or value is None or not isinstance(value, int | str):
         return []
-    found = sorted({other for other in _slips(str(value)) if _is_far(str(value), other, counts=isinstance(value, int))})
-    if figure in {"p", "bound on p"}:
-        found = [other for other in found if 0 < Decimal(other.lstrip("<")) <= 1]
-    if figure == "df":
-        found = [other for other in found if Decimal(other) > 0]
+    slips = [*_slips(str(value)), *(_other_sign(str(value)) if figure in SIGNED else ())]
+    found = sorted({each for each in slips if _is_far(str(value), each, counts=isinstance(value, int))})
+    if figure == "p":
+        found = [each for each in found if 0 < Decimal(each.lstrip("<")) <= 1]
     chosen = generator.permutation(len(found))[:most]
     return [int(found[at]) if isinstance(value, int) else found[at] for at in chosen]
 
 
 def _slips(text: str) -> Iterator[str]:
-    """Another digit, two neighbouring digits the wrong way round, a moved point, a lost or an added sign."""
+    """Another digit, two neighbouring digits the wrong way round, a moved point."""
     mantissa, mark, exponent = text.partition("e")
     for at, sign in enumerate(mantissa):
         if sign.isdigit():
             yield from (f"{mantissa[:at]}{digit}{mantissa[at + 1 :]}{mark}{exponent}" for digit in "123456789")
         if mantissa[at : at + 2].isdigit() and len(mantissa[at : at + 2]) == 2:
             yield f"{mantissa[:at]}{mantissa[at + 1]}{sign}{mantissa[at + 2 :]}{mark}{exponent}"
-        if sign == "." and at + 2 < len(mantissa):
+        if sign == "." and at + 2 < len(mantissa) and mantissa[:at].lstrip("-<0"):
             yield f"{mantissa[:at]}{mantissa[at + 1]}.{mantissa[at + 2 :]}{mark}{exponent}"
         if sign == "." and at > 1 and mantissa[at - 1].isdigit():
             yield f"{mantissa[: at - 1]}.{mantissa[at - 1]}{mantissa[at + 1 :]}{mark}{exponent}"
-    if "<" not in text:
-        yield text[1:] if text.startswith("-") else f"-{text}"
+
+
+def _other_sign(text: str) -> tuple[str]:
+    return (text[1:] if text.startswith("-") else f"-{text}",)
 
 
 def _is_far(before: str, after: str, *, counts: bool) -> bool:

@@ -11,7 +11,7 @@ from decimal import ROUND_HALF_EVEN, Decimal
 from pathlib import Path
 from typing import Any
 
-from material import Case, record
+from real.material import Case, record
 from support import Document
 
 SCRIPT = Path(__file__).parent / "documented.R"
@@ -94,7 +94,7 @@ def _whole(text: str) -> str:
 
 def _sides(alternative: str) -> Document:
     for word in ("greater", "less"):
-        if alternative.split(" than ")[0].endswith(word):
+        if f" {word} than " in alternative:
             return {"sides": 1, "tail": word}
     return {"sides": 2}
 
@@ -138,7 +138,9 @@ def _difference(first: str, second: str) -> str:
 
 
 def _measured(name: str, lines: list[str]) -> Document:
-    null = next((re.search(r"equal to (-?[\d.]+)$", line) for line in lines if line.startswith("alternative")), None)
+    null = next(
+        (re.search(r"equal to (-?[\d.]+)$", line) for line in lines if line.startswith("alternative")), None
+    )
     if "odds ratio" in name:
         return {"measure": "odds ratio", "null": 1, "scale": "log"}
     if "ratio" in name or "rate" in name:
@@ -152,7 +154,11 @@ def _sample(entry: Document) -> Document:
     sample: Document = {"unit": entry["unit"]}
     groups = entry.get("groups")
     if groups:
-        named = groups.items() if isinstance(groups, dict) else ((f"group {at}", each) for at, each in enumerate(groups, 1))
+        named = (
+            groups.items()
+            if isinstance(groups, dict)
+            else ((f"group {at}", each) for at, each in enumerate(groups, 1))
+        )
         sample["groups"] = [{"name": name, **each} for name, each in named]
     if "n" in entry:
         sample["n"] = entry["n"]
@@ -213,7 +219,9 @@ def _of_tukey(entry: Document) -> Iterator[Case]:
         limits = {"level": 0.95, "low": low, "high": high, "adjusted": True}
         estimate = {"measure": "mean difference", "value": value, "unit": "1", "interval": limits}
         identifier = f"r/{entry['id']}/{_safe(name)}"
-        yield Case("Tukey", f"R, {entry['page']}", record(identifier, test=test, estimate=estimate, sample=_sample(entry)))
+        yield Case(
+            "Tukey", f"R, {entry['page']}", record(identifier, test=test, estimate=estimate, sample=_sample(entry))
+        )
 
 
 def _safe(name: str) -> str:

@@ -1,11 +1,11 @@
-"""The sentence that people write on a result, made from a record: its figures rounded again, with where each stands."""
+"""The sentence that people write on a result, made from a record: its figures rounded again, each by its name."""
 
 from __future__ import annotations
 
 import re
 from decimal import Decimal
 
-from material import Case, rounded_text
+from real.material import Case, rounded_text
 from support import Document
 
 from gatecheck.model.struct import struct
@@ -15,10 +15,10 @@ _LEAST_P = Decimal("0.001")
 _MOST_DIGITS = 6
 #: Ways to write an interval; each with its level, its lower and its upper limit.
 _INTERVALS = (
-    "{level} % CI {low} to {high}",
-    "{level}% CI [{low}, {high}]",
-    "{level} % confidence interval {low}, {high}",
-    "{level} % CI: {low} to {high}",
+    "{level} % CI {lower limit} to {upper limit}",
+    "{level}% CI [{lower limit}, {upper limit}]",
+    "{level} % confidence interval {lower limit}, {upper limit}",
+    "{level} % CI: {lower limit} to {upper limit}",
 )
 
 
@@ -95,11 +95,11 @@ def _interval(case: Case) -> tuple[str, list[tuple[str, str]]] | None:
     if low is None or high is None:
         return None
     pattern = _INTERVALS[len(case.id) % len(_INTERVALS)]
-    shown = {"level": f"{100 * interval['level']:g}", "low": low, "high": high}
+    shown = {"level": f"{100 * interval['level']:g}", "lower limit": low, "upper limit": high}
     value = _shown(case.document["estimate"]["value"], 2)
     if value is not None and len(case.id) % 2:
         pattern, shown["estimate"] = f"{{estimate}} ({pattern})", value
-    pieces = re.split(r"{(estimate|level|low|high)}", pattern)
+    pieces = re.split(r"{(estimate|level|lower limit|upper limit)}", pattern)
     return "interval", [
         (piece if at % 2 else "", shown[piece] if at % 2 else piece) for at, piece in enumerate(pieces) if piece
     ]
