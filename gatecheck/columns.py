@@ -181,12 +181,23 @@ def _tests(tests: Sequence[Test]) -> Tests:
 def _estimates(estimates: Sequence[Estimate | None]) -> Estimates:
     log_scale = _booleans([e is not None and e.scale == "log" for e in estimates])
     limits = [None if e is None else e.interval for e in estimates]
-    given_null = _interval([None if e is None else e.null for e in estimates]).value
-    null = np.where(np.isfinite(given_null), given_null, np.where(log_scale, 1.0, 0.0))
+    nulls = [None if e is None else e.null for e in estimates]
+    null, least, most = (
+        _null(ends, log_scale)
+        for ends in (
+            [_NAN if each is None else each.value for each in nulls],
+            [_NAN if each is None else each.low for each in nulls],
+            [_NAN if each is None else each.high for each in nulls],
+        )
+    )
 
     def from_null(numbers: Sequence[Reported | None]) -> Interval:
         ends = _interval(numbers)
-        return Interval(*(_from_null(end, null, log_scale) for end in (ends.value, ends.low, ends.high)))
+        return Interval(
+            _from_null(ends.value, null, log_scale),
+            _from_null(ends.low, most, log_scale),
+            _from_null(ends.high, least, log_scale),
+        )
 
     return Estimates(
         value=from_null([None if e is None else e.value for e in estimates]),
@@ -205,6 +216,12 @@ def _estimates(estimates: Sequence[Estimate | None]) -> Estimates:
 
 def _margin(estimate: Estimate | None, end: int) -> Reported | None:
     return None if estimate is None or estimate.margin is None else estimate.margin[end]
+
+
+def _null(given: Sequence[float], log_scale: Booleans) -> Floats:
+    """The value of no effect, or an end of what it may stand for; 0, or 1 for a ratio, where none is given."""
+    ends = _floats(given)
+    return np.where(np.isnan(ends), np.where(log_scale, 1.0, 0.0), ends)
 
 
 def _from_null(numbers: Floats, null: Floats, log_scale: Booleans) -> Floats:

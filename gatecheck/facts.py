@@ -85,9 +85,7 @@ def _promises(asked: Asked, found: Sequence[Found]) -> tuple[tuple[Promise | Non
     return made.promises, made.problems
 
 
-def _plans(
-    asked: Asked, promises: Sequence[Promise | None]
-) -> tuple[tuple[PlanInTree, ...], tuple[Problem, ...]]:
+def _plans(asked: Asked, promises: Sequence[Promise | None]) -> tuple[tuple[PlanInTree, ...], tuple[Problem, ...]]:
     """The plans whose promises must be reported: as they were frozen, else as the base has them, else the tree."""
     if _PLANS not in asked.policy.in_general.rules:
         return (), ()

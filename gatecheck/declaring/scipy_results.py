@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
-from itertools import chain
+from collections.abc import Callable, Iterator
 from typing import Any
 
 from gatecheck.declaring.derived import Derived, Given, interval_at_95
@@ -95,13 +94,22 @@ def _df_of_slope(t: float, r: float) -> int | None:
 
 
 def _contingency(result: Any, _: Given) -> Derived:
-    n = round(math.fsum(chain.from_iterable(plain(result.expected_freq))))
+    n = round(math.fsum(_cells(plain(result.expected_freq))))
     test = {
         "name": "chi-squared test of a contingency table",
         **_chi2(result),
         "df": degrees(result.dof),
     }
     return Derived(test | _p(result), n=n)
+
+
+def _cells(table: Any) -> Iterator[float]:
+    """The cells of a table of any number of ways."""
+    if not isinstance(table, list):
+        yield table
+        return
+    for part in table:
+        yield from _cells(part)
 
 
 def _goodness_of_fit(result: Any, _: Given) -> Derived:

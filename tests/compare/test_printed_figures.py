@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+from pathlib import Path
 from typing import Any
 
 import pytest
 from consistent_records import names_short
-from support import Document
+from support import Document, drainage, judge
 
 
 def _proportions(value: str, p: str, correction: str = "with continuity correction") -> Document:
@@ -51,3 +52,15 @@ def test_a_limit_that_is_off_by_far_is_found_beside_an_error_of_few_digits(slip:
     assert names_short({"test": test, "estimate": {**estimate, "interval": limits}}) == [[]]
     ((*names,),) = names_short({"test": test, "estimate": {**estimate, "interval": {**limits, **slip}}})
     assert "limits" in names
+
+
+def test_a_value_of_no_effect_in_quotes_is_rounded_too(tmp_path: Path) -> None:
+    """Mean less null over 0.7207 / sqrt(50) is at most 2.0094 at -0.2013 and 2.0099 as both are rounded."""
+    groups = [{"name": "all", "n": 50, "mean": "0.003484", "sd": "0.7207"}]
+    record = drainage(
+        test={"name": "one-sample t", "statistic": "t", "value": "2.010", "df": 49, "sides": 2},
+        estimate={"measure": "mean", "value": "0.003484", "null": "-0.2013", "unit": "1"},
+        sample={"unit": "plot", "n": 50, "groups": groups},
+    )
+
+    assert judge(tmp_path, record).rule("numbers-agree")["outcome"] == "met"

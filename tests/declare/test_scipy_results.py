@@ -220,6 +220,12 @@ def test_perfect_slope_is_no_test() -> None:
         declared(stats.linregress([0, 1, 2], [0, 2, 4]))
 
 
+def test_a_table_of_more_than_two_ways_has_all_its_cells_counted() -> None:
+    document = declared(stats.chi2_contingency([[[5, 6], [7, 8]], [[9, 4], [3, 8]]]), sample={"unit": "respondent"})
+
+    assert (document["sample"]["n"], document["test"]["df"]) == (50, 4)
+
+
 def test_contingency_table() -> None:
     document = declared(stats.chi2_contingency([[762, 327, 468], [484, 239, 477]]), sample={"unit": "respondent"})
     assert document["test"] == {
