@@ -258,7 +258,7 @@ def test_any_words_are_survived(tmp_path_factory: pytest.TempPathFactory, words:
     text = f"scipy lm ttest_ind\n{''.join(words)}" if suffix == ".R" else "".join(["import scipy\n", *words])
     content = notebook(text, "%%R\n" + text) if suffix == ".ipynb" else text
 
-    file = file_of(tmp_path_factory.getbasetemp(), f"any{suffix}", content.encode())
+    file = file_of(tmp_path_factory.mktemp("words"), f"any{suffix}", content.encode())
 
     assert all(each.known >= 0 and each.line >= 1 for each in file.tests)
     assert all(each.why.startswith("the code ") and each.line >= 1 for each in file.not_read)
