@@ -6,7 +6,7 @@ import json
 from pathlib import Path
 from typing import Any
 
-from support import drainage
+from support import DRAINAGE, changed
 
 MEDIA_TYPE = "application/vnd.gatecheck.record+json"
 #: Writes the record that stands in `RECORD` below the current folder.
@@ -59,4 +59,4 @@ def place(folder: Path, files: dict[str, Any]) -> Path:
 
 def worms(**changes: Any) -> dict[str, Any]:
     """A record under a short name."""
-    return drainage(**{"id": "worms", **changes})
+    return changed(DRAINAGE, **{"id": "worms", **changes})

@@ -8,7 +8,7 @@ from typing import Any
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
-from support import Document, changed, drainage
+from support import DRAINAGE, Document, changed
 
 from gatecheck.model.found import Found
 from gatecheck.model.numbers import parse_reported
@@ -19,6 +19,11 @@ from gatecheck.schema.records import read_record
 
 TOLERANCE = 1e-9
 ID = "drainage/earthworm-biomass"
+
+
+def drainage(**changes: Any) -> Document:
+    """The drainage record with these values alone changed."""
+    return changed(DRAINAGE, **changes)
 
 
 def found(document: Document) -> Found:

@@ -350,7 +350,7 @@ run(Path({str(tmp_path)!r}), "a.ipynb", 5)
             break
         time.sleep(0.1)
     process.send_signal(signal.SIGINT)
-    _, complaints = process.communicate(timeout=60)
+    _, complaints = process.communicate(timeout=240)
 
     assert b"KeyboardInterrupt" in complaints
     assert not _lives(pid.read_text(encoding="utf-8"))

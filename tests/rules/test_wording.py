@@ -183,7 +183,7 @@ def test_the_step_that_would_mend_it(tmp_path: Path, claim: str, changes: Docume
             "“For biomass, the mean difference was 4.2 g/m2 (95 % interval 0.34 to 8.06; 18 + 18 plots).”",
         ),
         (
-            {"outcome": {"variable": "biomass"}, "estimate__value": 4.9},
+            {"outcome": {"variable": "biomass"}, "estimate__value": 4.9, "sample": DRAINAGE["sample"]},
             "“For biomass, the mean difference was 4.9 g/m2 (95 % interval 0.34 to 8.06; 18 + 18 plots).”",
         ),
         (

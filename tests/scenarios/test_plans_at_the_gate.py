@@ -137,3 +137,17 @@ def test_a_verdict_names_the_plans_that_counted_with_their_digests(folder: Path)
     write(folder, "results/a.json", RECORD)
 
     assert weigh(folder).verdict["plans"] == [{"path": "plans/drainage.json", "digest": seal["digest"]}]
+
+
+def test_a_plan_that_lies_elsewhere_counts_for_its_records_alone(folder: Path) -> None:
+    """The policy asks for all promises of the plans in `promised/`, and of no others."""
+    policy = changed(
+        POLICY, rules={"all-promised-reported": {"release": "strict"}}, plans={"include": "promised/**"}
+    )
+    write(folder, "gatecheck.yaml", policy)
+    write(folder, "results/a.json", RECORD)
+
+    answer = weigh(folder)
+
+    assert (answer.status, answer.verdict["reported"]) == (0, [])
+    assert [plan["path"] for plan in answer.verdict["plans"]] == ["plans/drainage.json"]
