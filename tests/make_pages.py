@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import dataclasses
 import inspect
-import sys
+from importlib import import_module
 from pathlib import Path
 from typing import Any
 
@@ -22,7 +22,7 @@ _ENFORCE = "`enforce: block | note | off` (default `block`)"
 
 def page(rule: Rule) -> str:
     """The page of one rule, in Markdown."""
-    text = inspect.getdoc(sys.modules[rule.judge.__module__]) or ""
+    text = inspect.getdoc(import_module(f"gatecheck.rules.{rule.name.replace('-', '_')}")) or ""
     _, _, body = text.partition("\n\n")
     named = (
         "It is always on, unless the policy sets it otherwise."

@@ -9,7 +9,7 @@ import re
 from collections.abc import Iterator
 
 from gatecheck.prose.markers import marker_in
-from gatecheck.prose.source import Hidden
+from gatecheck.prose.source import Hidden, stretches
 
 #: Environments whose text is printed as it stands, is left out, or is of others.
 _ENVIRONMENTS = ("verbatim", "Verbatim", "lstlisting", "minted", "comment", "filecontents", "thebibliography")
@@ -22,14 +22,8 @@ _LINE_END = re.compile(r"$", re.MULTILINE)
 
 
 def hidden(text: str) -> Iterator[Hidden]:
-    """Yield comments, verbatim text, addresses and lists of references, in order."""
-    at = 0
-    while found := _OPENING.search(text, at):
-        at = found.end()
-        one = _opened(text, found)
-        if one is not None:
-            at = one.end
-            yield one
+    """Return comments, verbatim text, addresses and lists of references, in order."""
+    return stretches(_OPENING, _opened, text)
 
 
 def _opened(text: str, found: re.Match[str]) -> Hidden | None:

@@ -9,7 +9,7 @@ import re
 from collections.abc import Iterator
 
 from gatecheck.prose.markers import marker_in
-from gatecheck.prose.source import Hidden
+from gatecheck.prose.source import Hidden, stretches
 
 _OPENING = re.compile(r"`+|~{3,}|<!--|\]\(|https?://|\n[ \t]*\n(?: {4}|\t)")
 _BEFORE_FENCE = re.compile(r"[ \t>]*")
@@ -24,14 +24,8 @@ _LONGEST_SPAN = 10_000
 
 
 def hidden(text: str) -> Iterator[Hidden]:
-    """Yield code blocks, inline code, comments, and the addresses of links, in order."""
-    at = 0
-    while found := _OPENING.search(text, at):
-        at = found.end()
-        one = _opened(text, found)
-        if one is not None:
-            at = one.end
-            yield one
+    """Return code blocks, inline code, comments, and the addresses of links, in order."""
+    return stretches(_OPENING, _opened, text)
 
 
 def _opened(text: str, found: re.Match[str]) -> Hidden | None:

@@ -9,7 +9,7 @@ import re
 from collections.abc import Iterator
 
 from gatecheck.prose.markers import marker_in
-from gatecheck.prose.source import Hidden
+from gatecheck.prose.source import Hidden, stretches
 
 _OPENING = re.compile(
     r"``|`_|https?://|(?P<literal>::[ \t]*\r?\n)|^(?P<indent>[ \t]*)\.\.(?=[ \t\r\n]|\Z)(?P<says>[^\n]*)"
@@ -25,14 +25,8 @@ _LONGEST_SPAN = 10_000
 
 
 def hidden(text: str) -> Iterator[Hidden]:
-    """Yield comments, literal blocks, Python sessions, inline literals and addresses, in order."""
-    at = 0
-    while found := _OPENING.search(text, at):
-        at = found.end()
-        one = _opened(text, found)
-        if one is not None:
-            at = one.end
-            yield one
+    """Return comments, literal blocks, Python sessions, inline literals and addresses, in order."""
+    return stretches(_OPENING, _opened, text)
 
 
 def _opened(text: str, found: re.Match[str]) -> Hidden | None:

@@ -30,6 +30,19 @@ class Hidden:
 Dialect = Callable[[str], Iterator[Hidden]]
 
 
+def stretches(
+    opening: re.Pattern[str], opened: Callable[[str, re.Match[str]], Hidden | None], text: str
+) -> Iterator[Hidden]:
+    """Yield what `opened` makes of each match of `opening` in `text`, going on where a stretch ends."""
+    at = 0
+    while found := opening.search(text, at):
+        at = found.end()
+        one = opened(text, found)
+        if one is not None:
+            at = one.end
+            yield one
+
+
 @dataclass(eq=False, repr=False)
 class SourceFile:
     """A file of prose: its path relative to the judged folder, and its text without a byte order mark."""

@@ -12,9 +12,6 @@ from collections.abc import Sequence
 from dataclasses import KW_ONLY
 from typing import Annotated, Literal
 
-import numpy as np
-
-from gatecheck.columns import Booleans
 from gatecheck.compare.names import shown
 from gatecheck.compare.promises import NotReported, missing_hypotheses
 from gatecheck.model.marks import OneOrMore
@@ -24,7 +21,7 @@ from gatecheck.model.record import Record
 from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Enforce, Finding, Judged, Place
 from gatecheck.policy import RuleSettings
-from gatecheck.rules.rule import Judgement, Rule, Said, Table
+from gatecheck.rules.rule import rule_beyond_records
 
 _NAME = "all-promised-reported"
 _ASKS = "every hypothesis that a plan promises is answered by a record"
@@ -86,25 +83,4 @@ def _finding(plan: PlanInTree, hypothesis: Hypothesis, enforce: Enforce) -> Find
     )
 
 
-def _no_row(table: Table, _: Sequence[Settings | None]) -> Booleans:
-    return np.zeros(len(table.columns.found), np.bool_)
-
-
-def judge(table: Table, settings: Sequence[Settings | None]) -> Judgement:
-    """No record falls short of it: `judge_plans` judges the plans."""
-    return Judgement(_no_row(table, settings))
-
-
-def explain(_: Table, __: int, ___: Settings, ____: Judgement) -> Said:
-    """What is asked, which no record is held to by itself."""
-    return Said(f"This rule judges plans: {_ASKS}.")
-
-
-RULE = Rule(
-    name=_NAME,
-    asks=_ASKS,
-    settings=Settings,
-    judge=judge,
-    explain=explain,
-    concerns=_no_row,
-)
+RULE = rule_beyond_records(_NAME, _ASKS, Settings, "plans")

@@ -109,6 +109,22 @@ class Rule:
     concerns: Callable[[Table, Sequence[Any]], Booleans] = every_row
 
 
+def rule_beyond_records(name: str, asks: str, settings: type[RuleSettings], judges: str) -> Rule:
+    """Return the rule of that name, which `judges` something else than records: it concerns none of them."""
+
+    def no_row(table: Table, _: Sequence[Any]) -> Booleans:
+        return np.zeros(len(table.columns.found), np.bool_)
+
+    return Rule(
+        name=name,
+        asks=asks,
+        settings=settings,
+        judge=lambda table, each: Judgement(no_row(table, each)),
+        explain=lambda *_: Said(f"This rule judges {judges}: {asks}."),
+        concerns=no_row,
+    )
+
+
 def setting(settings: Sequence[Any], name: str) -> Floats:
     """One number of the settings as a column; nan where the rule is off."""
     return np.array([np.nan if each is None else getattr(each, name) for each in settings], np.float64)

@@ -40,9 +40,6 @@ from dataclasses import KW_ONLY, replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any, cast
 
-import numpy as np
-
-from gatecheck.columns import Booleans
 from gatecheck.compare.names import shown
 from gatecheck.model.found import Found
 from gatecheck.model.marks import OneOrMore
@@ -50,7 +47,7 @@ from gatecheck.model.record import Text
 from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Enforce, Finding, Judged, Place, Problem
 from gatecheck.policy import Globs, Policy, RuleSettings
-from gatecheck.rules.rule import Judgement, Rule, Said, Table
+from gatecheck.rules.rule import Said, rule_beyond_records
 
 if TYPE_CHECKING:
     from gatecheck.prose import agree
@@ -212,25 +209,4 @@ _SAY: dict[str, Callable[[agree.Fact, Any], Said]] = {
 }
 
 
-def _no_row(table: Table, _: Sequence[Settings | None]) -> Booleans:
-    return np.zeros(len(table.columns.found), np.bool_)
-
-
-def judge(table: Table, settings: Sequence[Settings | None]) -> Judgement:
-    """No record falls short of it: `judge_prose` judges the prose."""
-    return Judgement(_no_row(table, settings))
-
-
-def explain(_: Table, __: int, ___: Settings, ____: Judgement) -> Said:
-    """What is asked, which no record is held to by itself."""
-    return Said(f"This rule judges prose: {_ASKS}.")
-
-
-RULE = Rule(
-    name=_NAME,
-    asks=_ASKS,
-    settings=Settings,
-    judge=judge,
-    explain=explain,
-    concerns=_no_row,
-)
+RULE = rule_beyond_records(_NAME, _ASKS, Settings, "prose")

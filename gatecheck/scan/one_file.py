@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterable, Iterator
 from pathlib import Path
 
 from gatecheck import git
@@ -35,6 +35,11 @@ def read_one(root: Path, path: str, revision: str | None = None) -> OneFile | No
     content = _content(root, path) if revision is None else git.read_file_at(root, revision, path)
     if content is None:
         return None
+    return file_of(path, content, _flaws)
+
+
+def file_of(path: str, content: bytes, flaws: Callable[[Document], Iterable[Problem]]) -> OneFile:
+    """Return the one document in `content`, or what is wrong with it; `flaws` tells what it may not hold."""
     import hashlib  # noqa: PLC0415  # costs start-up time, and a tree without a policy does not need it
 
     digest = f"sha256:{hashlib.sha256(content).hexdigest()}"
@@ -47,7 +52,7 @@ def read_one(root: Path, path: str, revision: str | None = None) -> OneFile | No
     documents = [one for one in outcomes if isinstance(one, Document)]
     if len(documents) != 1 and not problems:
         problems = (Problem(Place(path), f"the file holds {len(documents)} documents", "write one document"),)
-    problems = problems or tuple(_flaws(documents[0]))
+    problems = problems or tuple(flaws(documents[0]))
     return OneFile(path, digest, None if problems else documents[0], problems)
 
 

@@ -10,8 +10,7 @@ from gatecheck import git
 from gatecheck.errors import CannotJudge
 from gatecheck.git import Entry
 from gatecheck.model.verdict import Place, Problem
-from gatecheck.scan.one_file import OneFile
-from gatecheck.scan.readers import READERS, suffix_of
+from gatecheck.scan.one_file import OneFile, file_of
 from gatecheck.scan.readers.document import Document, Refused
 from gatecheck.scan.tree import Tree, contents
 from gatecheck.schema.read import Fault
@@ -29,20 +28,11 @@ def read_own(root: Path, path: str, revision: str | None = None) -> OneFile | No
     content = _content(root, path) if revision is None else git.read_file_at(root, revision, path)
     if content is None:
         return None
-    import hashlib  # noqa: PLC0415  # costs start-up time, and most trees have no such file
+    return file_of(path, content, _flaws)
 
-    digest = f"sha256:{hashlib.sha256(content).hexdigest()}"
-    reader = READERS.get(suffix_of(path))
-    if reader is None:
-        problem = Problem(Place(path), "the file has a suffix that no reader knows", "name it .json, .yaml or .yml")
-        return OneFile(path, digest, None, (problem,))
-    outcomes = reader(path, content)
-    problems = tuple(one for one in outcomes if isinstance(one, Problem))
-    documents = [one for one in outcomes if isinstance(one, Document)]
-    if len(documents) != 1 and not problems:
-        problems = (Problem(Place(path), f"the file holds {len(documents)} documents", "write one document"),)
-    problems = problems or tuple(_problem(documents[0], fault) for fault in _refused(documents[0].value))
-    return OneFile(path, digest, None if problems else documents[0], problems)
+
+def _flaws(document: Document) -> Iterator[Problem]:
+    yield from (_problem(document, fault) for fault in _refused(document.value))
 
 
 def _problem(document: Document, fault: Fault) -> Problem:

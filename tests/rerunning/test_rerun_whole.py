@@ -202,10 +202,10 @@ def test_a_folder_within_a_repository_runs_where_it_lies(tmp_path: Path) -> None
     code = """
 import pathlib
 from gatecheck.declaring.provenance import repository_root
-assert pathlib.Path("../shared.csv").read_text() == "1"
+assert pathlib.Path("../plots.csv").read_text() == "1"
 assert repository_root() == pathlib.Path.cwd().parent
 """
-    place(tmp_path, {"shared.csv": "1", "study/a.py": code + emitting(worms()), "study/results/r.json": worms()})
+    place(tmp_path, {"plots.csv": "1", "study/a.py": code + emitting(worms()), "study/results/r.json": worms()})
     commit_all(tmp_path, "first")
 
     assert ran(tmp_path / "study", "a.py").exit is Exit.STANDS
