@@ -52,6 +52,15 @@ def merged(rows: Sequence[Judged]) -> tuple[Judged, ...]:
     return tuple(sorted(by_id.values(), key=lambda one: (one.at.path, one.at.line, one.id)))
 
 
+def counting_new(rows: Sequence[Judged], before: Sequence[Judged]) -> tuple[Judged, ...]:
+    """Return `rows` so that those do not count now of which `before`, at the base, says all of the same file."""
+    said = {(one.at.path, finding.message) for one in before for finding in one.findings}
+    return tuple(
+        replace(row, counts_now=any((row.at.path, finding.message) not in said for finding in row.findings))
+        for row in rows
+    )
+
+
 def _both(first: Judged, second: Judged) -> Judged:
     findings = (*first.findings, *second.findings)
     return replace(first, findings=findings, counts_now=first.counts_now or second.counts_now)
@@ -63,7 +72,11 @@ def _plans(tree: Tree, facts: Facts) -> tuple[Judged, ...]:
         return ()
     from gatecheck.rules import all_promised_reported as rule  # noqa: PLC0415  # few policies ask for it
 
-    return rule.judge_plans(facts.plans, [one.record for one in tree.found], cast("rule.Settings", settings))
+    def judged(found: Sequence[Found]) -> tuple[Judged, ...]:
+        return rule.judge_plans(facts.plans, [one.record for one in found], cast("rule.Settings", settings))
+
+    rows = judged(tree.found)
+    return rows if tree.base is None else counting_new(rows, judged(tree.at_base))
 
 
 def _prose(tree: Tree, records: Sequence[Judged]) -> Rows:
@@ -75,7 +88,7 @@ def _prose(tree: Tree, records: Sequence[Judged]) -> Rows:
     rows, problems = rule.judge_prose(tree.root, tree.found, settings, judged=records)
     if rows and tree.base is not None:
         before, _ = rule.judge_prose(tree.root, tree.at_base, settings, tree.base, records)
-        rows = rule.counting_new(rows, before)
+        rows = counting_new(rows, before)
     return rows, problems
 
 
@@ -93,6 +106,12 @@ def _sentences(tree: Tree, table: Table) -> tuple[Judged, ...]:
 def _code(tree: Tree, code: CodeRead | None) -> tuple[Judged, ...]:
     if code is None:
         return ()
-    from gatecheck.rules import all_tests_recorded as rule  # noqa: PLC0415  # few policies ask for it
+    from gatecheck.analysis import read_code  # noqa: PLC0415  # few policies ask for it
+    from gatecheck.rules import all_tests_recorded as rule  # noqa: PLC0415
 
-    return rule.judge_code(code, tree.found, cast("rule.Settings | None", tree.policy.in_general.rules.get(_CODE)))
+    settings = cast("rule.Settings", tree.policy.in_general.rules[_CODE])
+    rows = rule.judge_code(code, tree.found, settings)
+    if not rows or tree.base is None:
+        return rows
+    before = read_code(tree.root, settings.include, settings.exclude, tree.base)
+    return counting_new(rows, rule.judge_code(before, tree.at_base, settings))

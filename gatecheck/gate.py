@@ -203,7 +203,10 @@ def _priors_that_count(tree: Scan, since: SinceBase) -> list[float | None]:
 def _notes_on_proposed(request: Request, state: _State, proposed: Policy | None) -> tuple[str, ...]:
     if proposed is None:
         return ()
-    other = _judge_all(request, state.tree, state.since, proposed)
+    try:
+        other = _judge_all(request, state.tree, state.since, proposed)
+    except CannotJudge as stop:
+        return (f"What the policy proposed here would say cannot be told: {stop.message}; {stop.advice}.",)
     return (note_on_proposed(state.judged, other.judged),)
 
 

@@ -10,13 +10,15 @@ from gatecheck.pull_request import SinceBase, prior_of
 from gatecheck.rules.rule import Table
 
 _MOST_NAMED = 5
-_DOES: Mapping[Standing, str] = {
+_DOES: Mapping[Standing | None, str] = {
+    None: "not judged",
     "stands": "stands",
     "falls-short": "falls short",
     "waived": "is waived",
     "undecided": "is undecided",
 }
-_WOULD: Mapping[Standing, str] = {
+_WOULD: Mapping[Standing | None, str] = {
+    None: "would not be judged",
     "stands": "would stand",
     "falls-short": "would fall short",
     "waived": "would be waived",
@@ -26,13 +28,18 @@ _WOULD: Mapping[Standing, str] = {
 
 def note_on_proposed(judged: Sequence[Judged], other: Sequence[Judged]) -> str:
     """What the policy that a request proposes would say (`other`), where it differs from that of the base."""
+    here, there = _standings(judged), _standings(other)
     differing = [
-        f"{one.id} {_WOULD[there.standing]} ({_DOES[one.standing]} under the base)"
-        for one, there in zip(judged, other, strict=True)
-        if one.standing != there.standing
+        f"{name} {_WOULD[there.get(name)]} ({_DOES[here.get(name)]} under the base)"
+        for name in dict.fromkeys((*here, *there))
+        if here.get(name) != there.get(name)
     ]
     told = _named(differing, "; ") if differing else "every record would be judged alike"
     return f"Under the policy proposed here: {told}."
+
+
+def _standings(judged: Sequence[Judged]) -> dict[str, Standing]:
+    return {one.id: one.standing for one in judged}
 
 
 def notes_on_priors_changed(table: Table, since: SinceBase | None) -> tuple[str, ...]:

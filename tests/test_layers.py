@@ -74,7 +74,7 @@ ARROWS: Mapping[str, frozenset[str]] = {
     }),
     "prose": frozenset({"model", "git", "globs", "scan"}),
     "analysis": frozenset({"model", "git", "globs", "scan", "errors"}),
-    "beyond": frozenset({"facts", "prose", "rules", "policy", "model"}),
+    "beyond": frozenset({"analysis", "facts", "prose", "rules", "policy", "model"}),
     "facts": frozenset({"analysis", "compare", "freshness", "history", "plans", "policy", "rules", "model"}),
     "notes": frozenset({"figures", "pull_request", "rules", "model"}),
     "figures": frozenset({"rules", "weigh", "policy", "model"}),

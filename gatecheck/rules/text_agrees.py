@@ -36,7 +36,7 @@ Common practice, no source.
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import KW_ONLY, replace
+from dataclasses import KW_ONLY
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any, cast
 
@@ -109,15 +109,6 @@ def judge_prose(
         rows.setdefault(Place(fact.passage.file.path, fact.passage.line(fact.at)), []).append(fact)
     judged_rows = tuple(_row(place, rows[place], settings) for place in sorted(rows))
     return judged_rows, (*prose.problems, *facts.problems)
-
-
-def counting_new(rows: Sequence[Judged], before: Sequence[Judged]) -> tuple[Judged, ...]:
-    """Return `rows` so that those do not count now of which `before`, at the base, says all of the same file."""
-    said = {(one.at.path, finding.message) for one in before for finding in one.findings}
-    return tuple(
-        replace(row, counts_now=any((row.at.path, finding.message) not in said for finding in row.findings))
-        for row in rows
-    )
 
 
 def _row(place: Place, facts: Sequence[agree.Fact], settings: Settings) -> Judged:

@@ -9,6 +9,7 @@ from typing import Any
 import pytest
 from support import Document, commit_all, drainage, write_tree
 
+from gatecheck.beyond import counting_new
 from gatecheck.columns import columns_of
 from gatecheck.compare.own_numbers import own_numbers
 from gatecheck.evidence import weigh_columns
@@ -19,7 +20,7 @@ from gatecheck.render.annotations import commands
 from gatecheck.render.terminal import account
 from gatecheck.rules.engine import judge_all
 from gatecheck.rules.rule import Table
-from gatecheck.rules.text_agrees import RULE, Settings, counting_new, judge_prose, settings_in
+from gatecheck.rules.text_agrees import RULE, Settings, judge_prose, settings_in
 from gatecheck.scan import scan
 
 ID = "drainage/earthworm-biomass"

@@ -3,10 +3,16 @@
 from __future__ import annotations
 
 import json
+from collections.abc import Sequence
 from pathlib import Path
 
 import pytest
 from support import POLICY, Document, changed, command, commit_all, drainage, git, weigh, write_tree
+
+from gatecheck.errors import CannotJudge
+from gatecheck.facts import Asked, Facts, look_up
+from gatecheck.model.found import Found
+from gatecheck.policy import Applied
 
 ID = "drainage/earthworm-biomass"
 STRICT = changed(POLICY, name="stricter policy", rules={"false-positive-risk": {"limit": 0.001}})
@@ -238,3 +244,72 @@ def test_a_family_that_is_new_has_lost_nothing(repository: Path) -> None:
     write_tree(repository, member("a"), member("b"), member("c"), policy=FAMILY_ON)
 
     assert weigh(repository, "--base", "HEAD").rule("family", "a")["outcome"] == "met"
+
+
+def test_a_proposed_policy_may_judge_what_that_of_the_base_does_not(repository: Path) -> None:
+    """A line of prose that only the proposed policy would judge is a row under that policy alone."""
+    (repository / "report.md").write_text("Biomass: t(34) = 9.99, p = .5.\n", encoding="utf-8")
+    proposed = changed(POLICY, rules={**POLICY["rules"], "text-agrees": {"unlinked": "block"}})
+    (repository / "gatecheck.yaml").write_text(json.dumps(proposed), encoding="utf-8")
+
+    answer = weigh(repository, "--base", "HEAD")
+
+    assert answer.status == 0
+    assert answer.verdict["notes"][1] == (
+        "Under the policy proposed here: report.md:1 would fall short (not judged under the base)."
+    )
+
+
+def test_a_policy_that_would_judge_less_says_what_falls_away(repository: Path) -> None:
+    (repository / "report.md").write_text("Biomass: t(34) = 9.99, p = .5.\n", encoding="utf-8")
+    strict = changed(POLICY, rules={**POLICY["rules"], "text-agrees": {"unlinked": "block"}})
+    (repository / "gatecheck.yaml").write_text(json.dumps(strict), encoding="utf-8")
+    commit_all(repository, "a policy that reads text")
+    (repository / "gatecheck.yaml").write_text(json.dumps(POLICY), encoding="utf-8")
+
+    answer = weigh(repository, "--base", "HEAD")
+
+    assert answer.status == 1
+    assert answer.verdict["notes"][1] == (
+        "Under the policy proposed here: report.md:1 would not be judged (falls short under the base)."
+    )
+
+
+def test_only_what_is_new_of_plans_and_code_counts_where_only_changes_do(repository: Path) -> None:
+    """A promise that the base does not keep, and a test that it does not record, block no other request."""
+    plan = {"gatecheck": "plan/1", "id": "p", "title": "A plan", "data": "none"}
+    first = {"id": "H1", "text": "Drainage lowers soil pH."}
+    (repository / "plans").mkdir()
+    (repository / "plans" / "p.json").write_text(json.dumps({**plan, "hypotheses": [first]}), encoding="utf-8")
+    test = "from scipy import stats\nprint(stats.ttest_ind([1, 2], [3, 4]).pvalue)\n"
+    (repository / "a.py").write_text(test, encoding="utf-8")
+    rules = {**POLICY["rules"], "all-promised-reported": {"release": "strict"}, "all-tests-recorded": {}}
+    (repository / "gatecheck.yaml").write_text(json.dumps(changed(POLICY, rules=rules)), encoding="utf-8")
+    commit_all(repository, "a base with shortfalls")
+
+    whole, unchanged = weigh(repository, "--base", "HEAD"), weigh(repository, "--base", "HEAD", "--only-changed")
+    (repository / "b.py").write_text(test, encoding="utf-8")
+    another = weigh(repository, "--base", "HEAD", "--only-changed")
+
+    assert (whole.status, unchanged.status, another.status) == (1, 0, 1)
+    counted = {row["id"]: row.get("counts_now", True) for row in another.verdict["reported"]}
+    assert counted == {"a.py": False, "b.py": True, "plans/p.json": False}
+
+
+def test_a_proposed_policy_that_stops_the_gate_does_not_stop_the_verdict(
+    repository: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def looked_up(asked: Asked, found: Sequence[Found], applied: Sequence[Applied]) -> Facts:
+        if asked.policy.document.name == "proposed":
+            raise CannotJudge("git log failed", "mend the repository")
+        return look_up(asked, found, applied)
+
+    monkeypatch.setattr("gatecheck.gate.look_up", looked_up)
+    (repository / "gatecheck.yaml").write_text(json.dumps(changed(POLICY, name="proposed")), encoding="utf-8")
+
+    answer = weigh(repository, "--base", "HEAD")
+
+    assert answer.status == 0
+    assert answer.verdict["notes"][1] == (
+        "What the policy proposed here would say cannot be told: git log failed; mend the repository."
+    )
