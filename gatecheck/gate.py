@@ -24,7 +24,7 @@ from gatecheck.model.found import Found, Scan
 from gatecheck.model.progress import Progress
 from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Figures, Finding, Judged, Place, Problem, Verdict
-from gatecheck.notes import note_on_priors, note_on_proposed, notes_on_apart, notes_on_priors_changed
+from gatecheck.notes import note_on_proposed, notes_on_apart, notes_on_priors, notes_on_priors_changed
 from gatecheck.permissions import Setting, Settled, permitted
 from gatecheck.permissions.commits import judged_commit
 from gatecheck.policies import Standing, standing_policy
@@ -83,7 +83,7 @@ def _check(request: Request, standing: Standing, policy: Policy) -> Verdict:
             *state.notes,
             *_notes_on_proposed(request, state, standing.proposed),
             *notes_on_priors_changed(state.table, since),
-            *note_on_priors(state.table),
+            *notes_on_priors(state.table),
             *notes_on_apart(state.table),
         ),
         changes=() if since is None else since.changes,

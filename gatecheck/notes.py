@@ -58,16 +58,21 @@ def notes_on_priors_changed(table: Table, since: SinceBase | None) -> tuple[str,
     return tuple(notes)
 
 
-def note_on_priors(table: Table) -> tuple[str, ...]:
-    """Name the claims that are weighed at a prior of their own above the policy's: it helps them to stand."""
-    raised = [
-        one.record.id
-        for row, one in enumerate(table.columns.found)
-        if table.columns.claims[row] and _own_prior(table, row) > table.applied[row].evidence.prior
-    ]
-    if not raised:
-        return ()
-    return (f"Weighed at a prior that the record itself sets above the policy's: {_named(raised)}.",)
+def notes_on_priors(table: Table) -> tuple[str, ...]:
+    """Name the claims that are helped by a prior above the policy's, of their own or of their plan."""
+    by_record, by_plan = [], []
+    for row, one in enumerate(table.columns.found):
+        policy = table.applied[row].evidence.prior
+        if not table.columns.claims[row]:
+            continue
+        if table.columns.prior_from_plan[row] and table.columns.own_prior[row] > policy:
+            by_plan.append(one.record.id)
+        elif _own_prior(table, row) > policy:
+            by_record.append(one.record.id)
+    said = {"the record itself sets": by_record, "its plan sets": by_plan}
+    return tuple(
+        f"Weighed at a prior that {who} above the policy's: {_named(ids)}." for who, ids in said.items() if ids
+    )
 
 
 def _own_prior(table: Table, row: int) -> float:

@@ -61,6 +61,15 @@ def test_the_prior_of_the_plan_counts_where_the_record_sets_none(folder: Path) -
     assert answer.verdict["notes"] == []
 
 
+def test_a_plan_that_raises_the_prior_is_named(folder: Path) -> None:
+    hopeful = {"probability": 0.8, "basis": "it has to work"}
+    write(folder, "plans/drainage.json", changed(PLAN, hypotheses=[{**PLAN["hypotheses"][0], "prior": hopeful}]))
+    commit_all(folder, "hope")
+    write(folder, "results/a.json", RECORD)
+
+    assert weigh(folder).verdict["notes"] == [f"Weighed at a prior that its plan sets above the policy's: {ID}."]
+
+
 def test_the_effect_of_the_plan_counts_where_the_record_gives_none(folder: Path) -> None:
     """LR 3.82 against the one standard deviation that was registered."""
     write(folder, "gatecheck.yaml", changed(POLICY, evidence={"alternative": "design-effect"}))
