@@ -59,7 +59,7 @@ def _known(shape: Shape, value: Any) -> Any:
 def _repeated(told: ToldVerdict) -> Iterator[Fault]:
     """An id that stands twice could not be compared with its like; the gate writes none."""
     seen: set[str] = set()
-    for field, records in (("claims", told.claims), ("reported", told.reported)):
+    for field, records in (("claims", told.claims), ("reported", told.reported), ("others", told.others)):
         for row, one in enumerate(records):
             if one.id in seen:
                 yield Fault((field, row, "id"), f"stands twice ({one.id})", "write the verdict again")
@@ -67,7 +67,7 @@ def _repeated(told: ToldVerdict) -> Iterator[Fault]:
 
 
 def _by_id(verdict: ToldVerdict) -> Mapping[str, ToldRecord]:
-    return {one.id: one for one in (*verdict.claims, *verdict.reported)}
+    return {one.id: one for one in (*verdict.claims, *verdict.reported, *verdict.others)}
 
 
 def _conditions(first: ToldVerdict, second: ToldVerdict) -> Iterator[Difference]:

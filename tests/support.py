@@ -108,8 +108,9 @@ class Answer:
     verdict: Document
 
     def claim(self, identifier: str = DRAINAGE["id"]) -> Document:
-        """What the verdict says of one record, whether or not it claims something."""
-        (one,) = (x for x in self.verdict["claims"] + self.verdict["reported"] if x["id"] == identifier)
+        """What the verdict says of one record or other row, whether or not it claims something."""
+        rows = self.verdict["claims"] + self.verdict["reported"] + self.verdict["others"]
+        (one,) = (each for each in rows if each["id"] == identifier)
         return dict(one)
 
     def rule(self, name: str, identifier: str = DRAINAGE["id"]) -> Document:

@@ -101,6 +101,7 @@ class ToldVerdict:
     base: str | None = None
     head: str | None = None
     plans: tuple[ToldPlan, ...] = ()
+    others: tuple[ToldRecord, ...] = ()
 
 
 @struct

@@ -13,6 +13,7 @@ Outcome = Literal["met", "short", "waived", "does-not-apply", "undecided"]
 Enforce = Literal["block", "note", "off"]
 Standing = Literal["stands", "falls-short", "waived", "undecided"]
 Answer = Literal["stands", "falls-short", "cannot-judge"]
+Kind = Literal["record", "plan", "text", "code"]
 ChangeKind = Literal["strengthened", "new", "changed", "withdrawn"]
 
 
@@ -95,7 +96,10 @@ class Sensitivity:
 
 @dataclass(frozen=True, slots=True)
 class Judged:
-    """One record with all that the rules say of it; `numbers` is the digest of its numbers."""
+    """One record with all that the rules say of it; `numbers` is the digest of its numbers.
+
+    A plan, a line of prose and a file of code are judged alike: they are of another `kind` and claim nothing.
+    """
 
     id: str
     at: Place
@@ -109,6 +113,7 @@ class Judged:
     sensitivity: Sensitivity | None = None
     numbers: str = ""
     interval: IntervalShown | None = None
+    kind: Kind = "record"
 
     @property
     def standing(self) -> Standing:
@@ -170,7 +175,12 @@ class Verdict:
     @property
     def reported(self) -> tuple[Judged, ...]:
         """The records that report a result and claim nothing."""
-        return tuple(one for one in self.judged if one.claim is None)
+        return tuple(one for one in self.judged if one.claim is None and one.kind == "record")
+
+    @property
+    def others(self) -> tuple[Judged, ...]:
+        """What is judged and is no record: plans, lines of prose, files of code."""
+        return tuple(one for one in self.judged if one.kind != "record")
 
     @property
     def exit(self) -> Exit:

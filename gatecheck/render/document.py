@@ -23,6 +23,7 @@ def document(verdict: Verdict) -> str:
         "counts": _counts(verdict),
         "claims": [_judged(one) for one in by_place(verdict.claims)],
         "reported": [_judged(one) for one in by_place(verdict.reported)],
+        "others": [{**_judged(one), "kind": one.kind} for one in by_place(verdict.others)],
         "problems": [
             {"at": _place(problem.at), "message": problem.message, "advice": problem.advice}
             for problem in problems_by_place(verdict.problems)

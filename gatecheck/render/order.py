@@ -82,6 +82,11 @@ def with_waiver(verdict: Verdict) -> list[Judged]:
     return by_place(one for one in verdict.judged if one.standing == "waived")
 
 
+def others_standing(verdict: Verdict) -> list[Judged]:
+    """Return the plans, lines of prose and files of code that block nothing."""
+    return by_place(one for one in verdict.others if one.standing == "stands")
+
+
 def without_claim(verdict: Verdict) -> list[Judged]:
     """Return the records that claim nothing and are not blocked or waived."""
     return by_place(one for one in verdict.reported if one.standing == "stands")

@@ -175,7 +175,7 @@ def _allowed(one: Judged) -> str:
 
 def _held(one: Judged) -> tuple[str, str]:
     state = "Cannot be decided" if one.standing == "undecided" else "Short of the policy"
-    claim = f"Claim: {words.sentence(one.claim or words.NO_CLAIM)} In {words.places(one)}."
+    claim = f"Claim: {words.sentence(words.what_is_claimed(one))} In {words.places(one)}."
     findings = "".join(map(_finding, order.blocking_findings(one)))
     return _row(one), f"### {_md(one.id)}\n\n{state}. {_md(claim)}\n\n{findings}\n"
 

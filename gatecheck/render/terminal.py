@@ -58,7 +58,7 @@ def account(verdict: Verdict, width: int, *, bold: bool = False) -> str:
 def _held(one: Judged, width: int, bold: bool) -> str:
     identity = [
         strong(item(one.id, width), bold=bold),
-        labelled("Claim", one.claim or words.NO_CLAIM, width),
+        labelled("Claim", words.what_is_claimed(one), width),
         labelled("Result", one.result, width),
         labelled("Place", words.places(one), width),
     ]

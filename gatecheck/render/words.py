@@ -12,7 +12,6 @@ RISK_RULE = "false-positive-risk"
 PRIOR_RULE = "prior-needed"
 
 UNKNOWN = "unknown"
-NO_CLAIM = "none; this rule holds for every result that is reported"
 NOT_CHECKED = (
     "Not checked: the quality of the data, whether the design supports cause and effect, blinding, "
     "and whether the records tell all that was tried."
@@ -62,6 +61,17 @@ _CHANGES = {
     "new": "a new claim",
     "changed": "changed",
     "withdrawn": "withdrawn",
+}
+_KINDS = {
+    "plan": ("plan", "plans"),
+    "text": ("line of text", "lines of text"),
+    "code": ("file of code", "files of code"),
+}
+_NO_CLAIM = {
+    "record": "none; this rule holds for every result that is reported",
+    "plan": "none; this is a plan",
+    "text": "none of its own; this is a line of text",
+    "code": "none; this is a file of code",
 }
 _IN_BRIEF = {"strengthened": "claiming more", "new": "new", "changed": "changed", "withdrawn": "withdrawn"}
 _SHORT_COMMIT = 12
@@ -116,10 +126,18 @@ def _cannot_judge(verdict: Verdict) -> list[str]:
 def _share(verdict: Verdict, standing: str) -> str:
     held = [one for one in blocked(verdict) if one.standing == standing]
     claims, total = sum(one.claim is not None for one in held), len(verdict.claims)
-    reported = len(held) - claims
+    reported = sum(one.kind == "record" for one in held) - claims
     parts = ["the only claim" if total == 1 else f"{claims} of {total} claims"] if claims else []
     parts += [count(reported, "result without a claim", "results without a claim")] if reported else []
+    for kind, (one_of_them, several) in _KINDS.items():
+        number = sum(one.kind == kind for one in held)
+        parts += [count(number, one_of_them, several)] if number else []
     return " and ".join(parts)
+
+
+def what_is_claimed(one: Judged) -> str:
+    """Return the claim, or what stands in its place."""
+    return one.claim or _NO_CLAIM[one.kind]
 
 
 def _stand(verdict: Verdict) -> str:

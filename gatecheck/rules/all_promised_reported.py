@@ -60,6 +60,7 @@ def _judged(found: NotReported, settings: Settings) -> Judged:
     reported = f"{found.promised - len(found.missing)} of {found.promised} promised results reported"
     enforce: Enforce = settings.enforce if settings.release == "strict" else "note"
     return Judged(
+        kind="plan",
         id=plan.path,
         at=Place(plan.path, plan.line),
         claim=None,

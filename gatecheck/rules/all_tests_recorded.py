@@ -80,6 +80,7 @@ def judge_code(code: CodeRead, found: Sequence[Found], settings: Settings | None
 
 def _judged(one: FileTests, settings: Settings) -> Judged:
     return Judged(
+        kind="code",
         id=one.code.path,
         at=Place(one.code.path, one.code.line),
         claim=None,

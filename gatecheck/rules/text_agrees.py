@@ -118,6 +118,7 @@ def _row(place: Place, facts: Sequence[agree.Fact], settings: Settings) -> Judge
     start, end = sentence_at(passage.visible, at)
     cell = "" if passage.cell is None else f"cell {passage.cell}, "
     return Judged(
+        kind="text",
         id=str(place),
         at=place,
         claim=None,

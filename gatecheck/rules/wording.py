@@ -219,6 +219,7 @@ def _finding(on: Grounds, row: int, sentence: Sentence, words: Sequence[Wording]
 
 def _row(place: Place, text: str, findings: Sequence[Finding]) -> Judged:
     return Judged(
+        kind="text",
         id=str(place),
         at=place,
         claim=None,

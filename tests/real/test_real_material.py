@@ -115,11 +115,11 @@ def test_the_usual_sentence_on_a_correct_result_agrees(tmp_path: Path, cases: Se
     rules = {"text-agrees": {"unlinked": "block"}, "numbers-agree": {"enforce": "off"}}
     verdict = judged(tmp_path, cases, rules, f"# Results\n\n{told}\n")
 
-    of_text = [row for row in verdict["reported"] if row["id"].startswith("report.md")]
+    of_text = [row for row in verdict["others"] if row["id"].startswith("report.md")]
     assert [(row["result"], row["rules"][0]["message"]) for row in of_text] == []
     # The rule is on, and reads this file: a statistic of no record is listed.
     other = judged(tmp_path, cases, rules, "# Results\n\nIt fell, t(7.25) = -31.5, p = .0123.\n")
-    assert [row["id"] for row in other["reported"]] == ["report.md:3"]
+    assert [row["id"] for row in other["others"]] == ["report.md:3"]
 
 
 def kind_of(one: Statistic) -> str:

@@ -59,6 +59,7 @@ JUDGED = closed(
     also_at={"type": "array", "items": PLACE},
 )
 JUDGED["properties"]["counts_now"] = {"const": False}
+JUDGED["properties"]["kind"] = {"enum": ["plan", "text", "code"]}
 POLICY_USED = closed(name=TEXT, digest=TEXT, **{"from": {"enum": ["base", "tree", "built-in"]}})
 COUNTS = closed(
     **dict.fromkeys(
@@ -75,6 +76,7 @@ CONTRACT = closed(
     counts=COUNTS,
     claims={"type": "array", "items": JUDGED},
     reported={"type": "array", "items": JUDGED},
+    others={"type": "array", "items": JUDGED},
     problems={"type": "array", "items": closed(at=PLACE, message=TEXT, advice=TEXT)},
     notes={"type": "array", "items": TEXT},
     changes={"type": "array", "items": CHANGE},

@@ -114,7 +114,7 @@ def test_a_request_does_not_hide_a_promise_by_striking_it_from_the_plan(folder: 
     answer = weigh(folder, "--base", base)
 
     assert answer.status == 1
-    (row,) = [one for one in answer.verdict["reported"] if one["id"] == "plans/drainage.json"]
+    (row,) = [one for one in answer.verdict["others"] if one["id"] == "plans/drainage.json"]
     assert row["rules"][0]["message"] == "Primary outcome not reported: Drainage lowers soil pH. (H2)."
 
 
@@ -127,7 +127,7 @@ def test_a_plan_that_is_new_in_a_request_counts_too(folder: Path) -> None:
 
     answer = weigh(folder, "--base", "HEAD")
 
-    assert {one["id"] for one in answer.verdict["reported"]} == {"plans/drainage.json", "plans/new.json"}
+    assert {one["id"] for one in answer.verdict["others"]} == {"plans/drainage.json", "plans/new.json"}
 
 
 def test_a_plan_that_cannot_be_read_stops_the_gate(folder: Path) -> None:
@@ -158,5 +158,5 @@ def test_a_plan_that_lies_elsewhere_counts_for_its_records_alone(folder: Path) -
 
     answer = weigh(folder)
 
-    assert (answer.status, answer.verdict["reported"]) == (0, [])
+    assert (answer.status, answer.verdict["others"]) == (0, [])
     assert [plan["path"] for plan in answer.verdict["plans"]] == ["plans/drainage.json"]

@@ -167,7 +167,7 @@ def test_a_registered_outcome_that_is_reported_without_a_claim_is_not_missing(fo
     answer = judged(folder, outcome={"variable": "biomass_90d"}, plan__hypothesis="H2")
 
     assert answer.status == 0
-    assert PLAN_FILE not in [each["id"] for each in answer.verdict["reported"]]
+    assert PLAN_FILE not in [each["id"] for each in answer.verdict["others"]]
 
 
 def switched(folder: Path) -> str:

@@ -292,7 +292,7 @@ def test_only_what_is_new_of_plans_and_code_counts_where_only_changes_do(reposit
     another = weigh(repository, "--base", "HEAD", "--only-changed")
 
     assert (whole.status, unchanged.status, another.status) == (1, 0, 1)
-    counted = {row["id"]: row.get("counts_now", True) for row in another.verdict["reported"]}
+    counted = {row["id"]: row.get("counts_now", True) for row in another.verdict["others"]}
     assert counted == {"a.py": False, "b.py": True, "plans/p.json": False}
 
 

@@ -36,7 +36,7 @@ def tree(folder: Path, text: str, value: float, **settings: object) -> Path:
 def rows(folder: Path, *arguments: str) -> tuple[int, list[tuple[str, int, str]]]:
     """The status, and the rows of prose with their lines and verdicts."""
     answer = weigh(folder, *arguments)
-    told = [each for each in answer.verdict["reported"] if each["at"]["path"].startswith("report")]
+    told = [each for each in answer.verdict["others"] if each["at"]["path"].startswith("report")]
     return answer.status, [(each["id"], each["at"]["line"], each["verdict"]) for each in told]
 
 

@@ -63,6 +63,7 @@ def _sections(verdict: Verdict) -> Iterator[Section]:
     yield Section("unchanged", "Short or undecided, but unchanged", order.blocked(verdict, counting=False))
     yield Section("standing", "Standing", order.standing(verdict))
     yield Section("reported", "Reported without a claim", order.without_claim(verdict))
+    yield Section("others", "Plans, text and code that block nothing", order.others_standing(verdict))
 
 
 def _head(verdict: Verdict) -> str:

@@ -65,7 +65,7 @@ def claim(one: Judged, number: int, shared: Shared, *, in_full: bool, drawn: boo
 def _standing(one: Judged) -> str:
     told = _STANDINGS[one.standing]
     if one.claim is None and one.standing == "stands":
-        told = "reported without a claim"
+        told = "reported without a claim" if one.kind == "record" else "nothing blocks"
     return told if one.counts_now else f"{told}; unchanged, and not counted"
 
 

@@ -44,6 +44,8 @@ def _counts(verdict: Verdict) -> str:
     rows = [_row("Claims", verdict.claims)]
     if verdict.reported:
         rows.append(_row("Results without a claim", verdict.reported))
+    if verdict.others:
+        rows.append(_row("Plans, text and code", verdict.others))
     return f"<table>\n<tr><td></td>{heads}</tr>\n{''.join(rows)}</table>\n"
 
 
