@@ -64,7 +64,7 @@ def piecewise(
             return function(*columns)
         for start in range(0, rows.size, CHUNK):
             chunk = rows[start : start + CHUNK]
-            result[chunk] = function(*(column[chunk] for column in columns))
+            result[chunk] = function(*(column.take(chunk) for column in columns))
     return result
 
 

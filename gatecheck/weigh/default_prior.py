@@ -30,8 +30,8 @@ import numpy as np
 from scipy import special
 
 from gatecheck.weigh.arrays import piecewise, rowwise
+from gatecheck.weigh.chi_laplace import log_chi_laplace
 from gatecheck.weigh.gamma import stirling_remainder
-from gatecheck.weigh.t import log_chi_laplace
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator

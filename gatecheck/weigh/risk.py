@@ -17,9 +17,11 @@ from typing import TYPE_CHECKING
 import numpy as np
 from scipy import special
 
-from gatecheck.weigh.arrays import rowwise
+from gatecheck.weigh.arrays import CHUNK, rowwise
 
 if TYPE_CHECKING:
+    from collections.abc import Iterator
+
     from numpy.typing import ArrayLike
 
     from gatecheck.weigh.arrays import BoolArray, FloatArray
@@ -42,17 +44,20 @@ def false_positive_risk(log_lr: ArrayLike, prior: ArrayLike) -> FloatArray:
     ndarray of float64
         Broadcast shape, 0 to 1; nan where the ratio is nan or the prior no probability.
     """
-    return rowwise(lambda log_lr, prior: special.expit(-_log_odds(log_lr, prior)), _legal, log_lr, prior)
+    return _complement_of_posterior(log_lr, prior)
 
 
 def log_false_positive_risk(log_lr: ArrayLike, prior: ArrayLike) -> FloatArray:
     """Natural log of :func:`false_positive_risk`, right where the risk itself underflows; same arguments."""
-    return rowwise(lambda log_lr, prior: special.log_expit(-_log_odds(log_lr, prior)), _legal, log_lr, prior)
+    return rowwise(lambda log_lr, prior: special.log_expit(-(log_lr + special.logit(prior))), _legal, log_lr, prior)
 
 
 def prior_needed(log_lr: ArrayLike, risk: ArrayLike) -> FloatArray:
-    """Prior probability of an effect at which the false positive risk is exactly ``risk`` (0 to 1)."""
-    return rowwise(lambda log_lr, risk: special.expit(-special.logit(risk) - log_lr), _legal, log_lr, risk)
+    """Prior probability of an effect at which the false positive risk is exactly ``risk`` (0 to 1).
+
+    What prior and risk are to each other is the same both ways: the risk at a prior of ``risk`` is that prior.
+    """
+    return _complement_of_posterior(log_lr, risk)
 
 
 def log_lr_needed(prior: ArrayLike, risk: ArrayLike) -> FloatArray:
@@ -84,6 +89,37 @@ def log_p_for_bound(log_lr: ArrayLike) -> FloatArray:
     return rowwise(_for_bound_rows, lambda log_lr: np.isfinite(log_lr) & (log_lr > 0), log_lr)
 
 
+def _complement_of_posterior(log_lr: ArrayLike, probability: ArrayLike) -> FloatArray:
+    """``1 / (1 + LR odds)``; what is no probability has odds without a logarithm, and comes out as nan.
+
+    It is asked for every record at every prior, so that the fast functions are used, and in place: they keep the
+    digits of the smallest risks, and what overflows is a risk of zero.
+    """
+    evidence, chance = np.asarray(log_lr, np.float64), np.asarray(probability, np.float64)
+    result = np.empty(np.broadcast_shapes(evidence.shape, chance.shape))
+    with np.errstate(all="ignore"):
+        np.add(evidence, _log_odds(chance), out=result)
+        for rows in _in_chunks(result):
+            np.exp(rows, out=rows)
+            np.add(rows, 1.0, out=rows)
+            np.divide(1.0, rows, out=rows)
+    return result
+
+
+def _log_odds(chance: FloatArray) -> FloatArray:
+    odds = np.empty(chance.shape)
+    for rows, chances in zip(_in_chunks(odds), _in_chunks(chance), strict=True):
+        np.subtract(1.0, chances, out=rows)
+        np.divide(chances, rows, out=rows)
+        np.log(rows, out=rows)
+    return odds
+
+
+def _in_chunks(values: FloatArray) -> Iterator[FloatArray]:
+    flat = values.reshape(-1)
+    return (flat[start : start + CHUNK] for start in range(0, flat.size, CHUNK))
+
+
 def _needed_rows(prior: FloatArray, risk: FloatArray) -> FloatArray:
     needed: FloatArray = -(special.logit(risk) + special.logit(prior))
     return needed
@@ -100,10 +136,6 @@ def _for_bound_rows(log_lr: FloatArray) -> FloatArray:
 def _bound_rows(log_p: FloatArray) -> FloatArray:
     size = np.maximum(-log_p, 1.0)
     return size - 1 - np.log(size)
-
-
-def _log_odds(log_lr: FloatArray, prior: FloatArray) -> FloatArray:
-    return log_lr + special.logit(prior)
 
 
 def _is_log_p(log_p: FloatArray) -> BoolArray:

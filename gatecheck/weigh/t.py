@@ -22,12 +22,12 @@ from functools import partial
 from typing import TYPE_CHECKING, Any, NamedTuple
 
 import numpy as np
-from scipy import special
 
 from gatecheck.weigh.arrays import piecewise, rowwise
+from gatecheck.weigh.chi_laplace import ORDERS, few_df_laplace
 from gatecheck.weigh.t_any_size import SAFE_TO_SQUARE, chi_exponent
 from gatecheck.weigh.t_few import few_df_two_sided
-from gatecheck.weigh.t_ordinary import LARGEST, MOST_DF, halves, scratch_for
+from gatecheck.weigh.t_ordinary import CALLERS, LARGEST, MOST_DF, halves, scratch_for
 from gatecheck.weigh.z import log_lr_z_rows
 
 if TYPE_CHECKING:
@@ -37,9 +37,6 @@ if TYPE_CHECKING:
 
     from gatecheck.weigh.arrays import BoolArray, Column, FloatArray
 
-# Least degrees of freedom and the number of terms that err by less than 3e-14 from there on.
-ORDERS = ((250.0, 4), (120.0, 5), (60.0, 6), (30.0, 8), (20.0, 10), (12.0, 16))
-LEAST_EXPANDED = ORDERS[-1][0]
 # Ordinary statistics from here on are computed by one formula; fewer degrees of freedom have their own orders.
 COMMON = ORDERS[2]
 UNCOMMON = ORDERS[3:]
@@ -50,11 +47,6 @@ MOST_OTHERS = 0.25
 LONG_CHUNK = 12288
 # Of so many rows the uncommon ones are computed together.
 SPAN = 40 * LONG_CHUNK
-# The downward recursion starts this far above the wanted degrees of freedom, where the expansion holds.
-STEPS_ABOVE = 20
-STEPS_ORDER = 10
-LARGE_MU = 1000.0
-LARGE_MU_TERMS = 8
 
 
 class Methods(NamedTuple):
@@ -190,8 +182,9 @@ def _uncommon_rows(t: FloatArray, df: FloatArray, ncp: FloatArray, one_sided: Bo
 def _common_observed(scratch: FloatArray, t: FloatArray, df: FloatArray, one_sided: BoolArray) -> FloatArray:
     if one_sided.any():
         return _by_halves(COMMON, scratch, t, df, _observed_ncp(t, one_sided), one_sided)
-    square = t * t
-    half = square * 0.5
+    square, half = scratch[-CALLERS:, : t.size]
+    np.multiply(t, t, out=square)
+    np.multiply(square, 0.5, out=half)
     even, odd = halves(half, square, df, COMMON, scratch)
     even -= half
     even += odd
@@ -215,8 +208,15 @@ def _by_halves(  # noqa: PLR0917  # where it holds and where it works, then the 
     one_sided: BoolArray,
 ) -> FloatArray:
     scratch = scratch_for(t.size) if scratch is None else scratch
-    even, odd = halves(np.abs(t * ncp) * 0.5, t * t, df, order, scratch)
-    even -= ncp * ncp * 0.5
+    square, half_product = scratch[-CALLERS:, : t.size]
+    np.multiply(t, t, out=square)
+    np.multiply(t, ncp, out=half_product)
+    np.abs(half_product, out=half_product)
+    half_product *= 0.5
+    even, odd = halves(half_product, square, df, order, scratch)
+    np.multiply(ncp, ncp, out=square)
+    square *= 0.5
+    even -= square
     towards = even + odd
     if not one_sided.any():
         return _folded(towards, odd)
@@ -279,56 +279,10 @@ def _few_df_one_sided(t: FloatArray, df: FloatArray, ncp: FloatArray, one_sided:
     """Against the direction by downward recursion, along it from the two-sided ratio: the mean of the two."""
     size_t, size_ncp = np.abs(t), np.abs(ncp)
     mu = size_ncp * (size_t / _root_q(size_t, df))
-    away = _few_df_laplace(mu, df) - 0.5 * size_ncp * size_ncp
+    away = few_df_laplace(mu, df) - 0.5 * size_ncp * size_ncp
     both = _few_df_two_sided(t, df, ncp, one_sided)
     towards = both + np.log1p(-np.expm1(away - both))
     return np.where(np.sign(t) * np.sign(ncp) < 0, away, towards)
-
-
-def log_chi_laplace(mu: FloatArray, df: FloatArray) -> FloatArray:
-    """Compute ``log E exp(-mu Y)``, ``mu >= 0``, ``Y`` chi-distributed on ``df + 1``; rows known to be legal."""
-    few = df < LEAST_EXPANDED
-    pieces: list[tuple[BoolArray, Callable[..., FloatArray]]] = [(few, _few_df_laplace)]
-    above = np.inf
-    for least, order in ORDERS:
-        pieces.append(((df >= least) & (df < above), partial(_log_laplace_expanded, order=order)))
-        above = least
-    return piecewise(pieces, mu, df)
-
-
-def _few_df_laplace(mu: FloatArray, df: FloatArray) -> FloatArray:
-    return piecewise([(mu > LARGE_MU, _log_laplace_large), (mu <= LARGE_MU, _log_laplace)], mu, df)
-
-
-def _log_laplace(mu: FloatArray, df: FloatArray) -> FloatArray:
-    """Compute the same for few degrees of freedom by a recursion of positive terms."""
-    top = df + STEPS_ABOVE
-    start = _log_laplace_expanded(mu, top)
-    upper = np.exp(_log_laplace_expanded(mu, top + 1) - start)
-    current = np.ones_like(mu)
-    ratio = np.sqrt(2.0) * np.exp(special.gammaln((top + 1) / 2) - special.gammaln(top / 2))
-    for step in range(STEPS_ABOVE):
-        v = top - step
-        upper, current = current, upper + mu / v * ratio * current
-        ratio = (v - 1) / ratio
-    return start + np.log(current)
-
-
-def _log_laplace_expanded(mu: FloatArray, df: FloatArray, order: int = STEPS_ORDER) -> FloatArray:
-    growth, _, even = chi_exponent(mu, df, order)
-    return even - growth
-
-
-def _log_laplace_large(mu: FloatArray, df: FloatArray) -> FloatArray:
-    """Compute the same by the expansion of Laplace's integral for large ``mu``."""
-    inverse = 0.5 / mu / mu
-    total, term = np.ones_like(mu), np.ones_like(mu)
-    for s in range(LARGE_MU_TERMS):
-        term *= -(df + 1 + 2 * s) * (df + 2 + 2 * s) / (s + 1) * inverse
-        total += term
-    scale: FloatArray = special.gammaln(df + 1) - special.gammaln((df + 1) / 2)
-    logarithm: FloatArray = scale - (df - 1) / 2 * np.log(2.0) - (df + 1) * np.log(mu) + np.log(total)
-    return logarithm
 
 
 def _positive(df: FloatArray) -> BoolArray:

@@ -14,7 +14,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from gatecheck import weigh
-from gatecheck.weigh import chi2, default_prior, f, gamma, t, t_few, t_ordinary
+from gatecheck.weigh import chi2, chi_laplace, default_prior, f, gamma, t_few, t_ordinary
 
 Row = tuple[float, ...]
 Rows = Iterator[Row]
@@ -24,7 +24,7 @@ LOG_P = (math.log(0.05), math.log(1e-15), math.log(1e-300), -3000.0)
 # The oracle's 50 digits suffice for the squares of statistics up to here.
 LARGEST_STATISTIC = 1e8
 FEW_DF = (1.0, 2.5, 7.0, 11.5)
-T_SWITCHES = [least for least, _ in reversed(t.ORDERS)]
+T_SWITCHES = [least for least, _ in reversed(chi_laplace.ORDERS)]
 
 
 @dataclass(frozen=True)
@@ -56,7 +56,7 @@ def corners_t() -> Rows:
         other = (2.83, *sides(t_ordinary.LARGEST), size + 3)[(i + j) % 4]
         yield from ((size, df, ncp, side) for ncp in (size, -size, other))
     for size, df, side in itertools.product((0.5, 2.0, 9.0), FEW_DF, (0, 1)):
-        for mu in (math.sqrt(2 * t_few.LARGE_X), math.sqrt(4 * t_few.SMALL_AX / (df + 1)), t.LARGE_MU):
+        for mu in (math.sqrt(2 * t_few.LARGE_X), math.sqrt(4 * t_few.SMALL_AX / (df + 1)), chi_laplace.LARGE_MU):
             ncp = mu * math.sqrt(size * size + df) / size
             yield from ((size, df, sign * edge, side) for edge in sides(ncp) for sign in (1, -1))
     for df, log_p in itertools.product(df_of_t(), LOG_P):
@@ -72,7 +72,7 @@ def random_t(rng: np.random.Generator) -> Row:
 
 
 def few(df: float, value: float) -> float:
-    return value if df < t.LEAST_EXPANDED else math.nan
+    return value if df < chi_laplace.LEAST_EXPANDED else math.nan
 
 
 def mu_of(size: float, df: float, ncp: float) -> float:
@@ -92,7 +92,7 @@ def switches_t() -> list[Switch]:
         Switch("a x, few df", t_few.SMALL_AX, lambda t_, df, ncp, _: (df + 1) / 2 * x_of(t_, df, ncp)),
         Switch(
             "mu, few df, one-sided",
-            t.LARGE_MU,
+            chi_laplace.LARGE_MU,
             lambda t_, df, ncp, side: few(df, mu_of(t_, df, ncp)) if side else math.nan,
         ),
     ]
