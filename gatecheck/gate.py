@@ -161,15 +161,9 @@ def _judge(request: Request, table: Table, since: SinceBase | None, settled: Set
         replace(
             _judged(one, findings[row], figures.of_row(row, in_full=row in explained), unchanged),
             sensitivity=figures.sensitivity(row) if row in explained else None,
-            numbers=one.numbers if row in explained or _has_shortfall(findings[row]) else "",
         )
         for row, one in enumerate(found)
     )
-
-
-def _has_shortfall(findings: Sequence[Finding]) -> bool:
-    """Whether there is anything that a permission could be about."""
-    return any(finding.outcome in {"short", "undecided", "waived"} for finding in findings)
 
 
 def _table(tree: Scan, applied: tuple[Applied, ...], since: SinceBase | None, facts: Facts) -> Table:

@@ -15,7 +15,7 @@ class AcceptedShortfall:
 
     record: Annotated[Identifier, "id of the record"]
     rule: Annotated[Text, "name of the rule"]
-    digest: Annotated[Digest, "digest of the record's numbers"]
+    digest: Annotated[Digest, "digest of what the permission rests on"]
 
 
 @struct

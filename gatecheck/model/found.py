@@ -30,15 +30,15 @@ class Found:
         """The SHA-256 digest of the document's canonical JSON."""
         return _digest(self.document)
 
-    @property
-    def numbers(self) -> str:
+    def permission_digest(self, also: tuple[str, ...] = ()) -> str:
         """The digest of what a permission rests on: `sha256:` and 64 hexadecimal digits.
 
-        It covers the fields `NUMBERS` of the document as they are written there, the status, the aim, importance
-        and harm as they are read, and whether anything is claimed. Another wording of the claim, other tags or
-        another provenance leave it as it is; a number written in another way changes it.
+        It covers the fields `NUMBERS` of the document and those in `also` as they are written there, the status,
+        the aim, importance and harm as they are read, and whether anything is claimed. Unless `also` names them,
+        another wording of the claim, other tags or another provenance leave it as it is; a number written in
+        another way changes it.
         """
-        rests_on = {name: self.document.get(name) for name in NUMBERS}
+        rests_on = {name: self.document.get(name) for name in (*NUMBERS, *also)}
         record = self.record
         kind = [record.status, record.aim, record.importance, record.harm, record.claim is not None]
         return f"sha256:{_digest([rests_on, kind])}"

@@ -64,7 +64,10 @@ class Figures:
 
 @dataclass(frozen=True, slots=True)
 class Finding:
-    """What one rule says of one record."""
+    """What one rule says of one record.
+
+    `digest` is of all that a permission to pass over it rests on; empty where there can be none.
+    """
 
     rule: str
     outcome: Outcome
@@ -73,6 +76,7 @@ class Finding:
     limit: float | None = None
     message: str = ""
     remedy: str = ""
+    digest: str = ""
 
     @property
     def blocks(self) -> bool:
@@ -96,7 +100,7 @@ class Sensitivity:
 
 @dataclass(frozen=True, slots=True)
 class Judged:
-    """One record with all that the rules say of it; `numbers` is the digest of its numbers.
+    """One record with all that the rules say of it.
 
     A plan, a line of prose and a file of code are judged alike: they are of another `kind` and claim nothing.
     """
@@ -111,7 +115,6 @@ class Judged:
     counts_now: bool = True
     alternatives: tuple[Figures, ...] = ()
     sensitivity: Sensitivity | None = None
-    numbers: str = ""
     interval: IntervalShown | None = None
     kind: Kind = "record"
 

@@ -21,7 +21,7 @@ class Waiver:
     reason: Annotated[Text, "why the claim may be merged all the same"]
     granted_on: Annotated[Date, "first day"]
     until: Annotated[Date, "last day"]
-    digest: Annotated[Digest, "digest of the record's numbers, as `gatecheck explain` prints it"]
+    digest: Annotated[Digest, "digest of what the permission rests on, as `gatecheck explain` prints it"]
     granted_by: Annotated[
         str | None, "who grants it, by name or e-mail: not the author of the result; without it, it does not apply"
     ] = None

@@ -1,4 +1,4 @@
-"""Shortfalls accepted on adoption: they do not block until their record's numbers change."""
+"""Shortfalls accepted on adoption: they do not block until what they rest on changes, mostly a record's numbers."""
 
 from __future__ import annotations
 
@@ -18,7 +18,8 @@ _MOST_NAMED = 5
 _LAST_OF_FOUR_DIGITS = 0xFFFF
 _HEAD = """\
 # What fell short when the team adopted the gate: each entry lets one rule on one record pass, with the numbers that
-# the record had. An entry ends as soon as these numbers change; what falls short anew blocks. Running
+# the record had, and for a rule that reads more than numbers with that too. An entry ends as soon as one of these
+# changes; what falls short anew blocks. Running
 # `gatecheck adopt` again takes off what has ended and adds nothing: to begin anew, delete this file first.
 gatecheck: accepted/1
 """
@@ -49,7 +50,7 @@ def accept(findings: Sequence[Row], found: Sequence[Found], accepted: Sequence[A
             over += 1
             continue
         finding = judged[row][position]
-        state = _state(entry, finding, found[row].numbers)
+        state = _state(entry, finding)
         over += state == "over"
         if finding.outcome == "short" and state == "changed":
             changed.append((entry.record, entry.rule))
@@ -62,15 +63,15 @@ def adoption(listed: Sequence[AcceptedShortfall] | None, judged: Sequence[Judged
     """Return which shortfalls of the records `judged` are to be accepted.
 
     Without a list these are all that block and are short; what is no record, such as a line of prose, has no
-    numbers and is not among them. Of a list that there is, those stay that still hold; none is added. Where the
+    digest and is not among them. Of a list that there is, those stay that still hold; none is added. Where the
     tree was not read `whole`, a record that is not there may be one that cannot be read, and its entries stay.
     """
     if listed is None:
         entries = [
-            AcceptedShortfall(one.id, finding.rule, one.numbers)
+            AcceptedShortfall(one.id, finding.rule, finding.digest)
             for one in judged
             for finding in one.findings
-            if one.numbers and finding.blocks and finding.outcome == "short"
+            if finding.digest and finding.blocks and finding.outcome == "short"
         ]
         return Adoption(_in_order(entries), len(entries), 0)
     by_id = {one.id: one for one in judged}
@@ -93,11 +94,11 @@ def _position(row: Sequence[Finding], rule: str) -> int | None:
     return next((position for position, finding in enumerate(row) if finding.rule == rule), None)
 
 
-def _state(entry: AcceptedShortfall, finding: Finding, numbers: str) -> Literal["holds", "changed", "over"]:
+def _state(entry: AcceptedShortfall, finding: Finding) -> Literal["holds", "changed", "over"]:
     """Whether an entry is still for what its rule finds; one is over where nothing would block any more."""
     if finding.enforce != "block" or finding.outcome in {"met", "does-not-apply"}:
         return "over"
-    same = entry.digest.removeprefix("sha256:") == numbers.removeprefix("sha256:")
+    same = entry.digest.removeprefix("sha256:") == finding.digest.removeprefix("sha256:")
     return "holds" if same else "changed"
 
 
@@ -105,11 +106,11 @@ def _holds(entry: AcceptedShortfall, one: Judged | None, *, whole: bool) -> bool
     if one is None:
         return not whole
     position = _position(one.findings, entry.rule)
-    return position is not None and _state(entry, one.findings[position], one.numbers) == "holds"
+    return position is not None and _state(entry, one.findings[position]) == "holds"
 
 
 def _waived(finding: Finding) -> Finding:
-    message = f"{finding.message} Accepted on adoption, until the numbers of the record change.".strip()
+    message = f"{finding.message} Accepted on adoption, until the record changes in what the rule reads.".strip()
     return replace(finding, outcome="waived", message=message)
 
 
@@ -118,7 +119,7 @@ def _note_on_changed(changed: Sequence[Key]) -> tuple[str, ...]:
         return ()
     named = ", ".join(f"{record} ({rule})" for record, rule in sorted(changed)[:_MOST_NAMED])
     more = f" and {len(changed) - _MOST_NAMED} more" if len(changed) > _MOST_NAMED else ""
-    return (f"Accepted on adoption and no longer, as the numbers of the record changed: {named}{more}.",)
+    return (f"Accepted on adoption and no longer, as the record changed: {named}{more}.",)
 
 
 def _note_on_over(over: int) -> tuple[str, ...]:

@@ -142,8 +142,8 @@ def _against(waiver: Waiver, finding: Finding, one: Found, circumstances: Circum
         return f"it begins on {waiver.granted_on}"
     if day > waiver.until:
         return f"it expired on {waiver.until}"
-    if one.numbers.removeprefix("sha256:") != waiver.digest.removeprefix("sha256:"):
-        return "the numbers of the record are not those that it was granted for"
+    if finding.digest.removeprefix("sha256:") != waiver.digest.removeprefix("sha256:"):
+        return "the record has changed since in what the rule reads"
     if not _names(waiver.granted_by or ""):
         return "it says nobody in granted_by who grants it"
     return _against_approver(waiver.granted_by or "", circumstances.changer(one.at.path))

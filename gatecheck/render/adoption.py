@@ -23,8 +23,8 @@ def told(done: Adoption, path: str, again: bool, width: int) -> str:
         records = words.count(len({each.record for each in done.entries}), "record")
         return page([
             paragraph(
-                f"Accepted {entries} of {records} in {path}: they do not block until the numbers of their record "
-                "change. Commit this file; on a pull request the one that counts is that of the base.",
+                f"Accepted {entries} of {records} in {path}: each holds until its record changes in what the rule "
+                "reads. Commit this file; on a pull request the one that counts is that of the base.",
                 width,
             )
         ])

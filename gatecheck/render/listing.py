@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from gatecheck.model.found import Found, Scan
 from gatecheck.model.verdict import Figures, Finding, Judged, Verdict
 from gatecheck.render import order, words
@@ -82,8 +84,17 @@ def _explained(one: Judged, width: int, bold: bool) -> list[str]:
         section("The same result under other assumptions", other, BLANK_LINE),
         section("Risk against prior", [] if one.sensitivity is None else risk_against_prior(one.sensitivity)),
         section("Rules", [_finding(finding, width) for finding in findings], BLANK_LINE),
-        section("Digest of the numbers, for a waiver", [item(one.numbers, width)] if one.numbers else []),
+        section("Digests, for a waiver", _digests(findings, width)),
     ]
+
+
+def _digests(findings: Sequence[Finding], width: int) -> list[str]:
+    """What a waiver of each rule rests on, said once for the rules that rest on the same."""
+    rules: dict[str, list[str]] = {}
+    for one in findings:
+        if one.digest:
+            rules.setdefault(one.digest, []).append(one.rule)
+    return [item(f"{', '.join(names)}: {digest}", width) for digest, names in rules.items()]
 
 
 def _figures(one: Judged, figures: Figures, width: int) -> str:

@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import Literal
 
 import numpy as np
 
 from gatecheck.columns import Floats
+from gatecheck.model.found import Found
 from gatecheck.model.verdict import Finding
 from gatecheck.policy import RuleSettings
 from gatecheck.rules.rule import Judgement, Rule, Table
@@ -38,7 +40,15 @@ def _judge(rule: Rule, table: Table, explain: frozenset[int]) -> list[tuple[int,
     if not rows:
         return []
     judging = _Judging(rule, table, settings)
-    return [(row, judging.finding(row, wordy=row in explain)) for row in rows]
+    findings = [(row, judging.finding(row, wordy=row in explain)) for row in rows]
+    return [(row, _permissible(finding, rule, table.columns.found[row])) for row, finding in findings]
+
+
+def _permissible(finding: Finding, rule: Rule, one: Found) -> Finding:
+    """The finding with what a permission to pass over it rests on, where it may need one."""
+    if finding.outcome in {"met", "does-not-apply"}:
+        return finding
+    return replace(finding, digest=one.permission_digest(rule.reads))
 
 
 class _Judging:

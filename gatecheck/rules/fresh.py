@@ -120,4 +120,5 @@ RULE = Rule(
     judge=judge,
     explain=explain,
     concerns=concerns,
+    reads=("provenance",),
 )

@@ -224,4 +224,5 @@ RULE = Rule(
         ),
     ),
     concerns=concerns,
+    reads=("role", "outcome", "population", "covariates", "plan", "deviations"),
 )

@@ -96,7 +96,8 @@ class Rule:
     """One rule of a reporting policy.
 
     `settings` is the type of its settings; its functions get the settings of all rows, with `None` where the
-    rule is off. It says nothing of a row that it does not `concern`.
+    rule is off. It says nothing of a row that it does not `concern`. A permission to pass over it ends when the
+    record's numbers change, or one of the fields that it `reads` besides.
     """
 
     name: str
@@ -107,6 +108,7 @@ class Rule:
     needs: tuple[Need, ...] = ()
     exempt: tuple[Exemption, ...] = ()
     concerns: Callable[[Table, Sequence[Any]], Booleans] = every_row
+    reads: tuple[str, ...] = ()
 
 
 def rule_beyond_records(name: str, asks: str, settings: type[RuleSettings], judges: str) -> Rule:

@@ -236,4 +236,5 @@ RULE = Rule(
     judge=judge,
     explain=explain,
     concerns=every_claim,
+    reads=("claim",),
 )

@@ -16,7 +16,6 @@ from gatecheck.schema.records import read_record
 
 RULE = "false-positive-risk"
 RULES = (RULE, "prior-needed", "numbers-agree")
-SHORT = Finding(RULE, "short", "block", 0.165, 0.05, "The risk is 17 %; the policy allows 5 %.", "More plots.")
 AUTHOR = Changer("Ada Example", "ada@example.org")
 
 
@@ -28,6 +27,18 @@ def found(document: Document | None = None, path: str = "results/drainage.json")
     return Found(record, Place(path), whole)
 
 
+SHORT = Finding(
+    RULE,
+    "short",
+    "block",
+    0.165,
+    0.05,
+    "The risk is 17 %; the policy allows 5 %.",
+    "More plots.",
+    found().permission_digest(),
+)
+
+
 def waiver(**changes: Any) -> Waiver:
     """A waiver that applies to the drainage record on any day of May 2031, with other values."""
     fields: dict[str, Any] = {
@@ -37,7 +48,7 @@ def waiver(**changes: Any) -> Waiver:
         "granted_by": "Bo Sample <bo@example.org>",
         "granted_on": "2031-05-01",
         "until": "2031-05-31",
-        "digest": found().numbers,
+        "digest": SHORT.digest,
     }
     return Waiver(**(fields | changes))
 

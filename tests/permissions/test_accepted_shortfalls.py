@@ -15,10 +15,9 @@ from gatecheck.model.accepted import AcceptedShortfall
 from gatecheck.model.verdict import Finding, Judged, Place
 from gatecheck.permissions.accepted import ACCEPTED_FILE, accept, adoption, as_file, read_accepted
 
-NUMBERS = found().numbers
 OTHER = "sha256:" + "0" * 64
 ID = "drainage/earthworm-biomass"
-HELD = AcceptedShortfall(ID, RULE, NUMBERS)
+HELD = AcceptedShortfall(ID, RULE, SHORT.digest)
 CHANGED = AcceptedShortfall(ID, RULE, OTHER)
 MET = replace(SHORT, outcome="met")
 UNDECIDED = replace(SHORT, outcome="undecided")
@@ -29,14 +28,13 @@ OVER = (
     "gatecheck.accepted.yaml."
 )
 CHANGED_NOTE = (
-    "Accepted on adoption and no longer, as the numbers of the record changed: "
-    "drainage/earthworm-biomass (false-positive-risk)."
+    "Accepted on adoption and no longer, as the record changed: drainage/earthworm-biomass (false-positive-risk)."
 )
 
 
-def judged(*findings: Finding, name: str = ID, numbers: str = NUMBERS) -> Judged:
+def judged(*findings: Finding, name: str = ID) -> Judged:
     """A record with findings, as a verdict holds it."""
-    return Judged(name, Place("a.json"), "A claim.", "p = 0.03", None, findings, numbers=numbers)
+    return Judged(name, Place("a.json"), "A claim.", "p = 0.03", None, findings)
 
 
 def told(entries: tuple[AcceptedShortfall, ...]) -> list[tuple[str, str, str]]:
@@ -47,9 +45,7 @@ def told(entries: tuple[AcceptedShortfall, ...]) -> list[tuple[str, str, str]]:
 def test_what_was_accepted_does_not_block_and_says_so() -> None:
     done = accept([(SHORT,)], [found()], [HELD])
 
-    message = (
-        "The risk is 17 %; the policy allows 5 %. Accepted on adoption, until the numbers of the record change."
-    )
+    message = f"{SHORT.message} Accepted on adoption, until the record changes in what the rule reads."
     assert done.findings == ((replace(SHORT, outcome="waived", message=message),),)
     assert done.notes == ()
 
@@ -66,7 +62,7 @@ def test_what_was_accepted_does_not_block_and_says_so() -> None:
         (HELD, NOTED, (OVER,)),
         (HELD, replace(SHORT, outcome="does-not-apply"), (OVER,)),
         (HELD, Finding("family", "short", "block"), (OVER,)),
-        (AcceptedShortfall("gone", RULE, NUMBERS), SHORT, (OVER,)),
+        (AcceptedShortfall("gone", RULE, SHORT.digest), SHORT, (OVER,)),
     ],
 )
 def test_all_else_is_left_as_it_is(entry: AcceptedShortfall, finding: Finding, notes: tuple[str, ...]) -> None:
@@ -85,7 +81,7 @@ def test_many_notes_are_two() -> None:
     done = accept([(SHORT,)] * 7, every, [*entries, *gone])
 
     assert done.notes == (
-        "Accepted on adoption and no longer, as the numbers of the record changed: r0 (false-positive-risk), "
+        "Accepted on adoption and no longer, as the record changed: r0 (false-positive-risk), "
         "r1 (false-positive-risk), r2 (false-positive-risk), r3 (false-positive-risk), r4 (false-positive-risk) "
         "and 2 more.",
         "2 shortfalls that were accepted on adoption are there no more; `gatecheck adopt` takes such entries off "
@@ -94,7 +90,7 @@ def test_many_notes_are_two() -> None:
 
 
 def test_adoption_lists_what_blocks_and_is_short() -> None:
-    family = Finding("family", "short", "block")
+    family = replace(SHORT, rule="family")
     records = [
         judged(SHORT, family, name="b"),
         judged(NOTED, MET, name="c"),
@@ -103,7 +99,11 @@ def test_adoption_lists_what_blocks_and_is_short() -> None:
 
     done = adoption(None, records, whole=True)
 
-    assert told(done.entries) == [("a", RULE, NUMBERS), ("b", RULE, NUMBERS), ("b", "family", NUMBERS)]
+    assert told(done.entries) == [
+        ("a", RULE, SHORT.digest),
+        ("b", RULE, SHORT.digest),
+        ("b", "family", SHORT.digest),
+    ]
     assert (done.added, done.dropped) == (3, 0)
 
 
@@ -131,7 +131,7 @@ def test_a_list_that_is_there_keeps_what_holds_and_takes_nothing_on(
 
 
 def test_a_record_that_may_be_unreadable_keeps_its_entry() -> None:
-    gone = [AcceptedShortfall("gone", RULE, NUMBERS)]
+    gone = [AcceptedShortfall("gone", RULE, SHORT.digest)]
 
     assert told(adoption(gone, [], whole=False).entries) == told(tuple(gone))
     assert adoption(gone, [], whole=True).dropped == 1
@@ -143,12 +143,14 @@ def test_the_file_says_what_it_is_and_how_an_entry_ends(tmp_path: Path) -> None:
     assert text == (
         "# What fell short when the team adopted the gate: each entry lets one rule on one record pass, with the "
         "numbers that\n"
-        "# the record had. An entry ends as soon as these numbers change; what falls short anew blocks. Running\n"
+        "# the record had, and for a rule that reads more than numbers with that too. "
+        "An entry ends as soon as one of these\n"
+        "# changes; what falls short anew blocks. Running\n"
         "# `gatecheck adopt` again takes off what has ended and adds nothing: to begin anew, delete this file "
         "first.\n"
         "gatecheck: accepted/1\n"
         "accepted:\n"
-        f'  - {{record: "drainage/earthworm-biomass", rule: "false-positive-risk", digest: "{NUMBERS}"}}\n'
+        f'  - {{record: "drainage/earthworm-biomass", rule: "false-positive-risk", digest: "{SHORT.digest}"}}\n'
     )
     (tmp_path / ACCEPTED_FILE).write_text(as_file([]), encoding="utf-8")
     empty = read_accepted(tmp_path, None)
@@ -162,19 +164,19 @@ def test_whatever_a_record_is_called_the_file_reads_back(
 ) -> None:
     """A name with characters that no id may have is refused by its pattern, and by nothing before it."""
     root = tmp_path_factory.mktemp("accepted")
-    (root / ACCEPTED_FILE).write_text(as_file([AcceptedShortfall(name, RULE, NUMBERS)]), encoding="ascii")
+    (root / ACCEPTED_FILE).write_text(as_file([AcceptedShortfall(name, RULE, SHORT.digest)]), encoding="ascii")
 
     read = read_accepted(root, None)
 
     if read.value is not None:
-        assert told(read.value.accepted) == [(name, RULE, NUMBERS)]
+        assert told(read.value.accepted) == [(name, RULE, SHORT.digest)]
     else:
         assert [one.advice for one in read.problems] == ["give 1 to 200 characters without spaces"]
 
 
 def test_a_long_list_is_read(tmp_path: Path) -> None:
     """More values than a record may hold: 4,000 entries of three."""
-    entries = [AcceptedShortfall(f"r{number:04}", RULE, NUMBERS) for number in range(4000)]
+    entries = [AcceptedShortfall(f"r{number:04}", RULE, SHORT.digest) for number in range(4000)]
     (tmp_path / ACCEPTED_FILE).write_text(as_file(entries), encoding="utf-8")
 
     read = read_accepted(tmp_path, None)

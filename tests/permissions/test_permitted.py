@@ -25,7 +25,7 @@ waivers:
     granted_by: Bo Sample
     granted_on: 2031-05-01
     until: 2031-05-31
-    digest: {RECORD.numbers}
+    digest: {SHORT.digest}
 """
 
 
@@ -57,8 +57,8 @@ def test_an_empty_list_of_waivers_asks_git_for_nothing(root: Path) -> None:
 def test_what_is_waived_needs_no_acceptance(root: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setenv("GIT_COMMITTER_DATE", "2031-05-20T12:00:00Z")
     (root / WAIVERS_FILE).write_text(WAIVER, encoding="utf-8")
-    family = Finding("family", "short", "block", message="Too few.")
-    entries = [AcceptedShortfall(RECORD.record.id, rule, RECORD.numbers) for rule in (RULE, "family")]
+    family = Finding("family", "short", "block", message="Too few.", digest=SHORT.digest)
+    entries = [AcceptedShortfall(RECORD.record.id, rule, SHORT.digest) for rule in (RULE, "family")]
     (root / ACCEPTED_FILE).write_text(as_file(entries), encoding="utf-8")
     commit_all(root, "base")
 
@@ -69,7 +69,7 @@ def test_what_is_waived_needs_no_acceptance(root: Path, monkeypatch: pytest.Monk
         "The risk is 17 %; the policy allows 5 %. Waived until 2031-05-31 by Bo Sample: "
         "A second season is under way."
     )
-    assert second.message == "Too few. Accepted on adoption, until the numbers of the record change."
+    assert second.message == "Too few. Accepted on adoption, until the record changes in what the rule reads."
     assert [one.outcome for one in settled.findings[0]] == ["waived", "waived"]
     assert (settled.problems, settled.notes) == ((), ())
 

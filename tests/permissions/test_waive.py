@@ -61,14 +61,14 @@ def test_before_and_after_it_does_not_apply(day: str, why: str) -> None:
 
 
 def test_the_digest_may_stand_without_its_prefix() -> None:
-    bare = waiver(digest=found().numbers.removeprefix("sha256:"))
+    bare = waiver(digest=SHORT.digest.removeprefix("sha256:"))
 
     assert waive([(SHORT,)], [found()], [bare], circumstances()).findings[0][0].outcome == "waived"
 
 
 def test_other_numbers_end_it() -> None:
-    assert note(SHORT, digest=found(drainage(test__value=2.3)).numbers) == (
-        f"{WHAT} does not apply: the numbers of the record are not those that it was granted for."
+    assert note(SHORT, digest=found(drainage(test__value=2.3)).permission_digest()) == (
+        f"{WHAT} does not apply: the record has changed since in what the rule reads."
     )
 
 

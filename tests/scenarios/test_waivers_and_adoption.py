@@ -56,11 +56,13 @@ def station(tmp_path: Path) -> Path:
     return folder
 
 
-def digest_told(capsys: pytest.CaptureFixture[str], folder: Path, name: str = "yield_2030") -> str:
+def digest_told(
+    capsys: pytest.CaptureFixture[str], folder: Path, name: str = "yield_2030", rule: str = RULE
+) -> str:
     """The digest that `explain` prints for whoever writes a waiver."""
     status, told = said(capsys, "explain", name, str(folder))
     assert status == 0
-    _, found, digest = told.partition("Digest of the numbers, for a waiver ")
+    _, found, digest = told.partition(f"Digests, for a waiver {rule}: ")
     assert found
     return digest.split()[0]
 
@@ -118,7 +120,7 @@ def test_a_waiver_lives_and_ends(station: Path, capsys: pytest.CaptureFixture[st
     assert (expired.status, expired.verdict["notes"]) == (1, [f"{WHAT} does not apply: it expired on 2021-07-01."])
     assert (other_numbers.status, other_numbers.verdict["notes"]) == (
         1,
-        [f"{WHAT} does not apply: the numbers of the record are not those that it was granted for."],
+        [f"{WHAT} does not apply: the record has changed since in what the rule reads."],
     )
 
 
@@ -128,6 +130,31 @@ def test_another_wording_keeps_a_waiver(station: Path, capsys: pytest.CaptureFix
     commit(station, "2021-05-04")
 
     assert weigh(station).status == 0
+
+
+def test_another_wording_ends_a_waiver_of_what_is_said(station: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """Its numbers stay as they are: what the waiver was granted for was the sentence."""
+    policy = "gatecheck: policy/1\nrules: {wording: {}}\n"
+    (station / "gatecheck.yaml").write_text(policy, encoding="utf-8")
+    said_of_it = changed(YIELD, claim="Lime has no effect on yield.")
+    (station / "r000.json").write_text(json.dumps(said_of_it), encoding="utf-8")
+    commit(station, "2021-05-02")
+    grant(station, digest_told(capsys, station, rule="wording"), rule="wording")
+    commit(station, "2021-05-03")
+    granted = weigh(station)
+    said_of_it = changed(YIELD, claim="Lime makes no difference to yield.")
+    (station / "r000.json").write_text(json.dumps(said_of_it), encoding="utf-8")
+    commit(station, "2021-05-04")
+    reworded = weigh(station)
+
+    assert (granted.status, granted.rule("wording", "yield_2030")["outcome"]) == (0, "waived")
+    assert (reworded.status, reworded.verdict["notes"]) == (
+        1,
+        [
+            "The waiver of wording on yield_2030 does not apply: the record has changed since in what the rule "
+            "reads."
+        ],
+    )
 
 
 def test_a_request_grants_itself_nothing(station: Path, capsys: pytest.CaptureFixture[str]) -> None:
@@ -211,18 +238,17 @@ def test_a_legacy_repository_is_adopted(legacy: Path, capsys: pytest.CaptureFixt
     assert (before.status, before.verdict["counts"]["falls-short"]) == (1, 61)
     assert status == 0
     assert told == (
-        "Accepted 61 shortfalls of 61 records in gatecheck.accepted.yaml: they do not block until the numbers of "
-        "their record change. Commit this file; on a pull request the one that counts is that of the base."
+        "Accepted 61 shortfalls of 61 records in gatecheck.accepted.yaml: each holds until its record changes in "
+        "what the rule reads. Commit this file; on a pull request the one that counts is that of the base."
     )
     assert (adopted.status, adopted.verdict["counts"]["waived"], adopted.verdict["notes"]) == (0, 61, [])
     assert adopted.rule(RULE, "weak/07")["message"].endswith(
-        "Accepted on adoption, until the numbers of the record change."
+        "Accepted on adoption, until the record changes in what the rule reads."
     )
     short = [one["id"] for one in request.verdict["claims"] if one["verdict"] == "falls-short"]
     assert (request.status, short) == (1, ["weak/00", "strong/039"])
     assert (
-        f"Accepted on adoption and no longer, as the numbers of the record changed: weak/00 ({RULE})."
-        in request.verdict["notes"]
+        f"Accepted on adoption and no longer, as the record changed: weak/00 ({RULE})." in request.verdict["notes"]
     )
 
 
