@@ -21,7 +21,7 @@ from gatecheck.model.record import Record, Test
 from gatecheck.model.shown import decimal
 from gatecheck.policy import Policy
 from gatecheck.rules.words import tell_number, tell_statistic
-from gatecheck.scan import scan
+from gatecheck.scan import scan_for
 
 _USUAL_ALPHA = 0.05
 
@@ -39,7 +39,7 @@ def trace(root: Path, policy: Policy, record_id: str, base: str | None = None) -
     """
     globs = policy.document.scan
     history = history_of(root, first_parent=False)
-    now = _in_tree(scan(root, globs.include, globs.exclude).found, record_id)
+    now = _in_tree(root, record_id, globs.include, globs.exclude)
     names = (record_id,) if now is None else names_of(now)
     recorded = versions_with_aliases(root, history, frozenset(names), globs.include, globs.exclude)
     versions = recorded.versions(recorded.lineage(names)) if now is None else versions_of(now, history, recorded)
@@ -65,10 +65,16 @@ def trace(root: Path, policy: Policy, record_id: str, base: str | None = None) -
     )
 
 
-def _in_tree(found: Sequence[Found], record_id: str) -> Found | None:
-    own = (one for one in found if one.record.id == record_id)
-    later = (one for one in found if record_id in one.record.aliases)
-    return next(own, None) or next(later, None)
+def _in_tree(root: Path, record_id: str, include: Sequence[str], exclude: Sequence[str]) -> Found | None:
+    """Return the record with that id, else the first one that has it among its aliases."""
+    found = scan_for(root, [record_id], include, exclude)
+    own = next((one for one in found if one.record.id == record_id), None)
+    later = {one.record.id for one in found if record_id in one.record.aliases}
+    if own is not None or not later:
+        return own
+    # Another file may hold one of their ids at an earlier place, and then that record stands in the tree.
+    found = scan_for(root, later, include, exclude)
+    return next((one for one in found if record_id in one.record.aliases), None)
 
 
 def _alpha(policy: Policy, found: Found) -> float:

@@ -233,7 +233,7 @@ def test_the_arrows_go_one_way() -> None:
 def test_the_reading_of_modules_sees_what_is_there() -> None:
     """Arrows that are not seen would never be wrong."""
     assert _rooms_imported(MODULES["gate.py"]) >= {"scan", "columns", "evidence", "compare", "rules", "policies"}
-    assert {"numpy", "scipy"} <= _outside_imported(MODULES["weigh/t.py"])
+    assert {"numpy", "scipy"} <= _outside_imported(MODULES["weigh/chi_laplace.py"])
     assert "write_bytes" in _called(MODULES["commands/edge.py"])
 
 

@@ -63,12 +63,14 @@ def with_doubts(looks: LooksSeen, history: History, recorded: Recorded, names: I
     gaps = len(gaps_of(recorded, names))
     doubt = doubt_of(history, recorded)
     if doubt is None:
-        return replace(looks, gaps=gaps)
+        return replace(looks, gaps=gaps) if gaps else looks
     return replace(looks, known=False, why=_NOT_KNOWN.format(doubt[0]), advice=doubt[1], gaps=gaps)
 
 
 def gaps_of(recorded: Recorded, names: Iterable[str]) -> tuple[Gap, ...]:
     """Return the texts that cannot be read and that hold one of the ids, or an earlier one."""
+    if not recorded.gaps:
+        return ()
     lineage = [name.encode("utf-8", "surrogatepass") for name in recorded.lineage(names)]
     return tuple(gap for gap in recorded.gaps if any(name in gap.content for name in lineage))
 

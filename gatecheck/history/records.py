@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 import functools
-import re
-from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from pathlib import Path
 
@@ -16,17 +15,12 @@ from gatecheck.model.record import Record
 from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Place, Problem
 from gatecheck.scan import LONGEST_PARSED
-from gatecheck.scan.candidates import looks_declared, may_declare
+from gatecheck.scan.candidates import looks_declared, may_declare, may_hold
 from gatecheck.scan.documents import judged
 from gatecheck.scan.readers import READERS, suffix_of
 from gatecheck.scan.readers.document import Document
 from gatecheck.scan.twins import position
 from gatecheck.scan.unread import as_text
-
-#: Searching for more ids than this costs more than to parse.
-_MOST_SEARCHED = 16
-#: By these a text may spell an id in other bytes than its own.
-_ESCAPES = re.compile(rb"[\\\0]|vnd\.gatecheck")
 
 
 @struct
@@ -137,7 +131,7 @@ def record_versions(
     """
     uses = _uses(history, include, exclude)
     reading = _Reading(ids)
-    may_hold = _search(ids)
+    holds = may_hold(ids)
     contents = git.read_blobs(root, [blob for blob, _ in uses], LONGEST_PARSED)
     for ((_, suffix), at), blob in zip(uses.items(), contents, strict=True):
         if blob.size is None:
@@ -145,7 +139,7 @@ def record_versions(
         elif blob.content is None:
             index, path = at[0]
             reading.gaps.append(Gap(history.commits[index], as_text(path), "the file is too long", b""))
-        elif may_declare(blob.content) and may_hold(blob.content):
+        elif holds(blob.content) and may_declare(blob.content):
             _read(reading, history, suffix, blob.content, at)
     reading.found.sort(key=lambda one: (one.index, position(one.place)))
     by_id: dict[str, list[Version]] = {}
@@ -175,22 +169,16 @@ def _uses(history: History, include: Sequence[str], exclude: Sequence[str]) -> _
     return uses
 
 
-def _search(ids: frozenset[str] | None) -> Callable[[bytes], bool]:
-    """Return the test whether a text may hold one of the records; it may err on that side alone."""
-    if ids is None or len(ids) > _MOST_SEARCHED:
-        return lambda _: True
-    names = [name.encode("utf-8", "surrogatepass") for name in ids]
-    return lambda content: any(name in content for name in names) or _ESCAPES.search(content) is not None
-
-
 def _read(reading: _Reading, history: History, suffix: str, content: bytes, at: list[tuple[int, str]]) -> None:
     index, path = at[0]
-    for one in _outcomes(suffix, as_text(path), content):
+    told = as_text(path)
+    for one in _outcomes(suffix, told, content):
         if isinstance(one, Found):
             if reading.ids is None or one.record.id in reading.ids:
-                reading.found.extend(_version(history, one, *use) for use in at)
+                reading.found.append(Version(index, history.commits[index], one, path))
+                reading.found.extend(_version_elsewhere(history, one, *use) for use in at[1:])
         elif looks_declared(suffix, content):
-            reading.gaps.append(Gap(history.commits[index], as_text(path), one.message, content))
+            reading.gaps.append(Gap(history.commits[index], told, one.message, content))
 
 
 def _outcomes(suffix: str, path: str, content: bytes) -> Iterator[Found | Problem]:
@@ -201,9 +189,8 @@ def _outcomes(suffix: str, path: str, content: bytes) -> Iterator[Found | Proble
             yield one
 
 
-def _version(history: History, found: Found, index: int, path: str) -> Version:
-    text = as_text(path)
-    here = found if found.at.path == text else replace(found, at=replace(found.at, path=text))
+def _version_elsewhere(history: History, found: Found, index: int, path: str) -> Version:
+    here = replace(found, at=replace(found.at, path=as_text(path)))
     return Version(index, history.commits[index], here, path)
 
 

@@ -62,11 +62,12 @@ def distinct(versions: Sequence[Version], line: Collection[str] | None = None) -
     results: dict[tuple[object, ...], _Result] = {}
     for version, size in zip(versions, _sizes([one.record for one in versions]), strict=True):
         numbers = _numbers(version.record)
-        key = (size, *(None if one is None else (one.value, one.relation) for one in numbers))
-        result = results.setdefault(key, _Result(size, numbers))
+        key = (size, *[None if one is None else (one.value, one.relation) for one in numbers])
+        result = results.get(key)
+        if result is None:
+            results[key] = result = _Result(size, numbers)
         result.versions.append(version)
-        on_line = line is None or version.commit is None or version.commit.id in line
-        if on_line and result.on_line_at is None:
+        if result.on_line_at is None and (line is None or version.commit is None or version.commit.id in line):
             result.on_line_at = version.index
     # What the line held comes first: what a side branch held is new only where the line never had it.
     in_order = sorted(results.values(), key=lambda one: (one.on_line_at is None, one.on_line_at or 0))
@@ -144,13 +145,14 @@ def _count(events: int | None) -> Reported | None:
 def _agree(some: _Numbers, others: _Numbers) -> bool:
     """Whether all numbers that both give can be the same, as they are rounded, and there is one."""
     pairs = [
-        (one.as_rounded(), other.as_rounded())
-        for one, other in zip(some, others, strict=False)
-        if one is not None and other is not None
+        (one, other) for one, other in zip(some, others, strict=False) if one is not None and other is not None
     ]
-    return bool(pairs) and all(
-        one.value == other.value or (one.low < other.high and other.low < one.high) for one, other in pairs
-    )
+    return bool(pairs) and all(one.value == other.value or _overlap(one, other) for one, other in pairs)
+
+
+def _overlap(one: Reported, other: Reported) -> bool:
+    one, other = one.as_rounded(), other.as_rounded()
+    return one.low < other.high and other.low < one.high
 
 
 def _same(some: _Numbers, others: _Numbers) -> bool:

@@ -6,7 +6,7 @@ declaring key is parsed. What is parsed and turns out to be something else is pa
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Collection, Iterable, Iterator, Sequence
 from pathlib import Path
 
 from gatecheck.git import Entry
@@ -14,11 +14,11 @@ from gatecheck.globs import matches
 from gatecheck.model.found import Found, Scan
 from gatecheck.model.progress import Progress
 from gatecheck.model.verdict import Problem
-from gatecheck.scan.candidates import is_pointer, looks_declared, may_declare
+from gatecheck.scan.candidates import is_pointer, looks_declared, may_declare, may_hold
 from gatecheck.scan.documents import judged
 from gatecheck.scan.readers import READERS, suffix_of
 from gatecheck.scan.readers.document import Document
-from gatecheck.scan.tree import Unread, contents, listed
+from gatecheck.scan.tree import Tree, Unread, contents, listed
 from gatecheck.scan.twins import position, settled
 from gatecheck.scan.unread import as_text, of_files, of_folders, of_links, of_long, of_pointer, of_unmerged
 
@@ -56,12 +56,11 @@ def scan(
         `root` is no folder, git fails, or the revision is not known.
     """
     tree = listed(root, revision)
-    wanted = [entry for entry in tree.entries if suffix_of(entry.path) in READERS]
-    wanted = [entry for entry in wanted if matches(include, entry.path) and not matches(exclude, entry.path)]
+    wanted = _wanted(tree, include, exclude)
     outcomes: list[Found | Problem] = []
     unread_files: list[tuple[Entry, Unread]] = []
     read: set[str] = set()
-    files = [entry for entry in wanted if entry.kind in {"file", "unmerged"}]
+    files = _files(wanted)
     for entry, content in _told(contents(tree, files), len(files), progress):
         if isinstance(content, Unread):
             unread_files.append((entry, content))
@@ -80,6 +79,38 @@ def scan(
     )
     in_order = sorted(dict.fromkeys(problems), key=lambda one: (position(one.at), one.message))
     return Scan(found, tuple(in_order), len(read))
+
+
+def scan_for(root: Path, ids: Collection[str], include: Sequence[str], exclude: Sequence[str]) -> tuple[Found, ...]:
+    """Find the records in the work tree below `root` that have one of `ids` as their id or among their aliases.
+
+    Only what may hold one of the ids is parsed; other records from there may stand among them, sorted by place. One
+    that has an id among its aliases may share its own id with a record at an earlier place, which `scan` would
+    find in its stead.
+
+    Raises
+    ------
+    CannotJudge
+        As `scan` does.
+    """
+    tree = listed(root, None)
+    holds = may_hold(ids)
+    outcomes = (
+        one
+        for entry, content in contents(tree, _files(_wanted(tree, include, exclude)))
+        if isinstance(content, bytes) and holds(content) and may_declare(content)
+        for one in _of_candidate(entry, content)
+    )
+    return settled(one for one in outcomes if isinstance(one, Found))[0]
+
+
+def _wanted(tree: Tree, include: Sequence[str], exclude: Sequence[str]) -> list[Entry]:
+    entries = [entry for entry in tree.entries if suffix_of(entry.path) in READERS]
+    return [entry for entry in entries if matches(include, entry.path) and not matches(exclude, entry.path)]
+
+
+def _files(entries: Sequence[Entry]) -> list[Entry]:
+    return [entry for entry in entries if entry.kind in {"file", "unmerged"}]
 
 
 def _told(read: Iterable[File], files: int, progress: Progress | None) -> Iterable[File]:

@@ -46,7 +46,7 @@ def _declared(value: Any) -> Declared:
 
 
 def _one(document: Document, value: Any, path: Path, *, among_others: bool = False) -> Iterator[Found | Problem]:
-    place = replace(document.place, line=document.locate(path))
+    place = replace(document.place, line=document.locate(path)) if path else document.place
     declared = _declared(value)
     if declared == "record":
         yield from _record(document, value, path, place)

@@ -67,13 +67,13 @@ class _Reader:
     def form(self, form: Form, found: Any, path: Path) -> Any:
         if not isinstance(found, Mapping):
             return self.fault(path, f"is {shown(found)}, not an object", f"write an object: {form.says}")
-        known = {key: raw for key, raw in found.items() if key in form.parts}
-        if len(known) < len(found):
-            self.unknown_keys(path, [key for key in found if key not in form.parts], form.parts)
+        parts = form.parts
+        if not found.keys() <= parts.keys():
+            self.unknown_keys(path, [key for key in found if key not in parts], parts)
         values = {}
-        for key, raw in known.items():
-            if raw is not None:
-                part = form.parts[key]
+        for key, raw in found.items():
+            part = parts.get(key)
+            if part is not None and raw is not None:
                 values[part.name] = self.value(part.shape, raw, (*path, key))
         for name in form.required:
             if found.get(name) is None:

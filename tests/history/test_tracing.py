@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import json
+from base64 import b64encode
+from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
@@ -11,10 +13,15 @@ from support import POLICY, Document, changed, command
 
 from gatecheck.cli import main
 from gatecheck.errors import CannotJudge
+from gatecheck.model.found import Found
 from gatecheck.model.looks_seen import Course
+from gatecheck.model.verdict import Problem
 from gatecheck.policies import read_own_policy
 from gatecheck.policy import Policy
 from gatecheck.render import course_account as course
+from gatecheck.scan import scan
+from gatecheck.scan.documents import judged
+from gatecheck.scan.readers.document import Document as Parsed
 from gatecheck.tracing import trace
 
 
@@ -341,3 +348,78 @@ def test_a_branch_without_a_commit_has_the_tree_alone(repo: Repository) -> None:
 
     assert [(each.commit, each.day) for each in traced(repo).steps] == [(None, "")]
     assert trace(repo.root, policy(), "another") is None
+
+
+def test_of_the_tree_only_what_may_hold_the_id_is_parsed(repo: Repository, monkeypatch: pytest.MonkeyPatch) -> None:
+    repo.commit(a=result(0.2, 20), b=result(0.3, 20, id="another", claim='A "claim" \u2013 with escapes.'))
+    repo.put("c.json", json.dumps(result(0.4, 20, id="third")).replace("third", "th\\u0069rd"))
+    parsed: list[str] = []
+
+    def counting(document: Parsed) -> Iterator[Found | Problem]:
+        parsed.append(document.place.path)
+        return judged(document)
+
+    monkeypatch.setattr("gatecheck.scan.judged", counting)
+
+    assert [each.p for each in traced(repo).steps] == ["0.2"]
+    assert sorted(parsed) == ["a.json", "c.json"]
+    assert trace(repo.root, policy(), "third") is not None
+
+
+@pytest.mark.parametrize(("old", "new"), [("/e", "\\/e"), ("/e", "\\u002Fe"), ("drain", "dr\\u0061in")])
+def test_an_escaped_id_is_traced(repo: Repository, old: str, new: str) -> None:
+    for p, n in ((0.4, 20), (0.2, 40)):
+        repo.commit(r=json.dumps(result(p, n)).replace(old, new))
+    repo.put("r.json", json.dumps(result(0.1, 60)).replace(old, new))
+
+    told = traced(repo)
+
+    assert [(each.p, each.change, each.commit is None) for each in told.steps] == [
+        ("0.4", "look", False), ("0.2", "look", False), ("0.1", "look", True),
+    ]  # fmt: skip
+
+
+@pytest.mark.parametrize("encoded", [False, True])
+def test_a_record_in_a_notebook_is_traced(repo: Repository, encoded: bool) -> None:
+    for p, n in ((0.4, 20), (0.2, 40)):
+        told = json.dumps(result(p, n))
+        data = {"application/vnd.gatecheck.record+json": b64encode(told.encode()).decode() if encoded else told}
+        output = {"output_type": "display_data", "data": data, "metadata": {}}
+        repo.put("n.ipynb", {"nbformat": 4, "nbformat_minor": 5, "metadata": {}, "cells": [{"outputs": [output]}]})
+        repo.commit()
+
+    course_told = traced(repo)
+
+    assert (course_told.in_tree, [each.p for each in course_told.steps]) == (True, ["0.4", "0.2"])
+
+
+def test_of_two_records_with_one_id_the_tree_has_that_at_the_earlier_place(repo: Repository) -> None:
+    repo.commit(b=result(0.4, 20))
+    repo.put("a.json", result(0.2, 40))
+
+    assert [each.p for each in traced(repo).steps] == ["0.4", "0.2"]
+    repo.put("a.json", result(0.2, 40, id="another"))
+    assert [each.p for each in traced(repo).steps] == ["0.4"]
+
+
+def test_an_earlier_id_leads_to_the_record_that_the_tree_has(repo: Repository) -> None:
+    """Of two records with one id a scan finds that at the earlier place, whose aliases alone count."""
+    repo.commit(b=result(0.4, 20, aliases=["old"]))
+
+    assert traced(repo, "old").id == ID
+    repo.put("a.json", result(0.2, 40))
+    assert [one.at.path for one in scan(repo.root, ["**"], []).found] == ["a.json"]
+    assert trace(repo.root, policy(), "old") is None
+    repo.put("a.json", result(0.2, 40, aliases=["old"]))
+    assert [each.p for each in traced(repo, "old").steps] == ["0.4", "0.2"]
+    repo.put("c.json", result(0.1, 60, id="old"))
+    assert [each.p for each in traced(repo, "old").steps] == ["0.1"]
+
+
+def test_a_record_that_the_policy_does_not_scan_is_not_traced(repo: Repository) -> None:
+    repo.put("scratch/r.json", result(0.4, 20))
+    repo.commit(r=result(0.2, 40, id="another"))
+    only_kept = {"scan": {"include": ["**"], "exclude": ["scratch/**"]}}
+
+    assert traced(repo).in_tree
+    assert trace(repo.root, policy(**only_kept), ID) is None

@@ -33,7 +33,10 @@ class Positions:
 
     def line(self, path: Path) -> int:
         """Return the 1-based line of the field at `path`, or of the nearest that exists around it."""
-        at = _Member(self._filled(0), self._filled(0))
+        first = self._filled(0)
+        if not path:  # which is asked of every text, and needs no list of all ends of lines
+            return self.text.count("\n", 0, first) + 1
+        at = _Member(first, first)
         # What nests too deep for the parser is refused; until then the line is that of what stands around it.
         with contextlib.suppress(KeyError, RecursionError):
             for step in path:
