@@ -14,7 +14,7 @@ import pytest
 from axe_playwright_python.sync_playwright import Axe as Accessibility
 from browser.browsing import opened, running_browser
 from playwright.sync_api import Browser, Page
-from render.page_samples import judged_station, many, waived
+from render.page_samples import judged_station, judged_strips, many, waived
 from render.sample_verdicts import BROKEN, DRAINAGE
 
 from gatecheck.model.shown import percent
@@ -216,7 +216,7 @@ def test_a_claim_is_drawn_when_it_is_opened_as_it_would_stand_in_the_page(
         move_to(page, 0.9)
         last.locator("summary").click()
         last.locator("svg").first.wait_for()
-        assert last.locator("svg").count() == 2
+        assert last.locator(".plots > svg").count() == 2
         assert float(last.locator(".d").get_attribute("cx") or 0) == pytest.approx(
             94 + (math.log(9) + math.log(99)) / (2 * math.log(99)) * 442
         )
@@ -231,6 +231,49 @@ def test_a_claim_is_drawn_when_it_is_opened_as_it_would_stand_in_the_page(
         assert interval is not None
         parsed = "html => Object.assign(document.createElement('div'), {innerHTML: html}).innerHTML"
         assert html == page.evaluate(parsed, filled(RISK, risk) + interval_plot(interval))
+
+
+def test_what_is_open_from_the_first_is_drawn_though_nobody_opened_it(browser: Browser, tmp_path: Path) -> None:
+    with opened(browser, written(tmp_path, judged_strips(tmp_path / "tree", 40, 0.75))) as page:
+        page.wait_for_function("() => claims.every((claim) => claim.element.open !== Boolean(claim.drawing))")
+        assert page.locator(".claim[open] .plots").count() == 30
+        assert page.locator(".claim:not([open]) .plots").count() == 0
+
+
+@pytest.fixture(scope="module")
+def long_page(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    folder = tmp_path_factory.mktemp("long-page")
+    return written(folder, judged_strips(folder / "tree", 300, 0.1))
+
+
+def test_a_filter_leaves_no_gap_where_folded_claims_are_hidden(browser: Browser, long_page: Path) -> None:
+    with opened(browser, long_page) as page:
+        assert page.locator(".part").count() == 6
+        page.select_option("#by-folder", label="fields/flax")
+        assert len(visible(page)) == 30
+        page.select_option("#by-standing", label="standing (270)")
+        height = page.evaluate("document.getElementById('standing').closest('section').offsetHeight")
+        assert 27 * 40 < height < 27 * 120
+        page.select_option("#by-standing", label="short of the policy (30)")
+        assert page.locator(".part:not([hidden])").count() == 0
+        page.click("#all")
+        assert page.locator(".part:not([hidden])").count() == 6
+
+
+def test_a_link_leads_to_a_claim_far_down(browser: Browser, long_page: Path) -> None:
+    with opened(browser, long_page) as page:
+        page.evaluate("location.hash = '#c299'")
+        page.wait_for_function("() => claims[299].element.open && !claims[299].drawing")
+        page.wait_for_timeout(100)
+        top = page.evaluate("claims[299].element.getBoundingClientRect().top")
+        assert -5 <= top < 900
+
+
+def test_a_number_in_brackets_leads_to_what_it_stands_for(browser: Browser, long_page: Path) -> None:
+    with opened(browser, long_page) as page:
+        page.locator(".claim a:has-text('[2]')").first.click()
+        assert told(page, ":target").startswith("Even against an effect as large as the one observed")
+        assert page.locator(":target").is_visible()
 
 
 def visible(page: Page) -> list[str]:
@@ -342,7 +385,7 @@ def test_without_its_program_all_is_there_but_slider_and_filter(browser: Browser
     page.goto(station_page.as_uri())
     assert page.is_hidden("#tools")
     assert page.locator(".claim").count() == 9
-    assert page.locator(".claim svg").count() == 17
+    assert page.locator(".plots > svg").count() == 17
     page.locator("summary:has-text('liming/soil-ph')").click()
     assert "about 170,000 to 1 for an effect over none" in plain_text(page.inner_text("main"))
     context.close()

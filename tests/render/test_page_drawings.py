@@ -14,7 +14,7 @@ from gatecheck.model.interval_shown import IntervalShown
 from gatecheck.model.verdict import Figures, Finding, Judged, Place
 from gatecheck.render.page.drawing import NOTHING, filled
 from gatecheck.render.page.interval_plot import band, interval_drawing, interval_plot
-from gatecheck.render.page.risk_plot import BOTTOM, LEFT, RIGHT, RISK, TOP, Axes, risk_drawing
+from gatecheck.render.page.risk_plot import BOTTOM, LEFT, RIGHT, RISK, TOP, Axes, curve_path, risk_drawing
 
 MIDDLE = (LEFT + RIGHT) // 2
 
@@ -35,6 +35,18 @@ def risk_of(log_lr: float, prior: float) -> float:
 def corners(path: str) -> list[tuple[float, float]]:
     numbers = [float(number) for number in re.findall(r"-?\d+", path)]
     return list(zip(numbers[::2], numbers[1::2], strict=True))
+
+
+def curve_of(moved: int | str) -> list[tuple[float, float]]:
+    """The corners of the one curve where a drawing puts it, of which the box of priors shows a part."""
+    path = re.sub(r"H(\d+)$", rf" \1 {BOTTOM}", curve_path())
+    return [(x + LEFT + int(moved), y) for x, y in corners(path)]
+
+
+def height_at(x: float, path: list[tuple[float, float]]) -> float:
+    """How high a curve runs over a place that lies between its ends."""
+    (x1, y1), (x2, y2) = next(pair for pair in pairwise(path) if pair[0][0] <= x <= pair[1][0])
+    return y1 + (y2 - y1) * (x - x1) / (x2 - x1)
 
 
 def test_a_template_is_filled_slot_by_slot() -> None:
@@ -59,12 +71,21 @@ def test_the_curve_passes_the_ring_and_the_prior_needed() -> None:
     five = round(TOP + -math.log10(0.05) / 3 * (BOTTOM - TOP))
     (at,) = re.findall(rf"^M(\d+),{five}V{BOTTOM}$", str(drawing[1]))
     assert drawing[2:5] == ["e", int(at) - 8, "79 %"]
-    path = corners(str(drawing[5]))
-    assert path[0][0] == LEFT
+    path = curve_of(drawing[5])
     assert path == sorted(path), "the risk falls as the prior rises"
-    (x1, y1), (x2, y2) = next(pair for pair in pairwise(path) if pair[0][0] <= int(at) <= pair[1][0])
-    crossing = y1 + (y2 - y1) * (int(at) - x1) / (x2 - x1)
-    assert crossing == pytest.approx(five, abs=1.5)
+    assert height_at(int(at), path) == pytest.approx(five, abs=1.5)
+    assert height_at(MIDDLE, path) == pytest.approx(int(drawing[7]), abs=1.5)
+
+
+@given(st.floats(-12, 12), st.floats(0.01, 0.99))
+def test_the_one_curve_is_the_risk_of_every_result_at_every_prior(log_lr: float, prior: float) -> None:
+    drawing = risk_drawing(figures(log_lr, prior), 0)
+    assert drawing is not None
+    path = curve_of(drawing[5])
+    across = (math.log(prior / (1 - prior)) + math.log(99)) / (2 * math.log(99))
+    down = min(3.0, -math.log10(risk_of(log_lr, prior))) / 3
+    # Whole numbers on both ways, and straight lines between the corners.
+    assert height_at(LEFT + across * (RIGHT - LEFT), path) == pytest.approx(TOP + down * (BOTTOM - TOP), abs=3)
 
 
 @pytest.mark.parametrize(
@@ -96,7 +117,10 @@ def test_what_lies_beyond_the_drawing_stands_at_its_edge(log_lr: float, y: int) 
     drawing = risk_drawing(figures(log_lr), 0)
     assert drawing is not None
     assert drawing[-1] == y
-    assert {each for _, each in corners(str(drawing[5]).replace(f"H{RIGHT}", f" {RIGHT} {BOTTOM}"))} == {y}
+    path = curve_of(drawing[5])
+    assert path[0][0] <= LEFT
+    assert path[-1][0] >= RIGHT
+    assert {round(height_at(x, path)) for x in range(LEFT, RIGHT + 1)} <= {y, y + 1}
 
 
 @pytest.mark.parametrize(
@@ -120,9 +144,18 @@ def test_any_risk_is_drawn_within_its_box(log_lr: float, prior: float, needed: f
     x, y = int(drawing[6]), int(drawing[7])
     assert LEFT <= x <= RIGHT
     assert TOP <= y <= BOTTOM
-    for corner_x, corner_y in corners(str(drawing[5]).replace(f"H{RIGHT}", f" {RIGHT} {BOTTOM}")):
-        assert LEFT <= corner_x <= RIGHT
-        assert TOP <= corner_y <= BOTTOM
+    path = curve_of(drawing[5])
+    assert path[0][0] <= LEFT
+    assert path[-1][0] >= RIGHT
+    assert all(TOP <= corner_y <= BOTTOM for _, corner_y in path)
+
+
+def test_the_curve_stands_in_the_page_once_and_each_drawing_shows_the_part_in_its_box() -> None:
+    drawing = risk_drawing(figures(math.log(9)), 0)
+    assert drawing is not None
+    moved = -round(math.log(9) / (2 * math.log(99)) * (RIGHT - LEFT))
+    assert f'<svg x="94" width="442"><use href="#curve" x="{moved}"/></svg>' in filled(RISK, drawing)
+    assert Axes([]).drawn().count('<symbol id="curve">') == 1
 
 
 def judged(limit: float | None) -> Judged:
@@ -158,7 +191,8 @@ def test_an_interval_on_its_scale() -> None:
     assert ticks[0][0] == at[0]
     text = interval_plot(drawing)
     assert text.startswith('<svg viewBox="0 0 600 124"><rect x="0" y="8" width="0"')
-    assert text.count('class="m"') == 4
+    assert text.count("<tspan") == text.count(",80v8") == 4
+    assert f'<tspan x="{at[0]}">0</tspan>' in text
 
 
 def test_a_limit_that_is_not_there_runs_to_the_edge() -> None:

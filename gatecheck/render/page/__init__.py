@@ -14,17 +14,21 @@ from pathlib import Path
 from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Judged, Verdict
 from gatecheck.render import order, words
-from gatecheck.render.page.claim import Shared, claim, said
+from gatecheck.render.page.claim import claim
 from gatecheck.render.page.index import index
 from gatecheck.render.page.numbers import embedded
-from gatecheck.render.page.parts import closing, opening, reading, remarks, told
+from gatecheck.render.page.parts import closing, common, noted, opening, reading, told
+from gatecheck.render.page.shared import Shared
 from gatecheck.render.page.tools import tools
+from gatecheck.render.page.wording import said
 
 _FOLDER = Path(__file__).parent
 #: A person reads no more than these from end to end, and a page of thousands must open at once.
 _MOST_UNFOLDED = 200
-#: Further records are drawn when they are opened, which the page's own program does.
+#: Further records are drawn by the page's own program, when they are opened or where they are open.
 _MOST_DRAWN = 20
+#: Folded records are laid out by so many at once, and those far from what is seen not at all.
+_TOGETHER = 50
 
 
 @struct
@@ -46,8 +50,8 @@ def page(verdict: Verdict) -> str:
         f'<!DOCTYPE html>\n<html lang="en">\n{_head(verdict)}<body>\n'
         f'<svg class="defs" aria-hidden="true">{shared.axes.drawn()}</svg>\n'
         f"<header>\n{opening(verdict)}</header>\n{_contents(sections)}<main>\n"
-        f"{told(verdict)}{reading() if shown else ''}{tools(shown)}{_claims(sections, shared)}{index(shown)}"
-        f"{remarks(shared.remarks)}{closing(verdict)}</main>\n"
+        f"{told(verdict)}{reading() if shown else ''}{tools(shown)}{common(shared.common)}"
+        f"{_claims(sections, shared)}{index(shown)}{noted(shared.notes)}{closing(verdict)}</main>\n"
         f'<script type="application/json" id="numbers">{embedded(shown, shared.axes, _MOST_DRAWN)}</script>\n'
         f"<script>{_program()}</script>\n</body>\n</html>\n"
     )
@@ -91,12 +95,19 @@ def _claims(sections: Sequence[Section], shared: Shared) -> str:
     for section in sections:
         texts.append(f'<section class="claims" aria-labelledby="{section.name}">\n')
         texts.append(f'<h2 id="{section.name}">{section.title} ({len(section.judged)})</h2>\n')
-        for one in section.judged:
-            in_full = section.unfolded and number < _MOST_UNFOLDED
-            texts.append(claim(one, number, shared, in_full=in_full, drawn=number < _MOST_DRAWN))
-            number += 1
-        texts.append("</section>\n")
+        unfolded = max(0, _MOST_UNFOLDED - number) if section.unfolded else 0
+        told = [
+            claim(one, each, shared, in_full=each < number + unfolded, drawn=each < _MOST_DRAWN)
+            for each, one in enumerate(section.judged, number)
+        ]
+        texts += [*told[:unfolded], *_together(told[unfolded:]), "</section>\n"]
+        number += len(told)
     return "".join(texts)
+
+
+def _together(folded: Sequence[str]) -> Iterator[str]:
+    for first in range(0, len(folded), _TOGETHER):
+        yield f'<div class="part">\n{"".join(folded[first : first + _TOGETHER])}</div>\n'
 
 
 def _program() -> str:
@@ -104,7 +115,9 @@ def _program() -> str:
 
 
 def _own_text(name: str) -> str:
-    return (_FOLDER / name).read_text(encoding="utf-8")
+    """A file of the page without its comments of whole lines and its indents."""
+    lines = (line.strip() for line in (_FOLDER / name).read_text(encoding="utf-8").splitlines())
+    return "\n".join(line for line in lines if line and not line.startswith("//")) + "\n"
 
 
 def _digest(text: str) -> str:

@@ -6,7 +6,7 @@ from collections.abc import Callable, Sequence
 
 from gatecheck.model.verdict import Finding, Judged
 from gatecheck.render import order, words
-from gatecheck.render.page.claim import name_of, said
+from gatecheck.render.page.wording import said
 
 _BY_RULES = (
     ("Differences from the plan", "held to a plan", {"registered", "all-promised-reported"}),
@@ -43,13 +43,13 @@ def _of_rules(shown: Sequence[Judged], rules: set[str], what: str) -> str:
 
 
 def _told(shown: Sequence[Judged], found: Callable[[Judged], list[Finding]], nothing: str) -> str:
-    links = [
-        f'<li><a href="#c{number}">{name_of(one)}</a>: {said(_outcome(finding))}</li>'
-        for number, one in enumerate(shown)
-        for finding in found(one)
-    ]
-    return f"<ul>{''.join(links)}</ul>" if links else nothing
+    links: dict[str, list[str]] = {}
+    for number, one in enumerate(shown):
+        for finding in found(one):
+            links.setdefault(_outcome(finding), []).append(f'<a href="#c{number}">{said(one.id)}</a>')
+    listed = "".join(f"<li>{said(outcome)}: {', '.join(each)}.</li>" for outcome, each in links.items())
+    return f"<ul>{listed}</ul>" if links else nothing
 
 
 def _outcome(finding: Finding) -> str:
-    return f"{words.rule_words(finding.rule).lower()}, {words.outcome_words(finding)}."
+    return f"{words.rule_words(finding.rule)}, {words.outcome_words(finding)}"

@@ -84,18 +84,23 @@ def band(shown: IntervalShown) -> tuple[float, float] | None:
     return shown.smallest, shown.null - (shown.smallest - shown.null)
 
 
-#: The band, no effect, the interval, and the ring of the estimate; ticks follow.
+#: The band, no effect, the interval, and the ring of the estimate.
 INTERVAL = (
     f'<rect x="{{0}}" y="{_TOP}" width="{{1}}" height="{_AXIS - _TOP}"/>'
-    f'<path class="g" d="M{_NEAR},{_AXIS}H{_FAR}"/><path class="n" d="M{{2}},{_TOP}V{_AXIS}"/>'
-    f'<path class="c" d="{{3}}"/><circle cx="{{4}}" cy="{_LINE}" r="9"/>'
+    f'<path class="n" d="M{{2}},{_TOP}V{_AXIS}"/><path class="c" d="{{3}}"/><circle cx="{{4}}" cy="{_LINE}" r="9"/>'
 )
-TICK = f'<path class="g" d="M{{0}},{_AXIS}v8"/><text class="m" x="{{0}}" y="{_LABELS}">{{1}}</text>'
-VIEW = '<svg viewBox="0 0 600 124">{0}</svg>'
+#: A tick of the axis, and its number.
+TICK = f"M{{0}},{_AXIS}v8"
+LABEL = '<tspan x="{0}">{1}</tspan>'
+#: The interval, then all ticks, then all numbers.
+VIEW = (
+    f'<svg viewBox="0 0 600 124">{{0}}<path class="g" d="M{_NEAR},{_AXIS}H{_FAR}{{1}}"/>'
+    f'<text class="m" y="{_LABELS}">{{2}}</text></svg>'
+)
 
 
 def interval_drawing(shown: IntervalShown | None) -> list[Drawing] | None:
-    """Return what fills `INTERVAL`, then what fills a `TICK` each, all of them within `VIEW`.
+    """Return what fills `INTERVAL`, then what fills a `TICK` and a `LABEL` each, all of them within `VIEW`.
 
     The estimate is a ring on its interval, no effect an upright line, and what is too small to matter is shaded.
     `None` where nothing is given, or the numbers are too large or too close for a drawing.
@@ -109,8 +114,10 @@ def interval_drawing(shown: IntervalShown | None) -> list[Drawing] | None:
 
 def interval_plot(drawing: Sequence[Drawing]) -> str:
     """Return the drawing as it stands in the page."""
-    ticks = "".join(filled(TICK, each) for each in drawing[1:])
-    return filled(VIEW, [filled(INTERVAL, drawing[0]) + ticks])
+    main, *ticks = drawing
+    return filled(
+        VIEW, [filled(INTERVAL, main), *("".join(filled(each, tick) for tick in ticks) for each in (TICK, LABEL))]
+    )
 
 
 def _shaded(shown: IntervalShown, scale: _Scale) -> Drawing:

@@ -10,7 +10,7 @@ from dataclasses import replace
 from gatecheck.model.verdict import Finding, Judged, Standing
 from gatecheck.render import words
 from gatecheck.render.page.claim import drawings
-from gatecheck.render.page.interval_plot import INTERVAL, TICK, VIEW
+from gatecheck.render.page.interval_plot import INTERVAL, LABEL, TICK, VIEW
 from gatecheck.render.page.risk_plot import RISK, Axes
 from gatecheck.render.text import script_data
 
@@ -58,7 +58,7 @@ def embedded(judged: Sequence[Judged], axes: Axes, drawn: int) -> str:
             ]
             for number, one in enumerate(judged)
         ],
-        "templates": {"risk": RISK, "view": VIEW, "interval": INTERVAL, "tick": TICK},
+        "templates": {"risk": RISK, "view": VIEW, "interval": INTERVAL, "tick": TICK, "label": LABEL},
     }
     return script_data(json.dumps(whole, separators=(",", ":"), allow_nan=False))
 

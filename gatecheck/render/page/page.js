@@ -34,8 +34,8 @@ function draw(claim) {
   plots.setAttribute("aria-hidden", "true");
   if (risk) plots.innerHTML += filled(templates.risk, risk);
   if (interval) {
-    const ticks = interval.slice(1).map((tick) => filled(templates.tick, tick));
-    plots.innerHTML += filled(templates.view, [filled(templates.interval, interval[0]) + ticks.join("")]);
+    const [main, ...ticks] = interval, all = (template) => ticks.map((tick) => filled(template, tick)).join("");
+    plots.innerHTML += filled(templates.view, [filled(templates.interval, main), all(templates.tick), all(templates.label)]);
   }
   claim.element.querySelector(":scope > :last-child").before(plots);
   claim.drawing = null;
@@ -50,6 +50,9 @@ addEventListener(
   },
   true,
 );
+
+// Those that were open before this program was there to hear of it.
+setTimeout(() => claims.filter((claim) => claim.drawing && claim.element.open).forEach(draw));
 
 // What the page shows of a claim, looked up when the slider is first moved.
 function partsOf(claim) {
@@ -195,8 +198,10 @@ function filter() {
     claim.element.hidden = !fits;
     shown += fits;
   }
-  for (const section of document.querySelectorAll(".claims")) {
-    section.hidden = !section.querySelector(".claim:not([hidden])");
+  // Of what is far from the window the height is only guessed, and a filter would make the guess a bad one.
+  document.body.classList.toggle("filtered", shown < claims.length);
+  for (const around of document.querySelectorAll(".claims, .part")) {
+    around.hidden = !around.querySelector(".claim:not([hidden])");
   }
   byId("count").textContent = `Shown: ${shown} of ${claims.length}.`;
 }

@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 
 from gatecheck.model.verdict import Judged, Verdict
 from gatecheck.render import order, words
-from gatecheck.render.page.claim import remark_told, said
+from gatecheck.render.page.notes import Notes
+from gatecheck.render.page.rows import Rows
+from gatecheck.render.page.wording import said
 
 _READING = (
     (
@@ -24,7 +27,12 @@ _READING = (
         "In the second, the ring is the estimate on its interval and the upright line is no effect. What is shaded "
         "is too small to matter by the record's own word."
     ),
+    (
+        "A number in brackets, such as [1], stands for words that several records have in common. They are said "
+        "once, below the records."
+    ),
 )
+_FIRST_LETTER = re.compile(r"^\W*\w")
 _SHORT_DIGEST = len("sha256:") + 12
 _COUNTED = ("stand", "short of the policy", "waived", "undecided", "in all")
 
@@ -77,12 +85,25 @@ def reading() -> str:
     return f'<details class="reading"><summary><h2>How to read the figures</h2></summary>\n{paragraphs}</details>\n'
 
 
-def remarks(shared: Sequence[str]) -> str:
-    """Return the remarks on figures to which several records point."""
-    entries = [f'<li id="remark{number}">{remark_told(note)}</li>' for number, note in enumerate(shared, 1)]
+def common(rows: Rows) -> str:
+    """Return what holds for every record that tells nothing else under the same term."""
+    if not rows:
+        return ""
+    listed = "".join(f"<dt>{term}<dd>{told}" for term, told in rows.items())
+    return _section("common", "Of every record that says nothing else", f"<dl>{listed}</dl>\n")
+
+
+def noted(notes: Notes) -> str:
+    """Return what several records say, to which they point by its number."""
+    entries = [f'<li id="n{number}">{note(told)}</li>' for number, told in enumerate(notes.entries, 1)]
     if not entries:
         return ""
-    return _section("remarks", "Remarks on the figures", f"<ol>{''.join(entries)}</ol>\n")
+    return _section("said-once", "Said once, of several records", f"<ol>{''.join(entries)}</ol>\n")
+
+
+def note(told: str) -> str:
+    """Return a note as a sentence."""
+    return said(words.sentence(_FIRST_LETTER.sub(lambda found: found[0].upper(), told, count=1)))
 
 
 def closing(verdict: Verdict) -> str:

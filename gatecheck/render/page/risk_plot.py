@@ -1,8 +1,8 @@
 """The risk of one result against the prior, as a small vector drawing.
 
 The prior stands on the scale of its log odds and the risk on that of its logarithm, so that the curve of every
-result has one shape, moved along by its log likelihood ratio. All numbers in a drawing also stand in words beside
-it; its coordinates are whole numbers of half a pixel or so, as a page may hold thousands.
+result has one shape, moved along by its log likelihood ratio: it stands in the page once. All numbers in a drawing
+also stand in words beside it; its coordinates are whole numbers of half a pixel or so, as a page may hold many.
 """
 
 from __future__ import annotations
@@ -22,8 +22,10 @@ LEFT, RIGHT, TOP, BOTTOM = 94, 536, 20, 272
 _MOST_LOG_ODDS = math.log(99)
 _DECADES = 3
 _PRIORS = (0.01, 0.1, 0.5, 0.9, 0.99)
-#: Log odds of an effect at which the curve bends; beyond them it is straight.
-_BENDS = (-4.0, -2.8, -2.0, -1.4, -0.9, -0.45, 0.0, 0.45, 0.9, 1.4, 2.0, 2.8, 4.0)
+#: Log odds of an effect at which the curve bends; beyond them it is straight, until it runs along the edge.
+_BENDS = (-6.0, -4.0, -2.8, -2.0, -1.4, -0.9, -0.45, 0.0, 0.45, 0.9, 1.4, 2.0, 2.8, 4.0, math.log(10**_DECADES - 1))
+#: A log likelihood ratio beyond this one leaves but an edge of the curve to be seen, whatever it is.
+_MOST_LOG_LR = 12.0
 _BEYOND = 700.0
 
 
@@ -39,9 +41,10 @@ class Axes:
         return 0 if limit is None else self._numbers.get(limit, 0)
 
     def drawn(self) -> str:
-        """Return all axes as symbols, to be used by the drawings."""
+        """Return all axes, and the curve, as symbols, to be used by the drawings."""
         bare = _axes()
-        return f'<symbol id="a0">{bare}</symbol>' + "".join(
+        curve = f'<symbol id="curve"><path class="c" d="{curve_path()}"/></symbol>'
+        return f'{curve}<symbol id="a0">{bare}</symbol>' + "".join(
             f'<symbol id="a{number}">{bare}{_limit(limit)}</symbol>' for limit, number in self._numbers.items()
         )
 
@@ -66,10 +69,11 @@ def _limit(limit: float) -> str:
     return f'<path class="l" d="M{LEFT} {y}H{RIGHT}"/><text x="{RIGHT + 8}" y="{y + 8}">{told}</text>'
 
 
-#: Axes, the prior needed as a line and as a text, the curve, and the ring.
+#: Axes, the prior needed as a line and as a text, the curve within the box of priors, and the ring.
 RISK = (
     '<svg viewBox="0 0 600 344"><use href="#a{0}"/><path class="n" d="{1}"/>'
-    f'<text class="{{2}}" x="{{3}}" y="{BOTTOM - 8}">{{4}}</text><path class="c" d="{{5}}"/>'
+    f'<text class="{{2}}" x="{{3}}" y="{BOTTOM - 8}">{{4}}</text>'
+    f'<svg x="{LEFT}" width="{RIGHT - LEFT}"><use href="#curve" x="{{5}}"/></svg>'
     '<circle class="d" cx="{6}" cy="{7}" r="9"/></svg>'
 )
 
@@ -84,7 +88,7 @@ def risk_drawing(figures: Figures | None, axes: int) -> Drawing | None:
     log_lr, prior, risk = figures.log_likelihood_ratio, figures.prior, figures.false_positive_risk
     if not (_is_finite(log_lr) and _is_finite(prior) and _is_finite(risk)):
         return None
-    return [axes, *_needed(log_lr, figures.prior_needed), _curve(log_lr), _x(_log_odds(prior)), _y(risk)]
+    return [axes, *_needed(log_lr, figures.prior_needed), _moved(log_lr), _x(_log_odds(prior)), _y(risk)]
 
 
 def _needed(log_lr: float, needed: float | None) -> Drawing:
@@ -101,19 +105,25 @@ def _needed(log_lr: float, needed: float | None) -> Drawing:
     return [f"M{x},{y}V{BOTTOM}", *side, told]
 
 
-def _curve(log_lr: float) -> str:
-    """The corners of the curve, from the least prior on until it leaves the drawing at its lower end."""
-    lowest = math.log(10.0**_DECADES - 1)
-    first, last = log_lr - _MOST_LOG_ODDS, min(log_lr + _MOST_LOG_ODDS, lowest)
-    if first >= last:
-        return f"M{LEFT} {BOTTOM}H{RIGHT}"
-    corners = [first, *(each for each in _BENDS if first < each < last), last]
-    return "M" + " ".join(f"{_x(each - log_lr)} {_y(_share(-each))}" for each in corners)
+def curve_path() -> str:
+    """Return the curve of a result that tells nothing, beyond both ends as far as any other one is moved."""
+    farthest = _MOST_LOG_LR + _MOST_LOG_ODDS
+    corners = " ".join(f"{_across(each)} {_y(_share(-each))}" for each in _BENDS)
+    return f"M{_across(-farthest)} {TOP}L{corners}H{_across(farthest)}"
+
+
+def _moved(log_lr: float) -> int:
+    """How far the curve is moved to the right."""
+    return _across(max(-_MOST_LOG_LR, min(_MOST_LOG_LR, -log_lr))) - _across(0.0)
 
 
 def _x(log_odds: float) -> int:
-    kept = max(-_MOST_LOG_ODDS, min(_MOST_LOG_ODDS, log_odds))
-    return round(LEFT + (kept + _MOST_LOG_ODDS) / (2 * _MOST_LOG_ODDS) * (RIGHT - LEFT))
+    return LEFT + _across(max(-_MOST_LOG_ODDS, min(_MOST_LOG_ODDS, log_odds)))
+
+
+def _across(log_odds: float) -> int:
+    """How far to the right of the left edge of the box."""
+    return round((log_odds + _MOST_LOG_ODDS) / (2 * _MOST_LOG_ODDS) * (RIGHT - LEFT))
 
 
 def _y(risk: float) -> int:

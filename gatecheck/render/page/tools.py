@@ -7,8 +7,8 @@ from collections.abc import Iterable, Sequence
 
 from gatecheck.model.verdict import Judged
 from gatecheck.render import words
-from gatecheck.render.page.claim import said
 from gatecheck.render.page.numbers import STANDINGS, folders, is_weighed, rules_not_met
+from gatecheck.render.page.wording import said
 
 _USUAL_PRIOR = 0.5
 _LEAST, _MOST = 0.01, 0.99
