@@ -10,9 +10,9 @@ from pathlib import Path
 
 from gatecheck.analysis.catalogue import Language, libraries, names_of_tests
 from gatecheck.analysis.flow import Flow
-from gatecheck.analysis.pieces import Cell, cells_of_notebook, chunks_of_markdown
-from gatecheck.analysis.python_calls import parsed, read_python
-from gatecheck.analysis.python_cells import read_cells_of_python, words_in, words_of_tests
+from gatecheck.analysis.pieces import Cell, cells_of, chunks_of_markdown, may_hold_r, sources_of_notebook
+from gatecheck.analysis.python_cells import code_of, read_cells_of_python, read_python, words_in, words_of_tests
+from gatecheck.analysis.python_tree import parsed
 from gatecheck.analysis.r_calls import read_r
 from gatecheck.analysis.r_tokens import Node, tree_of
 from gatecheck.analysis.unreadable import Unreadable
@@ -115,13 +115,12 @@ def _escaped(language: Language) -> list[bytes]:
 
 
 def _read_python(path: str, content: bytes) -> CodeFile:
-    cell = Cell("python", "")
+    # A file without the name of a test calls none, whatever else it is.
+    if words_of_tests().isdisjoint(words_in(_decoded(content))):
+        return CodeFile(path, ())
     try:
-        return _made(path, [read_python([(cell, parsed(content))])], [])
+        return _made(path, [read_python([code_of(Cell("python", ""), parsed(content))])], [])
     except Unreadable as error:
-        # A file without the name of a test calls none, whatever else it is.
-        if words_of_tests().isdisjoint(words_in(content.decode("latin-1"))):
-            return CodeFile(path, ())
         return CodeFile(path, (), not_read=(NotRead(f"the code {error.why}", error.line),), line=error.line)
 
 
@@ -144,9 +143,13 @@ def _decoded(content: bytes) -> str:
 def _read_notebook(path: str, content: bytes) -> CodeFile:
     try:
         text = content.decode("utf-8-sig")
-        cells = list(cells_of_notebook(text))
+        notebook = sources_of_notebook(text)
     except (ValueError, RecursionError):
         return CodeFile(path, (), not_read=(NotRead("the file is no notebook: its JSON cannot be parsed"),))
+    # Most notebooks test nothing, and need not be taken apart to tell.
+    if not (_names_library(notebook.whole.encode("utf-8", "replace")) or may_hold_r(notebook)):
+        return CodeFile(path, ())
+    cells = cells_of(notebook)
     code = "\n".join(each.text for each in cells).encode("utf-8", "replace")
     if not _names_library(code) and all(each.language == "python" for each in cells):
         return CodeFile(path, ())

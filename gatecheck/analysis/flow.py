@@ -105,6 +105,8 @@ class Flow:
         self.checks = 0
         #: Names that hold a result somewhere, or that the reader knows for others that matter.
         self.words: set[str] = set()
+        #: Names of functions that the file defines: anywhere, once it has been read, and so far before.
+        self.functions = set(self.before.defined)
         self._holds: dict[str, Keys] = {}
         self._changed: list[dict[str, Keys]] = [{}]
         self._sites: dict[Key, Site] = {}
@@ -124,6 +126,7 @@ class Flow:
     def function(self, name: str, parameters: Iterable[str]) -> Iterator[None]:
         """Read the body of a function, whose parameters hold what it is called with."""
         self.learned.defined[name] += 1
+        self.functions.add(name)
         with self._undone(), self.inside(Context(name)):
             for each in parameters:
                 self.bind(each, frozenset({_parameter(name)}))
@@ -165,7 +168,7 @@ class Flow:
 
     def of_kind(self, keys: Keys, kind: SiteKind) -> Keys:
         """Those of `keys` that are models, or fits of them."""
-        return keys & self._of_kind.get(kind, NOTHING)
+        return keys & self._of_kind.get(kind, NOTHING) if keys else NOTHING
 
     def declare(self, keys: Keys, identifier: tuple[str, ...] | None) -> None:
         """The results go to `declare`, with an id that has these texts around what is filled in."""
@@ -197,10 +200,6 @@ class Flow:
         name = self.context.within
         handed_on = frozenset(key for key in keys if not _is_parameter(key))
         self.learned.returns[name] = self.learned.returns.get(name, NOTHING) | handed_on
-
-    def is_function(self, name: str) -> bool:
-        """Whether the file defines a function of that name, now or further down."""
-        return name in self.before.defined or name in self.learned.defined
 
     def called(self, name: str, arguments: Keys) -> Keys:
         """A function of the file is called; returns what it returns."""

@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import json
 import re
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from typing import Any, Literal
 
 from gatecheck.model.struct import struct
@@ -22,11 +22,12 @@ _OPTION = re.compile(r"\beval\s*[=:]\s*(?:F|FALSE|false|no)\b")
 _COMMENT_OPTION = re.compile(r"^\s*#\|\s*eval\s*:\s*(?:false|FALSE|no)\b", re.MULTILINE)
 #: Lines of a cell that speak to the notebook: magics, commands of the shell, and questions.
 _TO_NOTEBOOK = re.compile(r"^([ \t]*)(?:[%!].*|\?.*|[\w.]+\?\??[ \t]*|[\w., ]+=[ \t]*[%!].*)$", re.MULTILINE)
-_SIGNS = ("%", "!", "?")
 _CELL_MAGIC = re.compile(r"\s*%%(\w+)[^\n]*")
 #: Magics of a cell whose other lines are still Python.
 _STILL_PYTHON = frozenset({"capture", "prun", "time", "timeit"})
 _R_MAGICS = frozenset({"R", "r"})
+_R_MAGIC = re.compile(r"%%[Rr]\b")
+_R = frozenset({"r", "ir"})
 
 
 @struct
@@ -43,8 +44,17 @@ class Cell:
     path: tuple[str | int, ...] = ()
 
 
-def cells_of_notebook(text: str) -> Iterator[Cell]:
-    """Yield the cells of a notebook whose code is Python or R.
+@struct
+class Notebook:
+    """The language of a notebook, and number, path and text of its cells of code; `whole` joins the texts."""
+
+    language: str
+    sources: Sequence[tuple[int, tuple[str | int, ...], str]]
+    whole: str
+
+
+def sources_of_notebook(text: str) -> Notebook:
+    """Return what the cells of code in a notebook hold.
 
     Raises
     ------
@@ -53,19 +63,33 @@ def cells_of_notebook(text: str) -> Iterator[Cell]:
     """
     notebook = json.loads(text)
     if not isinstance(notebook, dict):
-        return
-    language = _language(notebook)
-    for number, (path, cell) in enumerate(_cells(notebook), start=1):
-        if isinstance(cell, dict) and cell.get("cell_type") == "code":
-            key = "source" if "source" in cell else "input"
-            yield from _cell(language, _text(cell.get(key)), number, (*path, key))
+        return Notebook("", (), "")
+    sources = _sources(notebook)
+    return Notebook(_language(notebook), sources, "\n".join([source for _, _, source in sources]))
 
 
-def _cells(notebook: dict[str, Any]) -> Iterator[tuple[tuple[str | int, ...], Any]]:
-    for sheet, holder in enumerate(_list(notebook.get("worksheets"))):
-        cells = _list(holder.get("cells")) if isinstance(holder, dict) else []
-        yield from ((("worksheets", sheet, "cells", at), cell) for at, cell in enumerate(cells))
-    yield from ((("cells", at), cell) for at, cell in enumerate(_list(notebook.get("cells"))))
+def _sources(notebook: dict[str, Any]) -> list[tuple[int, tuple[str | int, ...], str]]:
+    sheets = enumerate(_list(notebook.get("worksheets")))
+    held = [(("worksheets", at, "cells"), sheet.get("cells")) for at, sheet in sheets if isinstance(sheet, dict)]
+    found, before = [], 1
+    for path, cells in (*held, (("cells",), notebook.get("cells"))):
+        for at, cell in enumerate(_list(cells)):
+            if isinstance(cell, dict) and cell.get("cell_type") == "code":
+                key = "source" if "source" in cell else "input"
+                found.append((at + before, (*path, at, key), _text(cell.get(key))))
+        before += len(_list(cells))
+    return found
+
+
+def may_hold_r(notebook: Notebook) -> bool:
+    """Whether there may be cells of R in a notebook."""
+    return notebook.language in _R or ("%%" in notebook.whole and _R_MAGIC.search(notebook.whole) is not None)
+
+
+def cells_of(notebook: Notebook) -> list[Cell]:
+    """Return the cells of a notebook whose code is Python or R."""
+    cells = (_cell(notebook.language, text, number, path) for number, path, text in notebook.sources)
+    return [each for each in cells if each is not None]
 
 
 def _language(notebook: dict[str, Any]) -> str:
@@ -84,19 +108,24 @@ def _list(value: Any) -> list[Any]:
 
 
 def _text(source: Any) -> str:
-    listed = source if isinstance(source, list) else [source]
-    return "".join(each for each in listed if isinstance(each, str))
+    if isinstance(source, str):
+        return source
+    try:
+        return "".join(source) if isinstance(source, list) else ""
+    except TypeError:  # something else stands among the lines
+        return "".join(each for each in source if isinstance(each, str))
 
 
-def _cell(language: str, text: str, number: int, path: tuple[str | int, ...]) -> Iterator[Cell]:
-    magic = _CELL_MAGIC.match(text)
-    if language in {"r", "ir"}:
-        yield Cell("r", text, number, 0, path)
-    elif magic is not None and magic[1] in _R_MAGICS:
-        yield Cell("r", " " * magic.end() + text[magic.end() :], number, 0, path)
-    elif language.startswith(("python", "ipython")) and (magic is None or magic[1] in _STILL_PYTHON):
-        speaks = any(sign in text for sign in _SIGNS)
-        yield Cell("python", _TO_NOTEBOOK.sub(r"\1pass", text) if speaks else text, number, 0, path)
+def _cell(language: str, text: str, number: int, path: tuple[str | int, ...]) -> Cell | None:
+    magic = _CELL_MAGIC.match(text) if "%%" in text else None
+    if language in _R:
+        return Cell("r", text, number, 0, path)
+    if magic is not None and magic[1] in _R_MAGICS:
+        return Cell("r", " " * magic.end() + text[magic.end() :], number, 0, path)
+    if language.startswith(("python", "ipython")) and (magic is None or magic[1] in _STILL_PYTHON):
+        speaks = "%" in text or "!" in text or "?" in text
+        return Cell("python", _TO_NOTEBOOK.sub(r"\1pass", text) if speaks else text, number, 0, path)
+    return None
 
 
 def chunks_of_markdown(text: str) -> Iterator[Cell]:

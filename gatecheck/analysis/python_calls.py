@@ -4,15 +4,14 @@ from __future__ import annotations
 
 import ast
 import re
-import warnings
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from contextlib import contextmanager
 from functools import partial
 from itertools import chain
-from typing import cast
+from typing import Any, ClassVar
 
 from gatecheck.analysis.catalogue import Known, looks, methods_that_test
-from gatecheck.analysis.flow import NOTHING, Context, Flow, Keys, Learned, Site, SiteKind, Times
+from gatecheck.analysis.flow import NOTHING, Context, Flow, Keys, Site, SiteKind, Times
 from gatecheck.analysis.pieces import Cell
 from gatecheck.analysis.python_names import (
     Names,
@@ -25,7 +24,7 @@ from gatecheck.analysis.python_names import (
     unpacks_no_p,
     written,
 )
-from gatecheck.analysis.unreadable import Unreadable
+from gatecheck.analysis.python_tree import children
 
 #: Functions and methods that call what they are given for each member of something (common usage).
 _MAPPING = frozenset({
@@ -38,53 +37,7 @@ Function = ast.FunctionDef | ast.AsyncFunctionDef
 Comprehension = ast.ListComp | ast.SetComp | ast.DictComp | ast.GeneratorExp
 
 
-def parsed(code: bytes | str) -> ast.Module:
-    """Return the syntax tree of Python code; bytes may name their encoding.
-
-    Raises
-    ------
-    Unreadable
-        It cannot be parsed.
-    """
-    try:
-        with warnings.catch_warnings():
-            warnings.simplefilter("ignore")
-            return ast.parse(code)
-    except (SyntaxError, ValueError) as error:
-        # Of a null byte some versions say the one, some the other.
-        raise Unreadable(getattr(error, "lineno", None) or 1, "is not Python as this version knows it") from None
-    except (RecursionError, MemoryError):
-        raise Unreadable(1, "is nested too deep to be parsed") from None
-
-
-def read_python(cells: Sequence[tuple[Cell, ast.Module]]) -> Flow:
-    """Read the cells of a notebook in order, or one file.
-
-    Raises
-    ------
-    Unreadable
-        The code is nested too deep to be read.
-    """
-    names = Names(tree for _, tree in cells)
-    try:
-        # The first reading finds what the functions of the file do, wherever they stand.
-        flow = _walk(cells, names, None)
-        if flow.learned.defined:
-            flow = _walk(cells, names, flow.learned)
-    except RecursionError:
-        raise Unreadable(1, "is nested too deep to be read") from None
-    flow.words |= flow.learned.defined.keys() | names.words()
-    return flow
-
-
-def _walk(cells: Sequence[tuple[Cell, ast.Module]], names: Names, learned: Learned | None) -> Flow:
-    flow = Flow(learned)
-    for cell, tree in cells:
-        _Reading(flow, names, cell).block(tree.body)
-    return flow
-
-
-class _Reading(ast.NodeVisitor):
+class Reading:
     """A walk over the statements; visiting an expression returns the results that it may hold."""
 
     def __init__(self, flow: Flow, names: Names, cell: Cell) -> None:
@@ -99,41 +52,44 @@ class _Reading(ast.NodeVisitor):
             self.visit(each)
 
     def visit(self, node: ast.AST) -> Keys:
-        """Read one node."""
-        return cast("Keys", super().visit(node))
-
-    def generic_visit(self, node: ast.AST) -> Keys:
-        """What any part holds, the whole may hold."""
-        return self._all(ast.iter_child_nodes(node))
+        """Read one node; what any part holds, the whole may hold."""
+        how = self._HOW.get(node.__class__)
+        return self._all(children(node)) if how is None else how(self, node)
 
     def _all(self, nodes: Iterable[ast.AST]) -> Keys:
         held = [found for each in nodes if (found := self.visit(each))]
         return NOTHING.union(*held) if held else NOTHING
 
-    def visit_Name(self, node: ast.Name) -> Keys:
-        if self.flow.is_function(node.id) and isinstance(node.ctx, ast.Load):
+    def _read_value(self, node: ast.Expr | ast.Await) -> Keys:
+        return self.visit(node.value)
+
+    def _read_constant(self, _: ast.Constant) -> Keys:
+        return NOTHING
+
+    def _read_name(self, node: ast.Name) -> Keys:
+        if node.id in self.flow.functions and isinstance(node.ctx, ast.Load):
             self.flow.mentioned(node.id, Times(int(self.maps), more=True))
         return self.flow.held(node.id)
 
-    def visit_Attribute(self, node: ast.Attribute) -> Keys:
+    def _read_attribute(self, node: ast.Attribute) -> Keys:
         held = self.visit(node.value)
         if node.attr in looks("python"):
             self.flow.look(held)
         return self.flow.without_p(held) if discards_p(node) else held
 
-    def visit_Subscript(self, node: ast.Subscript) -> Keys:
+    def _read_subscript(self, node: ast.Subscript) -> Keys:
         held = self.visit(node.value)
         held = self.flow.without_p(held) if discards_p(node) else held
         return held | self.visit(node.slice)
 
-    def visit_Lambda(self, node: ast.Lambda) -> Keys:
+    def _read_lambda(self, node: ast.Lambda) -> Keys:
         context = self.flow.context
         with self.flow.inside(context.loop(None, draws=draws(node)) if self.maps else context.perhaps()):
             return self.visit(node.body)
 
     # Statements that hand results on.
 
-    def visit_Assign(self, node: ast.Assign) -> Keys:
+    def _read_assign(self, node: ast.Assign) -> Keys:
         match node:
             case ast.Assign(targets=[ast.Name(id=name)], value=ast.Lambda() as function):
                 self._function(name, function.args, [ast.Return(function.body)], function)
@@ -145,16 +101,16 @@ class _Reading(ast.NodeVisitor):
             self._bind(target, held)
         return NOTHING
 
-    def visit_AnnAssign(self, node: ast.AnnAssign) -> Keys:
+    def _read_annotated(self, node: ast.AnnAssign) -> Keys:
         held = NOTHING if node.value is None else self.visit(node.value)
         self._bind(node.target, held)
         return NOTHING
 
-    def visit_AugAssign(self, node: ast.AugAssign) -> Keys:
+    def _read_augmented(self, node: ast.AugAssign) -> Keys:
         self._bind(node.target, self.visit(node.value), also=True)
         return NOTHING
 
-    def visit_NamedExpr(self, node: ast.NamedExpr) -> Keys:
+    def _read_named(self, node: ast.NamedExpr) -> Keys:
         held = self.visit(node.value)
         self._bind(node.target, held)
         return held
@@ -171,31 +127,31 @@ class _Reading(ast.NodeVisitor):
 
     # Branches and loops.
 
-    def visit_If(self, node: ast.If) -> Keys:
+    def _read_if(self, node: ast.If) -> Keys:
         self.visit(node.test)
         self._branches([node.body, node.orelse], may_pass=not node.orelse)
         return NOTHING
 
-    def visit_Try(self, node: ast.Try) -> Keys:
+    def _read_try(self, node: ast.Try) -> Keys:
         self.block(node.body)
         with self.flow.inside(self.flow.context.branch(first=False, alone=False)):
             self.block(chain.from_iterable(each.body for each in node.handlers))
         self.block([*node.orelse, *node.finalbody])
         return NOTHING
 
-    def visit_Match(self, node: ast.Match) -> Keys:
+    def _read_match(self, node: ast.Match) -> Keys:
         self.visit(node.subject)
         self._branches([case.body for case in node.cases], may_pass=True)
         return NOTHING
 
-    def visit_IfExp(self, node: ast.IfExp) -> Keys:
+    def _read_choice(self, node: ast.IfExp) -> Keys:
         self.visit(node.test)
         return self._branches([[node.body], [node.orelse]], may_pass=False)
 
     def _branches(self, bodies: Sequence[Sequence[ast.AST]], *, may_pass: bool) -> Keys:
         return self.flow.branches([partial(self._all, body) for body in bodies if body], may_pass=may_pass)
 
-    def visit_For(self, node: ast.For | ast.AsyncFor) -> Keys:
+    def _read_for(self, node: ast.For | ast.AsyncFor) -> Keys:
         self._bind(node.target, self.visit(node.iter))
         length = None if leaves(node.body) else self.names.length(node.iter)
         with self.flow.inside(self.flow.context.loop(length, draws=any(map(draws, node.body)))):
@@ -203,16 +159,14 @@ class _Reading(ast.NodeVisitor):
         self.block(node.orelse)
         return NOTHING
 
-    visit_AsyncFor = visit_For  # noqa: N815  # the name that the walk looks for
-
-    def visit_While(self, node: ast.While) -> Keys:
+    def _read_while(self, node: ast.While) -> Keys:
         with self.flow.inside(self.flow.context.loop(None, draws=any(map(draws, node.body)))):
             self.visit(node.test)
             self.block(node.body)
         self.block(node.orelse)
         return NOTHING
 
-    def visit_ListComp(self, node: Comprehension) -> Keys:
+    def _read_comprehension(self, node: Comprehension) -> Keys:
         context = self.flow.context
         for each in node.generators:
             length = None if each.ifs else self.names.length(each.iter)
@@ -223,16 +177,12 @@ class _Reading(ast.NodeVisitor):
             made = [node.key, node.value] if isinstance(node, ast.DictComp) else [node.elt]
             return self._all([*filters, *made])
 
-    visit_SetComp = visit_DictComp = visit_GeneratorExp = visit_ListComp  # noqa: N815
-
     # Functions of the file.
 
-    def visit_FunctionDef(self, node: Function) -> Keys:
+    def _read_definition(self, node: Function) -> Keys:
         self._all(node.decorator_list)
         self._function(node.name, node.args, node.body, node)
         return NOTHING
-
-    visit_AsyncFunctionDef = visit_FunctionDef  # noqa: N815
 
     def _function(self, name: str, arguments: ast.arguments, body: Sequence[ast.stmt], whole: ast.AST) -> None:
         self._all([*arguments.defaults, *filter(None, arguments.kw_defaults)])
@@ -243,32 +193,29 @@ class _Reading(ast.NodeVisitor):
         with self.flow.function(name, [each.arg for each in listed]):
             self.block(body)
 
-    def visit_Return(self, node: ast.Return | ast.Yield | ast.YieldFrom) -> Keys:
+    def _read_return(self, node: ast.Return | ast.Yield | ast.YieldFrom) -> Keys:
         held = NOTHING if node.value is None else self.visit(node.value)
         self.flow.returned(held)
         return held
 
-    visit_Yield = visit_YieldFrom = visit_Return  # noqa: N815
-
     # Calls.
 
-    def visit_Call(self, node: ast.Call) -> Keys:
+    def _read_call(self, node: ast.Call) -> Keys:
         name = dotted(node.func)
-        known = self.names.known(name)
-        if known is not None:
-            return self._of_library(node, name or "", known)
-        if self.names.declares(name):
-            return self._declare(node)
+        if name is not None:
+            if (known := self.names.known(name)) is not None:
+                return self._of_library(node, name, known)
+            if self.names.declares(name):
+                return self._declare(node)
         function = node.func
-        if isinstance(function, ast.Name) and self.flow.is_function(function.id):
-            return self.flow.called(function.id, self._arguments(node))
         if isinstance(function, ast.Attribute):
             return self._method(node, function)
-        held = self.visit(function)
-        return held | self._mapped(node, name or "")
+        if isinstance(function, ast.Name) and function.id in self.flow.functions:
+            return self.flow.called(function.id, self._arguments(node))
+        return self.visit(function) | self._mapped(node, name or "")
 
     def _method(self, node: ast.Call, function: ast.Attribute) -> Keys:
-        held = self.visit(function)
+        held = self._read_attribute(function)
         models = self.flow.of_kind(held, "model")
         if models and _FIT.fullmatch(function.attr):
             self._arguments(node)
@@ -279,22 +226,24 @@ class _Reading(ast.NodeVisitor):
         if models and function.attr in methods_that_test("python"):
             self._arguments(node)
             return self._site(node, "test", function.attr, Known("test"))
-        if (known := self.names.known_method(function.attr)) is not None:
+        if (known := self.names.methods.get(function.attr)) is not None:
             self._arguments(node)
             return self._site(node, "test", function.attr, known)
         handed = self._mapped(node, function.attr)
         if function.attr in _ADDING:
             self._bind(function.value, handed, also=True)
-        if self.flow.is_function(function.attr):
+        if function.attr in self.flow.functions:
             return held | self.flow.called(function.attr, handed)
         return held | handed
 
     def _arguments(self, node: ast.Call) -> Keys:
-        return self._all([*node.args, *node.keywords])
+        if not node.keywords:
+            return self._all(node.args)
+        return self._all([*node.args, *[each.value for each in node.keywords]])
 
     def _mapped(self, node: ast.Call, function: str) -> Keys:
         """Read arguments, among them functions that are called for each member of something."""
-        if function.rpartition(".")[2] not in _MAPPING:
+        if function not in _MAPPING:
             return self._arguments(node)
         given = [*node.args, *(each.value for each in node.keywords)]
         made = [self._handed(each) for each in given]
@@ -342,3 +291,35 @@ class _Reading(ast.NodeVisitor):
         given = next((each.value for each in node.keywords if each.arg == "id"), None)
         self.flow.declare(self._arguments(node), None if given is None else texts_of(given))
         return NOTHING
+
+    #: How the nodes of each kind are read; of others, what any part holds, the whole may hold.
+    _HOW: ClassVar[dict[type[ast.AST], Callable[[Reading, Any], Keys]]] = {
+        ast.AnnAssign: _read_annotated,
+        ast.Assign: _read_assign,
+        ast.AsyncFor: _read_for,
+        ast.AsyncFunctionDef: _read_definition,
+        ast.Attribute: _read_attribute,
+        ast.AugAssign: _read_augmented,
+        ast.Await: _read_value,
+        ast.Call: _read_call,
+        ast.Constant: _read_constant,
+        ast.DictComp: _read_comprehension,
+        ast.Expr: _read_value,
+        ast.For: _read_for,
+        ast.FunctionDef: _read_definition,
+        ast.GeneratorExp: _read_comprehension,
+        ast.If: _read_if,
+        ast.IfExp: _read_choice,
+        ast.Lambda: _read_lambda,
+        ast.ListComp: _read_comprehension,
+        ast.Match: _read_match,
+        ast.Name: _read_name,
+        ast.NamedExpr: _read_named,
+        ast.Return: _read_return,
+        ast.SetComp: _read_comprehension,
+        ast.Subscript: _read_subscript,
+        ast.Try: _read_try,
+        ast.While: _read_while,
+        ast.Yield: _read_return,
+        ast.YieldFrom: _read_return,
+    }

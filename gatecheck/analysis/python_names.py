@@ -7,8 +7,10 @@ import math
 from collections import Counter
 from collections.abc import Iterable, Sequence
 from itertools import chain
+from typing import Any
 
 from gatecheck.analysis.catalogue import Known, libraries
+from gatecheck.analysis.python_tree import nodes
 
 _DECLARE = frozenset({"gatecheck.declare", "gatecheck.declaring.declare"})
 _KEEPING_LENGTH = frozenset({"enumerate", "list", "reversed", "sorted", "tuple", "tqdm"})
@@ -22,11 +24,15 @@ _DRAWING = frozenset({
     "shuffle", "standard_normal",
 })  # fmt: skip
 _DRAWERS = frozenset({"random", "rng"})
+_NAMING = frozenset({
+    ast.Assign, ast.AsyncFor, ast.AugAssign, ast.For, ast.Import, ast.ImportFrom, ast.comprehension,
+})  # fmt: skip
+#: What gives a name something only in the role of a target.
+_ROLES = frozenset({ast.Name, ast.Subscript})
 #: What a result tells beside its p.
 _NO_P = frozenset({"correlation", "intercept", "rvalue", "slope", "statistic"})
 #: Where p stands in a result of so many members: (statistic, p), (statistic, p, df), that of a regression line.
 _PLACE_OF_P = {2: 1, 3: 1, 4: 1, 5: 3}
-_NOTED = (ast.Import, ast.ImportFrom, ast.Name, ast.Assign, ast.AugAssign, ast.Subscript, ast.Attribute)
 _LONGEST_PRODUCT = 1_000_000
 
 
@@ -39,23 +45,41 @@ def dotted(node: ast.AST) -> str | None:
     return ".".join([node.id, *reversed(parts)]) if isinstance(node, ast.Name) else None
 
 
+def naming(tree: ast.AST) -> list[ast.AST]:
+    """Return the parts of code that `Names` is made of: imports, assignments, changes and loops."""
+    every: list[Any] = nodes(tree)
+    return [
+        node
+        for node in every
+        if (kind := node.__class__) in _NAMING
+        or (kind in _ROLES and not isinstance(node.ctx, ast.Load))
+        or (kind is ast.Attribute and node.attr in _CHANGING)
+    ]
+
+
 class Names:
     """The names of a file, from all its imports and assignments, wherever they stand."""
 
-    def __init__(self, trees: Iterable[ast.AST]) -> None:
+    def __init__(self, parts: Iterable[ast.AST]) -> None:
+        """Note what `naming` found in the code, in the order of the text."""
         self._stands_for: dict[str, str] = {}
         self._stars: list[str] = []
         self._bound: Counter[str] = Counter()
         self._literals: dict[str, ast.expr] = {}
         self._changed: set[str] = set()
         self._walked_over: set[str] = set()
-        for tree in trees:
-            for node in ast.walk(tree):
-                if isinstance(node, _NOTED):
-                    self._note(node)
-                if isinstance(node, ast.For | ast.AsyncFor | ast.comprehension):
-                    parts = node.iter.args if isinstance(node.iter, ast.Call) else [node.iter]
-                    self._walked_over |= {each.id for each in parts if isinstance(each, ast.Name)}
+        for node in parts:
+            self._note(node)
+        self._found: dict[str, Known | None] = {}
+        self._resolved: dict[str, str] = {}
+        loaded = {each.partition(".")[0] for each in self._stands_for.values()}
+        #: What methods of tables of data are, where a library that is loaded has given them some.
+        self.methods = {
+            name: library.functions[name]
+            for library in libraries("python")
+            if library.prefix in loaded
+            for name in library.frame_methods
+        }
 
     def _note(self, node: ast.AST) -> None:
         match node:
@@ -63,16 +87,17 @@ class Names:
                 self._import(node)
             case ast.ImportFrom(module=str(module)):
                 self._import_from(module, node.names)
-            case ast.Name(ctx=ast.Store() | ast.Del()):
+            case ast.Name():
                 self._bound[node.id] += 1
             case ast.Assign(targets=[ast.Name(id=name)], value=value):
                 self._literals[name] = value
             case ast.AugAssign(target=ast.Name(id=name)):
                 self._changed.add(name)
-            case ast.Subscript(value=ast.Name(id=name), ctx=ast.Store() | ast.Del()):
+            case ast.Subscript(value=ast.Name(id=name)) | ast.Attribute(value=ast.Name(id=name)):
                 self._changed.add(name)
-            case ast.Attribute(value=ast.Name(id=name), attr=attribute) if attribute in _CHANGING:
-                self._changed.add(name)
+            case ast.For(iter=walked) | ast.AsyncFor(iter=walked) | ast.comprehension(iter=walked):
+                parts = walked.args if isinstance(walked, ast.Call) else [walked]
+                self._walked_over |= {each.id for each in parts if isinstance(each, ast.Name)}
             case _:
                 pass
 
@@ -90,6 +115,11 @@ class Names:
 
     def resolved(self, name: str) -> str:
         """Return the full name of what `name` stands for; itself where it is no import."""
+        if name not in self._resolved:
+            self._resolved[name] = self._resolve(name)
+        return self._resolved[name]
+
+    def _resolve(self, name: str) -> str:
         head, dot, rest = name.partition(".")
         # An alias may stand for another one: `ttest = stats.ttest_ind`.
         whole = self._stands_for.get(head)
@@ -109,19 +139,16 @@ class Names:
         """Return what a dotted name is among the known functions."""
         if name is None:
             return None
+        if name not in self._found:
+            self._found[name] = self._known(name)
+        return self._found[name]
+
+    def _known(self, name: str) -> Known | None:
         whole = self.resolved(name)
         found = _known(whole)
         if found is None and "." not in name and whole == name:
             found = next((one for module in self._stars if (one := _known(f"{module}.{name}"))), None)
         return found
-
-    def known_method(self, name: str) -> Known | None:
-        """Return what a method of a table of data is, where a library that is loaded has given it one."""
-        loaded = {each.partition(".")[0] for each in self._stands_for.values()}
-        for library in libraries("python"):
-            if name in library.frame_methods and library.prefix in loaded:
-                return library.functions[name]
-        return None
 
     def declares(self, name: str | None) -> bool:
         """Whether a dotted name is the function that declares results."""
@@ -186,7 +213,7 @@ def _known(whole: str) -> Known | None:
 
 def draws(node: ast.AST) -> bool:
     """Whether random numbers are drawn somewhere inside."""
-    return any(isinstance(each, ast.Call) and _draws(each.func) for each in ast.walk(node))
+    return any(isinstance(each, ast.Call) and _draws(each.func) for each in nodes(node))
 
 
 def _draws(function: ast.expr) -> bool:
@@ -196,15 +223,13 @@ def _draws(function: ast.expr) -> bool:
     return last in _DRAWING or (len(parts) > 1 and not _DRAWERS.isdisjoint(parts[:-1]) and last != "default_rng")
 
 
-def discards_p(node: ast.expr) -> bool:
+def discards_p(node: ast.Attribute | ast.Subscript) -> bool:
     """Whether an expression takes no p from the result in it: `pearsonr(x, y)[0]`, or its statistic."""
-    match node:
-        case ast.Subscript(value=ast.Call(), slice=ast.Constant(value=0)):
-            return True
-        case ast.Attribute(value=ast.Call(), attr=attribute):
-            return attribute in _NO_P
-        case _:
-            return False
+    if not isinstance(node.value, ast.Call):
+        return False
+    if isinstance(node, ast.Attribute):
+        return node.attr in _NO_P
+    return isinstance(node.slice, ast.Constant) and node.slice.value == 0
 
 
 def unpacks_no_p(target: ast.expr) -> bool:
@@ -218,7 +243,7 @@ def unpacks_no_p(target: ast.expr) -> bool:
 
 def leaves(body: Sequence[ast.stmt]) -> bool:
     """Whether a loop may end early, or pass over a round."""
-    inside = chain.from_iterable(map(ast.walk, body))
+    inside = chain.from_iterable(map(nodes, body))
     return any(isinstance(each, ast.Break | ast.Continue | ast.Return | ast.Raise) for each in inside)
 
 

@@ -186,7 +186,7 @@ class _Reading:
             return NOTHING.union(*(self.statement(each) for each in split(node.items, ",")))
         if node.kind != "name":
             return NOTHING
-        if self.flow.is_function(node.text):
+        if node.text in self.flow.functions:
             self.flow.mentioned(node.text, Times(int(self.maps), more=True))
         return self.flow.held(node.text)
 
@@ -199,7 +199,7 @@ class _Reading:
             return piped | self._arguments(arguments)
         package = items[at - 2] if at > 1 and is_operator(items[at - 1], "::", ":::") else None
         known = self.names.known(named.text, package.text if isinstance(package, Token) else None)
-        if known is not None and not self.flow.is_function(named.text):
+        if known is not None and named.text not in self.flow.functions:
             return self._of_library(named, arguments, known, piped)
         if named.text == "replicate":
             with self.flow.inside(self.flow.context.loop(None, draws=True)):
@@ -215,7 +215,7 @@ class _Reading:
             self.flow.declare(held, _texts(arguments))
         elif name == "return":
             self.flow.returned(held)
-        elif self.flow.is_function(name):
+        elif name in self.flow.functions:
             return self.flow.called(name, held)
         # What a function makes of a fit, such as its residuals, is the fit no more.
         return held if name in _HANDING_ON else held - self.flow.of_kind(held, "fit")

@@ -79,6 +79,9 @@ def test_a_notebook_of_r_is_read_as_r(tmp_path: Path, metadata: dict[str, dict[s
         (json.dumps({"cells": "scipy"}), []),
         (json.dumps(["scipy"]), []),
         (notebook("import scipy", "a, b"), []),
+        (notebook("!pip install scipy", "ttest_ind(a"), []),
+        (notebook("%%Rscript", "%%Rust", "wilcoxon(a)"), []),
+        (notebook("%%r", "%%R\nt.test(a)"), ["2: t.test 2 1"]),
     ],
 )
 def test_notebooks_of_any_shape_are_read(tmp_path: Path, content: str, found: list[str]) -> None:

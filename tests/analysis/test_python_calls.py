@@ -11,9 +11,12 @@ does not import what it calls). Of another 100 drawn afterwards, 61 were told to
 from __future__ import annotations
 
 from pathlib import Path
+from unittest import mock
 
 import pytest
-from analysis.reading import file_of, told
+from analysis.reading import file_of, notebook, told
+
+from gatecheck.analysis import read_code
 
 
 def of(root: Path, code: str) -> list[str]:
@@ -409,3 +412,25 @@ def test_any_encoding_that_python_reads_is_read(tmp_path: Path) -> None:
     assert told(file_of(tmp_path, "b.py", b"\xef\xbb\xbffrom scipy import stats\nstats.wilcoxon('\\d')\n")) == [
         "stats.wilcoxon 2 1"
     ]
+
+
+def test_names_in_other_letters_for_the_same_are_found(tmp_path: Path) -> None:
+    """Python takes the wide letters of Unicode for the plain ones (PEP 3131: NFKC)."""
+    code = "from scipy.stats import \uff54test_ind\n\uff54test_ind(a, b)\n"
+
+    assert of(tmp_path, code) == ["ttest_ind 2 1"]
+    assert told(file_of(tmp_path, "a.ipynb", notebook(code))) == ["ttest_ind 2 1"]
+
+
+def test_a_file_that_names_no_test_is_not_parsed(tmp_path: Path) -> None:
+    (tmp_path / "a.py").write_text("import scipy\nscipy.\u00e4(1)\n" * 1_000, encoding="utf-8")
+
+    with mock.patch("gatecheck.analysis.files.parsed", side_effect=AssertionError) as parse:
+        assert read_code(tmp_path, ("**",), ()).files == ()
+        assert parse.call_count == 0
+
+
+def test_what_awaits_a_test_makes_it(tmp_path: Path) -> None:
+    code = "from scipy import stats\nasync def f():\n    return await stats.wilcoxon(a)\nf()\n"
+
+    assert of(tmp_path, code) == ["stats.wilcoxon 3 1"]
