@@ -27,7 +27,8 @@ _FOLDER = Path(__file__).parent
 _MOST_UNFOLDED = 200
 #: Further records are drawn by the page's own program, when they are opened or where they are open.
 _MOST_DRAWN = 20
-#: Folded records are laid out by so many at once, and those far from what is seen not at all.
+#: Of more records than these the ones far from what is seen are not laid out, the folded ones by so many at once.
+_ALL_LAID_OUT = 200
 _TOGETHER = 50
 
 
@@ -46,10 +47,11 @@ def page(verdict: Verdict) -> str:
     sections = [section for section in _sections(verdict) if section.judged]
     shown = [one for section in sections for one in section.judged]
     shared = Shared(shown)
+    many = ' class="many"' if len(shown) > _ALL_LAID_OUT else ""
     return (
         f'<!DOCTYPE html>\n<html lang="en">\n{_head(verdict)}<body>\n'
         f'<svg class="defs" aria-hidden="true">{shared.axes.drawn()}</svg>\n'
-        f"<header>\n{opening(verdict)}</header>\n{_contents(sections)}<main>\n"
+        f"<header>\n{opening(verdict)}</header>\n{_contents(sections)}<main{many}>\n"
         f"{told(verdict)}{reading() if shown else ''}{tools(shown)}{common(shared.common)}"
         f"{_claims(sections, shared)}{index(shown)}{noted(shared.notes)}{closing(verdict)}</main>\n"
         f'<script type="application/json" id="numbers">{embedded(shown, shared.axes, _MOST_DRAWN)}</script>\n'
