@@ -8,7 +8,7 @@ import numpy as np
 
 from gatecheck import weigh
 from gatecheck.columns import CHI2, NO_STATISTIC, Booleans, Columns, F, Floats, Integers, R, T, Z
-from gatecheck.default_priors import Weighed, log_bf_default
+from gatecheck.default_priors import Weighed, log_bf_default, why_no_default_prior
 from gatecheck.model.struct import struct
 from gatecheck.policy import AlternativeName, EvidenceSettings
 from gatecheck.together import Together, log_bf_together, pool_columns
@@ -264,15 +264,35 @@ def why_unweighed(columns: Columns, evidence: Evidence, row: int, settings: Evid
         )
     if not np.isfinite(evidence.statistics.value[row]) and evidence.statistics.kind[row] >= 0:
         return "the statistic cannot be told from what the record gives", "give test.value with test.df"
-    return _why_no_design(columns, row, settings)
+    names = settings.alternative
+    if "design-effect" in names:
+        return why_not_under(columns, row, "design-effect")
+    if evidence.statistics.kind[row] < 0:
+        return _why_not_at_all(" or ".join(names))
+    return why_not_under(columns, row, names[-1])
 
 
-def _why_no_design(columns: Columns, row: int, settings: EvidenceSettings) -> tuple[str, str]:
-    wanted = " or ".join(settings.alternative)
-    if "design-effect" in settings.alternative and np.isnan(columns.effect[row]):
+def why_not_under(columns: Columns, row: int, name: AlternativeName) -> tuple[str, str]:
+    """Say why a result that can be weighed cannot be under this alternative, and what to do about it."""
+    if name == "default-prior":
+        return why_no_default_prior(columns, row)
+    if name == "design-effect":
+        return _why_no_design(columns, row)
+    return _why_not_at_all(name)
+
+
+def _why_not_at_all(names: str) -> tuple[str, str]:
+    return f"the record does not allow the alternative {names}", "give test.p, or the statistic with its df"
+
+
+def _why_no_design(columns: Columns, row: int) -> tuple[str, str]:
+    effect, raw, test = columns.effect[row], columns.effect_is_raw[row], columns.test
+    if np.isnan(effect):
         advice = "give alternative: {effect, scale}, as it was planned before the data"
         return "the record does not say which effect the study was designed to find", advice
-    if "design-effect" in settings.alternative:
-        advice = "give sample.groups with their n, or the effect on the raw scale with estimate.standard_error"
-        return "the planned effect cannot be set against this statistic", advice
-    return f"the record does not allow the alternative {wanted}", "give test.p, or the statistic with its df"
+    cannot = "the planned effect cannot be set against this statistic"
+    if test.is_one_of(R)[row] and abs(effect) >= 1:
+        return cannot, f"the planned correlation is {effect:g}: give one between -1 and 1"
+    if raw and test.is_one_of(CHI2, F)[row]:
+        return cannot, "give the planned effect on the standardised scale: f of F, w of chi-squared"
+    return cannot, "give sample.groups with their n, or the effect on the raw scale with estimate.standard_error"

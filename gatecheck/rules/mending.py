@@ -8,11 +8,14 @@ import numpy as np
 
 from gatecheck import weigh
 from gatecheck.columns import Booleans, Floats
+from gatecheck.default_priors import Weighed, log_bf_default
 from gatecheck.model.shown import percent
 from gatecheck.rules.rule import Judgement, Table
 from gatecheck.rules.words import tell_n, tell_wording
 
-_LARGEST_TOLD = 1e8
+#: A study so many times as large is no advice to anybody, and an effect so small is none that was found.
+_MOST_TIMES = 100.0
+_MOST_PER_GROUP = 1e6
 
 
 def would_do(table: Table, short: Booleans, target_log_lr: Floats) -> Floats:
@@ -21,6 +24,31 @@ def would_do(table: Table, short: Booleans, target_log_lr: Floats) -> Floats:
     Computed where a row is `short`; nan elsewhere, where it cannot be told or no larger sample helps, and where a
     row is judged on several records, of which no single size can be told.
     """
+    by_default = np.array([name == "default-prior" for name in table.evidence.alternative], np.bool_)
+    n = _at_its_own_effect(table, short & ~by_default, target_log_lr)
+    if (short & by_default).any():
+        n = np.where(by_default, _by_default_prior(table, short & by_default, target_log_lr), n)
+    times = n * table.evidence.design.arms / table.evidence.design.total
+    return np.where((times > 1) & (times <= _MOST_TIMES), n, np.nan)
+
+
+def _by_default_prior(table: Table, short: Booleans, target_log_lr: Floats) -> Floats:
+    """The number per group at which the effect observed would be so much evidence over the default prior."""
+    evidence, design = table.evidence, table.evidence.design
+    scales = np.array([each.evidence.scale for each in table.applied], np.float64)
+    statistics = evidence.statistics
+    weighed = Weighed(statistics.value, statistics.one_sided, design.total, design.two_samples, design.one_sample)
+
+    def serves(n: Floats) -> Booleans:
+        times = n * design.arms / design.total
+        enough: Booleans = log_bf_default(table.columns, weighed, scales, times) >= target_log_lr
+        return enough & short & ~evidence.on_all
+
+    # No fewer than there are: what falls short with all of them does not stand with less.
+    return weigh.least_that_serves(np.ceil(design.total / design.arms), serves, _MOST_PER_GROUP)
+
+
+def _at_its_own_effect(table: Table, short: Booleans, target_log_lr: Floats) -> Floats:
     statistics, design = table.evidence.weighed, table.evidence.design
     by_plan = np.array([name == "design-effect" for name in table.evidence.alternative], np.bool_)
     by_bound = np.array([name == "bound" for name in table.evidence.alternative], np.bool_)
@@ -37,7 +65,7 @@ def would_do(table: Table, short: Booleans, target_log_lr: Floats) -> Floats:
         target_log_lr[rows],
         one_sided=statistics.one_sided[rows],
     )
-    return np.where(n * design.arms > design.total, n, np.nan)
+    return n
 
 
 def tell_mending(table: Table, row: int, target_log_lr: float, judgement: Judgement) -> str:
@@ -62,7 +90,7 @@ def _what_would_do(table: Table, row: int, target_log_lr: float, judgement: Judg
         p = math.exp(float(weigh.log_p_for_bound(target_log_lr)))
         return f"A p-value of {_rounded_down(p)} or less would do"
     n = math.nan if judgement.would_do is None else float(judgement.would_do[row])
-    if not n < _LARGEST_TOLD:
+    if math.isnan(n):
         return ""
     sample = table.record(row).sample
     told = tell_n(table.evidence, row, n, sample.unit if sample else None)

@@ -18,7 +18,7 @@ from gatecheck.weigh.risk import (
     log_p_for_bound,
     prior_needed,
 )
-from gatecheck.weigh.sample_size import n_to_stand
+from gatecheck.weigh.sample_size import least_that_serves, n_to_stand
 from gatecheck.weigh.t import log_lr_t, observed_t, r_from_t, t_from_r
 from gatecheck.weigh.tails import log_p_chi2, log_p_f, log_p_t, log_p_z
 from gatecheck.weigh.z import log_lr_z, observed_z
@@ -29,6 +29,7 @@ __all__ = [
     "chi2_from_log_p",
     "f_from_log_p",
     "false_positive_risk",
+    "least_that_serves",
     "log_false_positive_risk",
     "log_lr_bound",
     "log_lr_chi2",

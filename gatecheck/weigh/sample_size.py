@@ -9,6 +9,8 @@ import numpy as np
 from gatecheck.weigh.mixed import Statistic, observed_effect
 
 if TYPE_CHECKING:
+    from collections.abc import Callable
+
     from numpy.typing import ArrayLike
 
     from gatecheck.weigh.arrays import BoolArray, FloatArray
@@ -50,24 +52,30 @@ def n_to_stand(  # noqa: PLR0913, PLR0917  # one argument a column of the result
     """
     given = (kind, value, df1, df2, n_total, groups, target_log_lr, one_sided)
     columns = np.broadcast_arrays(*(np.asarray(column, dtype=np.float64) for column in given))
+    flat = [column.ravel() for column in columns]
     with np.errstate(all="ignore"):
-        least = _bisect(*(column.ravel() for column in columns))
+        least = least_that_serves(_fewest_per_group(*flat[:6]), lambda n: _reaches(n, *flat))
     return least.reshape(columns[0].shape)
 
 
-def _bisect(*columns: FloatArray) -> FloatArray:
-    low = _fewest_per_group(*columns[:6])
-    high = np.full_like(low, MOST_PER_GROUP)
-    at_once = _reaches(low, *columns)
-    possible = at_once | _reaches(high, *columns)
+def least_that_serves(
+    fewest: FloatArray, serves: Callable[[FloatArray], BoolArray], most: float = MOST_PER_GROUP
+) -> FloatArray:
+    """Least whole number from ``fewest`` to ``most`` that ``serves`` row by row; nan where ``most`` does not.
+
+    What serves is taken to serve from some number on.
+    """
+    low, high = fewest.copy(), np.full_like(fewest, most)
+    at_once = serves(low)
+    possible = at_once | serves(high)
     # The lower end falls short and the upper end serves, until nothing whole lies between them.
-    open_rows = np.flatnonzero(possible & ~at_once)
-    while open_rows.size:
-        middle = np.floor((low[open_rows] + high[open_rows]) / 2)
-        serves = _reaches(middle, *(column[open_rows] for column in columns))
-        high[open_rows[serves]] = middle[serves]
-        low[open_rows[~serves]] = middle[~serves]
-        open_rows = open_rows[high[open_rows] - low[open_rows] > 1]
+    open_rows = possible & ~at_once
+    while open_rows.any():
+        middle = np.floor((low + high) / 2)
+        enough = serves(middle)
+        high = np.where(open_rows & enough, middle, high)
+        low = np.where(open_rows & ~enough, middle, low)
+        open_rows &= high - low > 1
     return np.where(at_once, low, np.where(possible, high, np.nan))
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import re
 from pathlib import Path
 from typing import Any
 
@@ -162,3 +163,56 @@ def test_a_record_without_a_test_has_no_default_prior(tmp_path: Path) -> None:
     answer = judge(tmp_path, made(test=..., sample=two(18)), policy=DEFAULT)
 
     assert answer.claim()["evidence"]["alternative"] == "none"
+
+
+@pytest.mark.parametrize(
+    ("test", "sample"),
+    [
+        ({"name": "two-sample t", "statistic": "t", "value": 3.1, "df": 50}, two(26)),
+        ({"name": "paired t", "statistic": "t", "value": 2.5, "df": 19}, {"n": 20}),
+        ({"name": "correlation", "statistic": "r", "value": 0.3, "df": 58}, {"n": 60}),
+        ({"name": "Wald", "statistic": "z", "value": 2.3}, {"n": 120}),
+    ],
+)
+def test_the_number_that_would_do_does_under_the_same_prior(
+    tmp_path: Path, test: dict[str, Any], sample: Document
+) -> None:
+    """A record of so many units with the effect as it was stands, and one of a unit less in each group does not."""
+    policy = changed(DEFAULT, evidence__prior=0.3)
+    arms = len(sample.get("groups", ())) or 1
+    (tmp_path / "short").mkdir()
+    answer = judge(tmp_path / "short", made(test=test, sample=sample), policy=policy)
+    told = re.search(r"this large, ([\d,]+) ", answer.rule("false-positive-risk")["remedy"])
+    assert told is not None
+    n = int(told[1].replace(",", ""))
+
+    verdicts = []
+    for per_group in (n - 1, n):
+        folder = tmp_path / str(per_group)
+        folder.mkdir()
+        times = per_group * arms / sample["n"]
+        grown = dict(test)
+        if test["statistic"] != "r":
+            grown["value"] = test["value"] * math.sqrt(times)
+        if "df" in test:
+            grown["df"] = per_group * arms - (sample["n"] - test["df"])
+        units = two(per_group) if arms > 1 else {"n": per_group}
+        verdicts.append(judge(folder, made(test=grown, sample=units), policy=policy).claim()["verdict"])
+
+    assert verdicts == ["falls-short", "stands"]
+
+
+def test_an_effect_next_to_none_gets_no_number(tmp_path: Path) -> None:
+    record = made(test={"name": "two-sample t", "statistic": "t", "value": 0.01, "df": 50}, sample=two(26))
+
+    assert "would do" not in judge(tmp_path, record, policy=DEFAULT).rule("false-positive-risk")["remedy"]
+
+
+def test_f_between_two_groups_weighs_as_the_t_that_it_is_the_square_of(tmp_path: Path) -> None:
+    groups: Document = {"n": 50, "groups": [{"name": "a", "n": 20}, {"name": "b", "n": 30}]}
+    (tmp_path / "f").mkdir()
+    (tmp_path / "t").mkdir()
+    f = made(test={"name": "one-way ANOVA", "statistic": "F", "value": 9.61, "df": [1, 48]}, sample=groups)
+    t = made(test={"name": "two-sample t", "statistic": "t", "value": 3.1, "df": 48}, sample=groups)
+
+    assert log_bf(tmp_path / "f", f) == pytest.approx(log_bf(tmp_path / "t", t), rel=1e-12)

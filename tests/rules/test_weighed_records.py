@@ -221,6 +221,24 @@ def test_the_first_alternative_that_the_record_allows_is_taken(tmp_path: Path) -
             "Give sample.groups with their n, or the effect on the raw scale with estimate.standard_error.",
         ),
         (
+            {
+                "test": {"name": "r", "statistic": "r", "value": 0.4, "df": 34},
+                "alternative": {"effect": 1.2, "scale": "standardised"},
+            },
+            DESIGN,
+            "the planned effect cannot be set against this statistic",
+            "The planned correlation is 1.2: give one between -1 and 1.",
+        ),
+        (
+            {
+                "test": {"name": "F", "statistic": "F", "value": 4.0, "df": [2, 33]},
+                "alternative": {"effect": 1.2, "scale": "raw"},
+            },
+            DESIGN,
+            "the planned effect cannot be set against this statistic",
+            "Give the planned effect on the standardised scale: f of F, w of chi-squared.",
+        ),
+        (
             {"test": {"name": "U", "p": ">0.05"}},
             POLICY,
             "the record does not allow the alternative observed-effect",
