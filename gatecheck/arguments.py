@@ -70,7 +70,8 @@ def _add_folder(parser: argparse.ArgumentParser) -> None:
 
 def _add_policy(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--policy", metavar="FILE", help="policy file (default: gatecheck.yaml in DIR)")
-    parser.add_argument("--base", metavar="REV", help="judge as a pull request into REV, whose policy counts")
+    what = "judge as a pull request into REV, whose policy counts"
+    parser.add_argument("--base", metavar="REV", type=_revision, help=what)
 
 
 def _add_weigh(parser: argparse.ArgumentParser) -> None:
@@ -79,7 +80,7 @@ def _add_weigh(parser: argparse.ArgumentParser) -> None:
     parser.add_argument(
         "--only-changed",
         action="store_true",
-        help="judge all, but let only claims that are new or changed since REV decide the exit status",
+        help="judge all, but let only claims decide that are new or changed since REV, or rest on what changed",
     )
     parser.add_argument(
         "--write",
@@ -121,6 +122,12 @@ def _add_design(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--looks", type=_looks, default=1, help="number of planned looks")
     parser.add_argument("--boundary", choices=BOUNDARIES, default=BOUNDARIES[0], help="boundary of the looks")
     _add_folder(parser)
+
+
+def _revision(text: str) -> str:
+    if not text.strip():
+        raise argparse.ArgumentTypeError("it names no revision; leave the option out, or name one")
+    return text
 
 
 def _share(text: str) -> float:

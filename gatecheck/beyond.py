@@ -21,17 +21,21 @@ Rows = tuple[tuple[Judged, ...], tuple[Problem, ...]]
 
 @struct
 class Tree:
-    """The tree that is judged by a policy: its records, at the base too where only changes count."""
+    """The tree that is judged by a policy: its records, and those at `base` where only changes since then count.
+
+    `gained` are the files that the base of a request has added since the request departed from it.
+    """
 
     root: Path
     policy: Policy
     found: Sequence[Found]
     base: str | None = None
     at_base: Sequence[Found] = ()
+    gained: frozenset[str] = frozenset()
 
 
 def judge_beyond_records(tree: Tree, facts: Facts, table: Table, records: Sequence[Judged]) -> Rows:
-    """Return a row for each plan, line of prose and file of code that falls short, and what cannot be read.
+    """Return a row for each line of prose and file of code that falls short, and what cannot be read.
 
     Raises
     ------
@@ -40,7 +44,7 @@ def judge_beyond_records(tree: Tree, facts: Facts, table: Table, records: Sequen
     """
     prose, problems = _prose(tree, records)
     sentences = _sentences(tree, table)
-    return (*_plans(tree, facts), *merged((*prose, *sentences)), *_code(tree, facts.code)), problems
+    return (*merged((*prose, *sentences)), *_code(tree, facts.code)), problems
 
 
 def merged(rows: Sequence[Judged]) -> tuple[Judged, ...]:
@@ -66,14 +70,17 @@ def _both(first: Judged, second: Judged) -> Judged:
     return replace(first, findings=findings, counts_now=first.counts_now or second.counts_now)
 
 
-def _plans(tree: Tree, facts: Facts) -> tuple[Judged, ...]:
+def judge_plans(tree: Tree, facts: Facts) -> tuple[Judged, ...]:
+    """Return a row for each plan of which something is not reported."""
     settings = tree.policy.in_general.rules.get(_PLANS)
     if settings is None:
         return ()
     from gatecheck.rules import all_promised_reported as rule  # noqa: PLC0415  # few policies ask for it
 
+    plans = [one for one in facts.plans if one.path not in tree.gained]
+
     def judged(found: Sequence[Found]) -> tuple[Judged, ...]:
-        return rule.judge_plans(facts.plans, [one.record for one in found], cast("rule.Settings", settings))
+        return rule.judge_plans(plans, [one.record for one in found], cast("rule.Settings", settings))
 
     rows = judged(tree.found)
     return rows if tree.base is None else counting_new(rows, judged(tree.at_base))

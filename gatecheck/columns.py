@@ -12,7 +12,7 @@ import numpy as np
 from gatecheck.model.found import Found
 from gatecheck.model.numbers import Reported
 from gatecheck.model.plan import Hypothesis
-from gatecheck.model.record import Estimate, Sample, Test
+from gatecheck.model.record import Estimate, Record, Sample, Test
 from gatecheck.model.struct import struct
 
 # What numpy.typing calls NDArray; that module costs more start-up time than all of this one.
@@ -102,7 +102,8 @@ class Samples:
 class Columns:
     """Records as arrays of shape (n,), one row a record, in the order of `found`.
 
-    `own_prior` is that of the record, or of its plan where it is `prior_from_plan`.
+    `own_prior` is that of the record, as the base has it where it is `prior_at_base`, or of its plan where it is
+    `prior_from_plan`; `prior_basis` is what a record says that its prior rests on, and empty where it sets none.
     """
 
     found: tuple[Found, ...]
@@ -112,6 +113,8 @@ class Columns:
     effect: Floats
     effect_is_raw: Booleans
     own_prior: Floats
+    prior_basis: tuple[str, ...]
+    prior_at_base: Booleans
     prior_from_plan: Booleans
     claims: Booleans
     harm: Booleans
@@ -131,7 +134,9 @@ def columns_of(found: Sequence[Found]) -> Columns:
         sample=_samples([record.sample or _EMPTY_SAMPLE for record in records]),
         effect=_floats([_NAN if r.alternative is None else r.alternative.effect for r in records]),
         effect_is_raw=_booleans([r.alternative is not None and r.alternative.scale == "raw" for r in records]),
-        own_prior=_floats([_NAN if r.prior is None else r.prior.probability for r in records]),
+        own_prior=_priors(records),
+        prior_basis=_bases(records),
+        prior_at_base=np.zeros(len(records), np.bool_),
         prior_from_plan=np.zeros(len(records), np.bool_),
         claims=_booleans([r.claim is not None for r in records]),
         harm=_booleans([r.harm for r in records]),
@@ -142,9 +147,16 @@ def columns_of(found: Sequence[Found]) -> Columns:
     )
 
 
-def with_own_priors(columns: Columns, priors: Sequence[float | None]) -> Columns:
-    """Return `columns` with these priors in place of the records' own; `None` where a record has none."""
-    return replace(columns, own_prior=_floats([_NAN if prior is None else prior for prior in priors]))
+def with_trusted_priors(columns: Columns, trusted: Sequence[Record | None]) -> Columns:
+    """Return `columns` with the priors that these records set, or do not, in place of the own ones of the rows.
+
+    Where there is `None`, a row keeps its own.
+    """
+    records = [one.record if other is None else other for one, other in zip(columns.found, trusted, strict=True)]
+    priors, bases = _priors(records), _bases(records)
+    other = ~np.isclose(priors, columns.own_prior, rtol=0, atol=0, equal_nan=True)
+    other |= _booleans([now != before for now, before in zip(columns.prior_basis, bases, strict=True)])
+    return replace(columns, own_prior=priors, prior_basis=bases, prior_at_base=other)
 
 
 def with_promised(columns: Columns, promised: Sequence[Hypothesis | None]) -> Columns:
@@ -161,6 +173,14 @@ def with_promised(columns: Columns, promised: Sequence[Hypothesis | None]) -> Co
         effect=np.where(lacks_effect, planned, columns.effect),
         effect_is_raw=np.where(lacks_effect, raw, columns.effect_is_raw),
     )
+
+
+def _priors(records: Sequence[Record]) -> Floats:
+    return _floats([_NAN if each.prior is None else each.prior.probability for each in records])
+
+
+def _bases(records: Sequence[Record]) -> tuple[str, ...]:
+    return tuple("" if each.prior is None else each.prior.basis for each in records)
 
 
 def _tests(tests: Sequence[Test]) -> Tests:

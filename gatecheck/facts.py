@@ -5,7 +5,8 @@ They are looked up only where a rule asks for them: most trees have neither plan
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+import functools
+from collections.abc import Callable, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, cast
 
@@ -20,7 +21,10 @@ from gatecheck.policy import Applied, Policy
 
 if TYPE_CHECKING:
     from gatecheck.compare.tests_recorded import Behind
-    from gatecheck.rules import all_tests_recorded
+    from gatecheck.history.walk import History
+    from gatecheck.rules import all_promised_reported, all_tests_recorded
+
+    _History = Callable[[], History | None]
 
 _PLANS, _CODE, _FRESH, _LOOKS = "all-promised-reported", "all-tests-recorded", "fresh", "looks"
 
@@ -59,8 +63,9 @@ def look_up(asked: Asked, found: Sequence[Found], applied: Sequence[Applied]) ->
     CannotJudge
         Git fails.
     """
-    promises, problems = _promises(asked, found)
-    plans, unread = _plans(asked, promises)
+    history = functools.cache(functools.partial(_history, asked))
+    promises, problems = _promises(asked, found, history)
+    plans, unread = _plans(asked, promises, history)
     code, behind = _code(asked, found)
     return Facts(
         promises=promises,
@@ -74,22 +79,33 @@ def look_up(asked: Asked, found: Sequence[Found], applied: Sequence[Applied]) ->
     )
 
 
-def _promises(asked: Asked, found: Sequence[Found]) -> tuple[tuple[Promise | None, ...], tuple[Problem, ...]]:
+def _history(asked: Asked) -> History | None:
+    """The first-parent line of the base, or of what is checked out; none in a folder without git."""
+    from gatecheck.history.walk import has_history, history_of  # noqa: PLC0415  # most trees name no plan
+
+    return history_of(asked.root, asked.base or "HEAD") if has_history(asked.root) else None
+
+
+def _promises(
+    asked: Asked, found: Sequence[Found], history: _History
+) -> tuple[tuple[Promise | None, ...], tuple[Problem, ...]]:
     if all(one.record.plan is None for one in found):
         return (), ()
-    from gatecheck.history.walk import has_history, history_of  # noqa: PLC0415  # most trees name no plan
-    from gatecheck.plans.promise import promises  # noqa: PLC0415
+    from gatecheck.plans.promise import promises  # noqa: PLC0415  # most trees name no plan
 
-    history = history_of(asked.root, asked.base or "HEAD") if has_history(asked.root) else None
-    made = promises(asked.root, found, history, asked.policy.document.plans)
+    globs, settings = asked.policy.document.scan, asked.policy.document.plans
+    made = promises(asked.root, found, history(), settings, include=globs.include, exclude=globs.exclude)
     return made.promises, made.problems
 
 
-def _plans(asked: Asked, promises: Sequence[Promise | None]) -> tuple[tuple[PlanInTree, ...], tuple[Problem, ...]]:
-    """The plans whose promises must be reported: as they were frozen, else as the base has them, else the tree."""
+def _plans(
+    asked: Asked, promises: Sequence[Promise | None], history: _History
+) -> tuple[tuple[PlanInTree, ...], tuple[Problem, ...]]:
+    """The plans whose promises must be reported: as they stood for a result, else as the base or tree has them."""
     if _PLANS not in asked.policy.in_general.rules:
         return (), ()
-    from gatecheck.plans.reading import plans_in_tree  # noqa: PLC0415  # few policies ask for it
+    from gatecheck.plans.ever import promised_ever  # noqa: PLC0415  # few policies ask for it
+    from gatecheck.plans.reading import plans_in_tree  # noqa: PLC0415
 
     include = asked.policy.document.plans.include
     here, problems = plans_in_tree(asked.root, include)
@@ -98,10 +114,11 @@ def _plans(asked: Asked, promises: Sequence[Promise | None]) -> tuple[tuple[Plan
         there, problems_there = plans_in_tree(asked.root, include, asked.base)
         by_path |= {one.path: one for one in there}
         problems = (*problems, *problems_there)
-    for one in promises:
-        if one is not None and one.plan is not None and one.file in by_path:
-            by_path[one.file] = PlanInTree(one.file, by_path[one.file].line, one.plan, one.digest)
-    return tuple(by_path[path] for path in sorted(by_path)), problems
+    named = [one for one in promises if one is not None]
+    ever = promised_ever(asked.root, history(), asked.policy.document.plans, list(by_path.values()), named)
+    settings = cast("all_promised_reported.Settings", asked.policy.in_general.rules[_PLANS])
+    due = settings.release == "strict" and settings.enforce == "block"
+    return ever.plans, (*problems, *(ever.unknown if due else ()))
 
 
 def _digests(plans: Sequence[PlanInTree], promises: Sequence[Promise | None]) -> tuple[tuple[str, str], ...]:

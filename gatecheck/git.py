@@ -1,4 +1,4 @@
-"""The one module that runs git: what a folder holds, in the work tree or at a revision. It never fetches."""
+"""What git knows of a folder: what it holds, in the work tree or at a revision. It never fetches."""
 
 from __future__ import annotations
 
@@ -6,9 +6,6 @@ import contextlib
 import itertools
 import os
 import re
-import shlex
-import subprocess
-import tempfile
 import threading
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
@@ -17,42 +14,20 @@ from typing import IO, Literal, cast
 
 from gatecheck.errors import CannotJudge
 from gatecheck.errors import safe as safe  # noqa: PLC0414  # what git says is cleaned by it, here and elsewhere
+from gatecheck.git_process import NotInstalledError, start
+from gatecheck.git_process import checked as checked  # noqa: PLC0414  # others ask git by these three
+from gatecheck.git_process import pieces as pieces  # noqa: PLC0414
+from gatecheck.git_process import run as run  # noqa: PLC0414
 
 Kind = Literal["file", "link", "submodule", "unmerged", "folder"]
 
 _KINDS: dict[str, Kind] = {"120000": "link", "160000": "submodule", "040000": "folder"}
-_SETTINGS = {
-    "LC_ALL": "C",
-    "GIT_OPTIONAL_LOCKS": "0",
-    "GIT_TERMINAL_PROMPT": "0",
-    "GIT_NO_LAZY_FETCH": "1",
-    "GIT_ALLOW_PROTOCOL": "none",  # versions that do not know GIT_NO_LAZY_FETCH fail here instead of fetching
-    "GIT_NO_REPLACE_OBJECTS": "1",
-    "GIT_GRAFT_FILE": f"{os.devnull}/none",  # as replaced objects, invented parents would tell another history
-}
-#: A hook sets these for its own repository, which need not be the one that is judged.
-_OF_ANOTHER_REPOSITORY = {
-    "GIT_ALTERNATE_OBJECT_DIRECTORIES",
-    "GIT_COMMON_DIR",
-    "GIT_DIR",
-    "GIT_INDEX_FILE",
-    "GIT_NAMESPACE",
-    "GIT_OBJECT_DIRECTORY",
-    "GIT_PREFIX",
-    "GIT_SHALLOW_FILE",
-    "GIT_WORK_TREE",
-}
-_OVERRULED = (
-    "-c",
-    "core.fsmonitor=false",  # the monitor of file changes is a program that the settings may name
-    "-c",
-    "log.diffMerges=first-parent",  # what `-m` means to `git log`
-)
-_OWNER = re.compile(r"detected dubious ownership in repository at '([^\n]*)'")
 _LISTED = re.compile(r"(?:\?|([A-Z]) ([0-7]{6}) ([0-9a-f]+) ([0-3])(?=\t))[ \t]([^\0]+)\0")
 _CLOSED = "could not open directory"
 _NO_REPOSITORY = "fatal: not a git repository (or any"
 _CHUNK = 1 << 20
+#: What mends a repository that is nowhere.
+MEND_HEAD = "see that .git/HEAD there names a branch or a commit, or clone the repository anew"
 
 
 @dataclass(frozen=True, slots=True)
@@ -77,10 +52,6 @@ class Blob:
     content: bytes | None
 
 
-class _NotInstalled(CannotJudge):
-    """There is no git to run."""
-
-
 def toplevel(folder: Path) -> Path | None:
     """Return the top folder of the work tree around `folder`, or `None` where there is none.
 
@@ -91,13 +62,27 @@ def toplevel(folder: Path) -> Path | None:
     """
     try:
         status, output, error = run(folder, "rev-parse", "--show-toplevel")
-    except _NotInstalled:
-        if any((above / ".git").exists() for above in (folder.resolve(), *folder.resolve().parents)):
+    except NotInstalledError:
+        if _around(folder, ".git") is not None:
             raise
         return None
     if status and error.startswith(_NO_REPOSITORY):
+        _refuse_broken(folder)
         return None
     return Path(os.fsdecode(checked(folder, "rev-parse", status, output, error).removesuffix(b"\n")))
+
+
+def _around(folder: Path, name: str) -> Path | None:
+    """The folder nearest to `folder`, it or one above it, that holds something called `name`."""
+    return next((one for one in (folder.resolve(), *folder.resolve().parents) if (one / name).exists()), None)
+
+
+def _refuse_broken(folder: Path) -> None:
+    """Stop at a repository that git passes over as if it were none, as it does where HEAD names no branch."""
+    top = _around(folder, ".git/HEAD")
+    # One that git can read lies above where it was told to look no further.
+    if top is not None and run(top, "rev-parse", "--resolve-git-dir", str(top / ".git"))[0]:
+        raise CannotJudge(f"there is a repository at {safe(str(top))}, and git cannot read it", MEND_HEAD)
 
 
 def list_files(folder: Path) -> tuple[Entry, ...]:
@@ -183,7 +168,7 @@ def _held(folder: Path) -> frozenset[str]:
 
 def _answers(folder: Path, object_ids: Sequence[str], most: int) -> Iterator[Blob]:
     """Yield the objects until git ends."""
-    with _start(folder, "cat-file", "--batch", "--buffer", feeding=True) as process:
+    with start(folder, "cat-file", "--batch", "--buffer", feeding=True) as process:
         questions, answers = cast("IO[bytes]", process.stdin), cast("IO[bytes]", process.stdout)
         request = "".join(f"{one}\n" for one in object_ids).encode()
         # Git answers while it is still being asked: one thread alone would wait for it for ever.
@@ -251,7 +236,7 @@ def resolve(folder: Path, revision: str) -> str:
     Raises
     ------
     CannotJudge
-        Git fails, or does not know the revision; the advice is then the command that fetches it.
+        Git fails, or does not know the revision; the advice is then what brings it here.
     """
     if revision and revision[0] != "-" and "\0" not in revision:
         status, output, error = run(folder, "rev-parse", "--verify", "--quiet", revision + "^{commit}")
@@ -259,10 +244,12 @@ def resolve(folder: Path, revision: str) -> str:
             return output.decode().strip()
         if error:
             checked(folder, "rev-parse", status, output, error)
-    fetch = f"git fetch --depth=1 origin {shlex.quote(safe(revision))}"
-    if checked(folder, "rev-parse", *run(folder, "rev-parse", "--is-shallow-repository")) == b"true\n":
-        raise CannotJudge(f"the revision {safe(revision)} is not in this shallow clone", f"run `{fetch}`")
-    raise CannotJudge(f"git knows no revision {safe(revision)} here", f"name a commit, or run `{fetch}`")
+    from gatecheck.fetching import commit_advice, is_shallow  # noqa: PLC0415  # needed for what is not here
+
+    advice = commit_advice(folder, revision)
+    if is_shallow(folder):
+        raise CannotJudge(f"the revision {safe(revision)} is not in this shallow clone", advice)
+    raise CannotJudge(f"git knows no revision {safe(revision)} here", advice)
 
 
 def is_unborn(folder: Path) -> bool:
@@ -279,71 +266,3 @@ def is_unborn(folder: Path) -> bool:
     status, commit, error = run(folder, "for-each-ref", os.fsdecode(branch.removesuffix(b"\n")))
     # Of a branch that it cannot read git only warns, and leaves it out.
     return not checked(folder, "for-each-ref", status, commit, error) and not error
-
-
-def run(folder: Path, *arguments: str) -> tuple[int, bytes, str]:
-    """Run git in `folder` and return its exit status, its output and its complaint."""
-    with _start(folder, *arguments) as process:
-        output, error = process.communicate()
-    return process.returncode, output, error.decode("utf-8", "replace")
-
-
-def pieces(folder: Path, command: str, *arguments: str) -> Iterator[str]:
-    """Yield what git writes, as it writes it, in the pieces that NUL bytes end.
-
-    Raises
-    ------
-    CannotJudge
-        Git fails, which is seen after its last piece.
-    """
-    # Git may complain at length while it writes: a pipe that nobody reads would stop it.
-    with tempfile.TemporaryFile() as complaints:
-        with _start(folder, command, *arguments, complaints=complaints) as process:
-            rest = b""
-            while chunk := cast("IO[bytes]", process.stdout).read(_CHUNK):
-                *whole, rest = (rest + chunk).split(b"\0")
-                yield from map(os.fsdecode, whole)
-        complaints.seek(0)
-        error = complaints.read().decode("utf-8", "replace")
-    checked(folder, command, process.returncode, rest, error)
-
-
-def _start(
-    folder: Path, *arguments: str, feeding: bool = False, complaints: IO[bytes] | None = None
-) -> subprocess.Popen[bytes]:
-    kept = {name: value for name, value in os.environ.items() if name not in _OF_ANOTHER_REPOSITORY}
-    command = ["git", "-C", str(folder), *_OVERRULED, *arguments]
-    try:
-        return subprocess.Popen(  # noqa: S603  # no shell: each argument arrives as it is
-            command,
-            env=kept | _SETTINGS,
-            stdin=subprocess.PIPE if feeding else subprocess.DEVNULL,
-            stdout=subprocess.PIPE,
-            stderr=subprocess.DEVNULL if feeding else complaints or subprocess.PIPE,
-        )
-    except OSError as error:
-        raise _NotInstalled(
-            f"git cannot be started ({safe(str(error.strerror))})",
-            "install git, and see that it is on the PATH",
-        ) from error
-
-
-def checked(folder: Path, command: str, status: int, output: bytes, error: str) -> bytes:
-    """Return the output of git.
-
-    Raises
-    ------
-    CannotJudge
-        Git failed; what it says and what mends it are told.
-    """
-    if status == 0:
-        return output
-    owner = _OWNER.search(error)
-    if owner:
-        where = owner[1]
-        raise CannotJudge(
-            f"git does not read the repository at {safe(where)}, since another user owns it",
-            f"run `git config --global --add safe.directory {shlex.quote(safe(where))}`",
-        )
-    says = safe(error.strip().split("\n")[0].removeprefix("fatal: ")) or f"exit status {status}"
-    raise CannotJudge(f"git {command} failed in {safe(str(folder))}: {says}", "mend the repository, then run again")

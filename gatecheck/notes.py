@@ -2,14 +2,17 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+import math
+from collections.abc import Callable, Mapping, Sequence
 
 from gatecheck.figures import risk_at
+from gatecheck.model.promise import PlanInTree, Promise
 from gatecheck.model.verdict import Judged, Standing
 from gatecheck.pull_request import SinceBase, prior_of
 from gatecheck.rules.rule import Table
 
 _MOST_NAMED = 5
+_SHORT = 12
 _DOES: Mapping[Standing | None, str] = {
     None: "not judged",
     "stands": "stands",
@@ -42,20 +45,74 @@ def _standings(judged: Sequence[Judged]) -> dict[str, Standing]:
     return {one.id: one.standing for one in judged}
 
 
-def notes_on_priors_changed(table: Table, since: SinceBase | None) -> tuple[str, ...]:
-    """Name the records whose own prior the request changes, and what that would make of their risk."""
+def notes_on_priors_changed(table: Table, since: SinceBase) -> tuple[str, ...]:
+    """Name the records whose own prior is not that of the base, and what that would make of their risk."""
     notes = []
-    for row, before in enumerate(() if since is None else since.before):
-        proposed = prior_of(table.record(row))
-        if before is None or proposed == prior_of(before):
+    for row, trusted in enumerate(since.trusted):
+        record, before = table.record(row), since.before[row]
+        proposed = prior_of(record)
+        if trusted is None or proposed == prior_of(trusted):
             continue
         prior = float(table.applied[row].evidence.prior) if proposed is None else proposed
-        judged, risk = f"{table.evidence.prior[row]:.4g}", risk_at(table, row, prior)
-        notes.append(
-            f"The prior of {table.record(row).id} is changed here; it is judged at {judged}, which is that of the "
-            f"base, and at {prior:.4g} its false positive risk would be {risk}."
-        )
+        named = record.id if record.id == trusted.id else f"{record.id} (at the base {trusted.id})"
+        by_base = before is not None and proposed == prior_of(before)
+        where = "at the base since this request departed" if by_base else "here"
+        notes.append(f"The prior of {named} is changed {where}; {_at_both(table, row, prior)}.")
     return tuple(notes)
+
+
+def notes_on_priors_of_plans(table: Table, proposed: Sequence[float | None]) -> tuple[str, ...]:
+    """Name the records whose plan has a prior that the request adds or changes; `None` in the other rows."""
+    columns = table.columns
+    return tuple(
+        f"The prior that the plan of {table.record(row).id} sets is new or changed here; "
+        f"{_at_both(table, row, prior)}."
+        for row, prior in enumerate(proposed)
+        if prior is not None
+        and (columns.prior_from_plan[row] or math.isnan(columns.own_prior[row]))
+        and prior != table.evidence.prior[row]
+    )
+
+
+def _at_both(table: Table, row: int, prior: float) -> str:
+    return (
+        f"it is judged at {table.evidence.prior[row]:.4g}, which is that of the base, and at {prior:.4g} its false "
+        f"positive risk would be {risk_at(table, row, prior)}"
+    )
+
+
+def notes_on_plans(
+    promises: Sequence[Promise | None],
+    plans: Sequence[PlanInTree],
+    how: Callable[[str], str | None],
+    base: str,
+) -> tuple[str, ...]:
+    """Name the plans that the request adds beside results, changes or removes, and the version of them that counts.
+
+    `how` tells how the request changes the file of that path; `base` is the commit of its base.
+    """
+    frozen: dict[str, set[str]] = {one.path: set() for one in plans}
+    for one in promises:
+        if one is not None:
+            frozen.setdefault(one.file, set()).update([one.frozen_at] if one.frozen_at else [])
+    named = {one.file for one in promises if one is not None}
+    notes = []
+    for path in sorted(frozen):
+        what = how(path)
+        if what is not None and what != "new":
+            commits = " and ".join(each[:_SHORT] for each in sorted(frozen[path])) or base[:_SHORT]
+            notes.append(f"The plan {path} is {what} here; what counts is the plan of the base, as of {commits}.")
+        elif what == "new" and path in named:
+            notes.append(f"The plan {path} is new here, beside results that name it: the base does not have it.")
+    return tuple(notes)
+
+
+def notes_on_moved(moved: Mapping[str, str]) -> tuple[str, ...]:
+    """Name the claims, by id, that count although their records did not change, and what changed instead."""
+    if not moved:
+        return ()
+    told = [f"{name} ({what})" for name, what in moved.items()]
+    return (f"Counted although the record is unchanged, since what it rests on is not: {_named(told)}.",)
 
 
 def notes_on_priors(table: Table) -> tuple[str, ...]:

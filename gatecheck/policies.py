@@ -49,11 +49,12 @@ class Standing:
     proposed: Policy | None = None
 
 
-def standing_policy(root: Path, named: str | None, base: str | None) -> Standing:
+def standing_policy(root: Path, named: str | None, base: str | None, departed: str | None = None) -> Standing:
     """Return the policy for the tree at `root`.
 
     `named` is the policy file relative to `root`, else it is `gatecheck.yaml`. With `base` the file is read as
-    it stands at that revision: a pull request does not change the policy that it is judged by.
+    it stands at that revision: a pull request does not change the policy that it is judged by. What the request
+    itself changes is told against the commit `departed`, where that is not the base.
 
     Raises
     ------
@@ -64,17 +65,17 @@ def standing_policy(root: Path, named: str | None, base: str | None) -> Standing
     revision = None if base is None else git.resolve(root, base)
     file = read_one(root, path, revision)
     in_tree = file if revision is None else read_one(root, path)
-    notes = _notes_on_base(path, revision, in_tree, file)
+    before = file if departed in {None, revision} else read_one(root, path, departed)
+    notes = () if revision is None else _notes_on_base(path, revision, _Versions(in_tree, before, file))
+    proposed = _proposed(in_tree, file) if _differ(in_tree, before) else None
     if file is not None:
-        stands = _from_file(file, revision, notes)
-        return replace(stands, proposed=_proposed(in_tree, file))
+        return replace(_from_file(file, revision, notes), proposed=proposed)
     if named is not None:
         where = "" if base is None else f" at {git.safe(base)}"
         raise CannotJudge(f"there is no policy {git.safe(named)}{where}", "name a policy file that is there")
-    note = f"No {POLICY_FILE} is here, so the built-in starting policy applies; `gatecheck start` writes one."
     policy, _ = read_own_policy(STARTING_POLICY)
     used = _used(STARTING_POLICY, _digest_of_starting())
-    return Standing(policy, used, (), (*notes, note), _proposed(in_tree, file))
+    return Standing(policy, used, (), (*notes, _note_on_none(in_tree, base)), proposed)
 
 
 def read_own_policy(document: Any) -> tuple[Policy | None, tuple[Fault, ...]]:
@@ -106,15 +107,33 @@ def _proposed(in_tree: OneFile | None, file: OneFile | None) -> Policy | None:
     return read_own_policy(in_tree.document.value)[0]
 
 
-def _notes_on_base(
-    path: str, revision: str | None, in_tree: OneFile | None, at_base: OneFile | None
-) -> tuple[str, ...]:
-    if revision is None:
+@struct
+class _Versions:
+    """The policy file of the tree, where a request departs from its base, and of the base."""
+
+    in_tree: OneFile | None
+    before: OneFile | None
+    at_base: OneFile | None
+
+
+def _differ(first: OneFile | None, second: OneFile | None) -> bool:
+    return (first and first.digest) != (second and second.digest)
+
+
+def _notes_on_base(path: str, revision: str, file: _Versions) -> tuple[str, ...]:
+    if not _differ(file.in_tree, file.at_base):
         return ()
-    if (in_tree and in_tree.digest) == (at_base and at_base.digest):
-        return ()
-    what = "new" if at_base is None else "removed" if in_tree is None else "changed"
-    return (f"The policy {git.safe(path)} is {what} here; what counts is the base, {revision[:12]}.",)
+    counts = f"what counts is the base, {revision[:12]}"
+    if not _differ(file.in_tree, file.before):
+        return (f"The policy {git.safe(path)} has changed at the base since this request departed; {counts}.",)
+    what = "new" if file.before is None else "removed" if file.in_tree is None else "changed"
+    return (f"The policy {git.safe(path)} is {what} here; {counts}.",)
+
+
+def _note_on_none(in_tree: OneFile | None, base: str | None) -> str:
+    where = f"No {POLICY_FILE} is here" if base is None else f"The base has no {POLICY_FILE}"
+    advice = "; `gatecheck start` writes one" if in_tree is None else ""
+    return f"{where}, so the built-in starting policy applies{advice}."
 
 
 def _used(document: Document, digest: str) -> PolicyUsed:

@@ -3,20 +3,30 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Collection, Iterator, Sequence
+from collections.abc import Collection, Sequence
 from dataclasses import replace
 from pathlib import Path
 
 from gatecheck.columns import Columns, columns_of
-from gatecheck.compare.looks import real_error
+from gatecheck.compare.looks import equal_steps, look_facts, real_error
 from gatecheck.errors import CannotJudge
 from gatecheck.evidence import Evidence, weigh_columns
-from gatecheck.history.looks import doubt_of, gaps_of, names_of, versions_of, with_doubts
-from gatecheck.history.records import Version, records_in, versions_with_aliases
+from gatecheck.history.looks import (
+    Asked,
+    gaps_of,
+    gone_for,
+    looks_of,
+    names_of,
+    past_of,
+    versions_of,
+    with_doubts,
+)
+from gatecheck.history.records import Version
 from gatecheck.history.seen import Told, distinct, looks_seen
-from gatecheck.history.walk import history_of, line_of
+from gatecheck.history.walk import history_of
 from gatecheck.model.found import Found
-from gatecheck.model.looks_seen import ClaimChange, Course, Step, Unreadable
+from gatecheck.model.looks_seen import ClaimChange, Course, LooksSeen, Step, Unreadable
+from gatecheck.model.promise import Promise
 from gatecheck.model.record import Record, Test
 from gatecheck.model.shown import decimal
 from gatecheck.policy import Policy
@@ -38,31 +48,58 @@ def trace(root: Path, policy: Policy, record_id: str, base: str | None = None) -
         There is no repository, git fails, or the record may be in a part of the history that is not here.
     """
     globs = policy.document.scan
-    history = history_of(root, first_parent=False)
     now = _in_tree(root, record_id, globs.include, globs.exclude)
+    found = () if now is None else (now,)
     names = (record_id,) if now is None else names_of(now)
-    recorded = versions_with_aliases(root, history, frozenset(names), globs.include, globs.exclude)
-    versions = recorded.versions(recorded.lineage(names)) if now is None else versions_of(now, history, recorded)
-    if not versions and (doubt := doubt_of(history, recorded)):
-        raise CannotJudge(f"neither the tree nor what is here of the history has that record: {doubt[0]}", doubt[1])
+    past = past_of(Asked(root, found, globs.include, globs.exclude), frozenset(names), base)
+    recorded = past.recorded
+    versions = recorded.versions(recorded.lineage(names)) if now is None else versions_of(now, past)
+    if not versions and past.doubt:
+        why, advice = past.doubt
+        raise CannotJudge(f"neither the tree nor what is here of the history has that record: {why}", advice)
     if not versions:
         return None
-    line = line_of(history, base)
-    looks = with_doubts(looks_seen(versions, line), history, recorded, names)
-    last = versions[-1]
-    alpha = _alpha(policy, last.found)
-    steps, assumed = _steps(versions, line, policy)
+    last = versions[-1].found
+    looks = with_doubts(looks_seen(versions, past.line), past, names) if now is None else looks_of(now, past)
+    alpha, sides = _level(policy, last)
+    steps, assumed = _steps(versions, past.line, policy)
     return Course(
-        last.record.id,
-        steps,
-        looks,
-        alpha,
-        real_error(max(1, len(looks.looks)), alpha),
-        now is not None,
-        assumed,
-        tuple(_maybe_before(root, versions[0], recorded.lineage(names))),
-        tuple(Unreadable(gap.commit.id, gap.path, gap.message) for gap in gaps_of(recorded, names)),
+        id=last.record.id,
+        steps=steps,
+        looks=looks,
+        alpha=alpha,
+        sides=sides,
+        error=real_error(looks.information or equal_steps(max(1, len(looks.looks))), alpha, sides),
+        planned=_planned(last, looks, _promise(root, policy, last, base), alpha),
+        in_tree=now is not None,
+        assumed=assumed,
+        maybe_before=() if now is None or not looks.known else gone_for(now, past),
+        unreadable=tuple(Unreadable(gap.commit.id, gap.path, gap.message) for gap in gaps_of(recorded, names)),
     )
+
+
+def _promise(root: Path, policy: Policy, found: Found, base: str | None) -> Promise | None:
+    """What stands behind the plan that a record names."""
+    if found.record.plan is None:
+        return None
+    from gatecheck.plans.promise import promises  # noqa: PLC0415  # most records name no plan
+
+    line, globs = history_of(root, base or "HEAD"), policy.document.scan
+    made = promises(root, [found], line, policy.document.plans, include=globs.include, exclude=globs.exclude)
+    return made.promises[0]
+
+
+def _planned(found: Found, looks: LooksSeen, promise: Promise | None, alpha: float) -> str:
+    """What was planned for the looks at a record, in sentences; empty where nothing was."""
+    (facts,) = look_facts(columns_of([found]), [alpha], [looks], [promise])
+    if facts is None or not facts.planned:
+        return "" if facts is None or not facts.plan.late else f"They come {facts.plan.late}."
+    plan = facts.plan
+    if plan.boundary is None or plan.planned is None:
+        return plan.why
+    limit = f", with a nominal p of {decimal(facts.limit)} there" if math.isfinite(facts.limit) else ""
+    told = f"This is look {facts.number} of {plan.planned}, by the {plan.boundary} boundary that {plan.by}{limit}."
+    return f"{told} {plan.why}".strip()
 
 
 def _in_tree(root: Path, record_id: str, include: Sequence[str], exclude: Sequence[str]) -> Found | None:
@@ -77,10 +114,11 @@ def _in_tree(root: Path, record_id: str, include: Sequence[str], exclude: Sequen
     return next((one for one in found if record_id in one.record.aliases), None)
 
 
-def _alpha(policy: Policy, found: Found) -> float:
-    own = found.record.test.alpha if found.record.test else None
+def _level(policy: Policy, found: Found) -> tuple[float, int]:
+    """The level at which a record is tested, and on how many sides."""
+    test = found.record.test or Test()
     asked: float = getattr(policy.for_record(found.record, found.at.path).rules.get("looks"), "alpha", _USUAL_ALPHA)
-    return asked if own is None else own
+    return asked if test.alpha is None else test.alpha, test.sides or 2
 
 
 def _steps(
@@ -144,18 +182,3 @@ def _claim(before: str | None, now: str | None) -> ClaimChange:
     if before is None:
         return "added"
     return "taken out" if now is None else "changed"
-
-
-def _maybe_before(root: Path, first: Version, lineage: frozenset[str]) -> Iterator[str]:
-    """The ids that stood in the same file for the same hypothesis, until the first version took their place."""
-    plan, commit = first.record.plan, first.commit
-    if plan is None or plan.hypothesis is None or commit is None:
-        return
-    change = next(each for each in commit.changes if each.path == first.path)
-    before = records_in(root, change.before, change.path)
-    after = {record.id for record in records_in(root, change.after, change.path)}
-    for record in before:
-        told = record.plan
-        same = told is not None and (told.file, told.hypothesis) == (plan.file, plan.hypothesis)
-        if same and record.id not in after | lineage:
-            yield record.id

@@ -45,7 +45,9 @@ ARROWS: Mapping[str, frozenset[str]] = {
     "errors": NOTHING,
     "weigh": NOTHING,
     "schema": frozenset({"model"}),
-    "git": frozenset({"errors"}),
+    "git_process": frozenset({"errors"}),
+    "fetching": frozenset({"git_process"}),
+    "git": frozenset({"errors", "fetching", "git_process"}),
     "starting": frozenset({"errors", "git"}),
     "scan": frozenset({"model", "schema", "git", "globs", "errors"}),
     "policy": frozenset({"model", "schema", "globs"}),
@@ -55,7 +57,18 @@ ARROWS: Mapping[str, frozenset[str]] = {
     "together": frozenset({"columns", "standard_errors", "weigh", "policy", "model"}),
     "evidence": frozenset({"columns", "default_priors", "together", "weigh", "policy", "model"}),
     "compare": frozenset({"columns", "evidence", "standard_errors", "together", "weigh", "model"}),
-    "rules": frozenset({"columns", "evidence", "compare", "weigh", "policy", "prose", "model", "schema"}),
+    "rules": frozenset({
+        "columns",
+        "default_priors",
+        "standard_errors",
+        "evidence",
+        "compare",
+        "weigh",
+        "policy",
+        "prose",
+        "model",
+        "schema",
+    }),
     "interval_figures": frozenset({"model"}),
     "displaying": frozenset({
         "columns",
@@ -82,11 +95,11 @@ ARROWS: Mapping[str, frozenset[str]] = {
     "design": frozenset({"columns", "design_tests", "weigh", "policy", "errors", "model"}),
     "policies": frozenset({"scan", "rules", "policy", "schema", "git", "errors", "model"}),
     "render": frozenset({"model"}),
-    "history": frozenset({"git", "scan", "schema", "model", "globs", "errors"}),
+    "history": frozenset({"fetching", "git", "scan", "schema", "model", "globs", "errors"}),
     "rerunning": frozenset({"scan", "schema", "git", "model", "globs", "errors"}),
-    "plans": frozenset({"history", "git", "scan", "schema", "model", "globs", "errors"}),
+    "plans": frozenset({"fetching", "history", "git", "scan", "schema", "model", "globs", "errors"}),
     "freshness": frozenset({"compare", "history", "scan", "git", "model"}),
-    "permissions": frozenset({"scan", "schema", "git", "model"}),
+    "permissions": frozenset({"errors", "fetching", "git", "history", "model", "plans", "rules", "scan", "schema"}),
     "two_verdicts": frozenset({"schema", "model"}),
     "pull_request": frozenset({"rules", "model"}),
     "declaring": frozenset({"model", "schema"}),
@@ -119,6 +132,7 @@ ARROWS: Mapping[str, frozenset[str]] = {
         "git",
         "history",
         "model",
+        "plans",
         "policy",
         "rules",
         "scan",
@@ -262,9 +276,9 @@ def test_one_module_runs_git() -> None:
     """
     running = {module for module, tree in MODULES.items() if "subprocess" in _outside_imported(tree)}
 
-    assert running - {"declaring/provenance.py", "rerunning/running.py"} == {"git.py"}
+    assert running - {"declaring/provenance.py", "rerunning/running.py"} == {"git_process.py"}
     running |= {module for module, tree in MODULES.items() if _called(tree) & {"system", "popen", "Popen"}}
-    assert running - {"declaring/provenance.py", "rerunning/running.py"} == {"git.py"}
+    assert running - {"declaring/provenance.py", "rerunning/running.py"} == {"git_process.py"}
 
 
 def test_files_are_opened_at_the_edge() -> None:
@@ -283,7 +297,11 @@ def test_the_environment_is_read_at_the_edge() -> None:
     reading = {module for module, tree in MODULES.items() if _names(tree) & {"environ", "getenv", "environb"}}
 
     # A notebook's own path stands nowhere else than in the environment.
-    assert reading - {"declaring/provenance.py", "rerunning/running.py"} <= {"cli.py", "commands/edge.py", "git.py"}
+    assert reading - {"declaring/provenance.py", "rerunning/running.py"} <= {
+        "cli.py",
+        "commands/edge.py",
+        "git_process.py",
+    }
 
 
 def test_nothing_runs_what_it_reads() -> None:

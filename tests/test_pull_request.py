@@ -7,7 +7,7 @@ from support import Document, changed, drainage
 
 from gatecheck.model.found import Found
 from gatecheck.model.verdict import Place
-from gatecheck.pull_request import SinceBase, since_base
+from gatecheck.pull_request import Base, SinceBase, since_base
 from gatecheck.schema.records import read_record
 
 ID = "drainage/earthworm-biomass"
@@ -23,7 +23,8 @@ def found(*documents: Document) -> list[Found]:
 
 
 def compared(base: list[Document], tree: list[Document]) -> SinceBase:
-    return since_base(found(*tree), found(*base))
+    at_base = found(*base)
+    return since_base(found(*tree), Base(at_base, at_base, lambda _: False))
 
 
 def told(base: list[Document], tree: list[Document]) -> list[tuple[str, str, str]]:
@@ -137,3 +138,150 @@ def test_changes_are_sorted_whatever_the_order_of_files() -> None:
 
     assert kinds == [("changed", "a"), ("new", "m"), ("new", "n"), ("withdrawn", "z")]
     assert kinds == [(each.kind, each.id) for each in compared(base[::-1], tree[::-1]).changes]
+
+
+def moved(base: list[Document], tree: list[Document], *files: str) -> dict[str, str]:
+    """What unchanged claims rest on that is another, where `files` changed."""
+    at_base = found(*base)
+    return dict(since_base(found(*tree), Base(at_base, at_base, set(files).__contains__)).moved)
+
+
+def test_a_claim_rests_on_the_files_that_it_names() -> None:
+    made = {"code": "analysis.py", "inputs": [{"path": "data/a.csv"}, {"path": "data/b.csv"}]}
+    tree = [drainage(provenance=made, plan={"file": "plans/p.yaml", "hypothesis": "H1"})]
+
+    assert moved(tree, tree) == moved(tree, tree, "data/c.csv") == {}
+    for path in ("data/a.csv", "data/b.csv", "analysis.py", "plans/p.yaml"):
+        assert moved(tree, tree, path) == {ID: path}
+    assert moved([drainage(provenance={})], [drainage(provenance={})], "analysis.py") == {}
+
+
+def test_a_record_that_claims_nothing_or_changed_itself_rests_on_nothing() -> None:
+    named = drainage(provenance={"code": "analysis.py"})
+    assert moved([named], [changed(named, claim=...)], "analysis.py") == {}
+    assert moved([changed(named, claim=...)], [changed(named, claim=...)], "analysis.py") == {}
+    assert moved([named], [changed(named, test__p="0.035")], "analysis.py") == {}
+    assert moved([], [named], "analysis.py") == {}
+
+
+A, B, C = (drainage(id=name, family=GROWTH) for name in "abc")
+ALL_GROWTH = dict.fromkeys("abc", "the family growth")
+
+
+@pytest.mark.parametrize(
+    ("tree", "moves"),
+    [
+        ([A, B, C], ""),
+        ([A, B, changed(C, claim="Other words.", tags=["late"])], ""),
+        ([A, B], "ab"),
+        ([A, B, changed(C, family=...)], "ab"),
+        ([A, B, changed(C, family__name="yield")], "ab"),
+        ([A, B, changed(C, family__size=2)], "ab"),
+        ([A, B, changed(C, test__p="0.035")], "ab"),
+        ([A, B, changed(C, id="d")], "ab"),
+        ([A, B, changed(C, id="d", aliases=["c"])], ""),
+        ([A, B, C, changed(C, id="d")], "abc"),
+        ([A, B, C, drainage(id="d")], ""),
+    ],
+)
+def test_a_claim_rests_on_the_other_members_of_its_family(tree: list[Document], moves: str) -> None:
+    assert moved([A, B, C], tree) == {name: ALL_GROWTH[name] for name in moves}
+
+
+FIRST = drainage(id="first")
+AGAIN = drainage(id="again", replicates="first")
+OTHER = drainage(id="other")
+
+
+@pytest.mark.parametrize(
+    ("base", "tree", "moves"),
+    [
+        ([FIRST, AGAIN, OTHER], [FIRST, AGAIN, OTHER], {}),
+        ([FIRST, AGAIN, OTHER], [FIRST, OTHER], {"first": "again"}),
+        ([FIRST, OTHER], [FIRST, AGAIN, OTHER], {"first": "again"}),
+        ([FIRST, AGAIN, OTHER], [FIRST, changed(AGAIN, replicates=...), OTHER], {"first": "again"}),
+        ([FIRST, AGAIN, OTHER], [FIRST, changed(AGAIN, estimate__value=1), OTHER], {"first": "again"}),
+        ([FIRST, AGAIN, OTHER], [FIRST, changed(AGAIN, claim="Again."), OTHER], {}),
+        ([FIRST, AGAIN], [changed(FIRST, sample__n=40), AGAIN], {"again": "first"}),
+        ([OTHER, drainage(id="new", aliases=["old"])], [OTHER, drainage(id="new", aliases=["old"])], {}),
+    ],
+)
+def test_a_claim_rests_on_what_answers_the_same_hypothesis(
+    base: list[Document], tree: list[Document], moves: dict[str, str]
+) -> None:
+    assert moved(base, tree) == moves
+
+
+def test_claims_that_name_one_hypothesis_of_a_plan_rest_on_each_other() -> None:
+    plan = {"file": "p.yaml", "hypothesis": "H1"}
+    one, two = drainage(id="one", plan=plan), drainage(id="two", plan=plan)
+    apart = drainage(id="apart", plan={"file": "p.yaml", "hypothesis": "H2"})
+    unnamed = drainage(id="unnamed", plan={"file": "p.yaml"})
+    base = [one, two, apart, unnamed]
+
+    assert moved(base, [one, changed(two, test__p="0.9"), apart, unnamed]) == {"one": "two"}
+    assert moved(base, [one, two, apart]) == {}
+
+
+def test_a_claim_that_two_effects_differ_rests_on_both_and_not_they_on_it() -> None:
+    compares = drainage(id="differ", compares=["first", "renamed"])
+    second = drainage(id="second", aliases=["renamed"])
+    base = [FIRST, second, compares]
+
+    assert moved(base, [FIRST, changed(second, estimate__value=1), compares]) == {"differ": "second"}
+    assert moved(base, [second, compares]) == {"differ": "first"}
+    assert moved(base, [FIRST, second]) == {}
+
+
+def trusted(
+    base: list[Document], tree: list[Document], tip: list[Document] | None = None, places: str = ""
+) -> list[str | None]:
+    """The ids of the records whose priors count; `places` names the files of the tree."""
+    departed, now = found(*base), found(*tree)
+    now = [Found(one.record, Place(f"{place}.json"), one.document) for one, place in zip(now, places, strict=True)]
+    since = since_base(now, Base(departed, departed if tip is None else found(*tip), lambda _: False))
+    return [None if each is None else each.id for each in since.trusted]
+
+
+OTHERWISE: Document = {"test__value": 3.1, "test__p": "0.004", "estimate": ...}
+
+
+@pytest.mark.parametrize(
+    ("base", "tree", "places", "ids"),
+    [
+        ([FIRST], [FIRST], "x", ["first"]),
+        ([FIRST], [drainage(id="b", aliases=["first"])], "x", ["first"]),
+        # The same result under another id, wherever it stands.
+        ([FIRST], [drainage(id="b", claim="Other words.")], "x", ["first"]),
+        # Another result.
+        ([FIRST], [drainage(id="b", **OTHERWISE)], "x", [None]),
+        # The first one is still there.
+        ([FIRST], [FIRST, drainage(id="b")], "xy", ["first", None]),
+        # Neither says what was tested.
+        ([drainage(id="a", test=...)], [drainage(id="b", test=...)], "x", [None]),
+    ],
+)
+def test_a_prior_is_that_of_the_record_at_the_base_also_where_its_id_is_another(
+    base: list[Document], tree: list[Document], places: str, ids: list[str | None]
+) -> None:
+    assert trusted(base, tree, places=places) == ids
+
+
+def test_a_record_that_takes_the_place_of_the_only_one_of_a_file_is_that_one() -> None:
+    other = drainage(id="b", **OTHERWISE)
+    departed = [Found(one.record, Place("r.json"), one.document) for one in found(FIRST, OTHER)]
+
+    def at_place(*now: Found) -> list[str | None]:
+        since = since_base(now, Base(departed[: len(now)], departed, lambda _: False))
+        return [None if each is None else each.id for each in since.trusted]
+
+    (one,) = found(other)
+    assert at_place(Found(one.record, Place("r.json"), other)) == ["first"]
+    # One of several in a file may have been taken out, and another put in.
+    assert at_place(Found(one.record, Place("r.json"), other), departed[1]) == [None, "other"]
+
+
+def test_the_base_as_it_is_now_goes_before_the_one_that_the_request_departed_from() -> None:
+    assert trusted([FIRST], [drainage(id="b", aliases=["first", "c"])], [drainage(id="c")], "x") == ["c"]
+    assert trusted([FIRST], [FIRST], [], "x") == ["first"]
+    assert trusted([], [FIRST], [FIRST], "x") == ["first"]

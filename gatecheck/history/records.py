@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import functools
-from collections.abc import Iterable, Iterator, Mapping, Sequence
+import posixpath
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from pathlib import Path
 
@@ -21,6 +22,14 @@ from gatecheck.scan.readers import READERS, suffix_of
 from gatecheck.scan.readers.document import Document
 from gatecheck.scan.twins import position
 from gatecheck.scan.unread import as_text
+
+#: The path of a plan, in its shortest form, and the hypothesis in it that a record names.
+Hypothesis = tuple[str, str | None]
+
+
+def hypothesis_of(record: Record) -> Hypothesis | None:
+    """Return the hypothesis that a record says it answers; `None` where it names no plan."""
+    return None if record.plan is None else (posixpath.normpath(record.plan.file), record.plan.hypothesis)
 
 
 @struct
@@ -95,18 +104,32 @@ class _Reading:
     """What has been read so far."""
 
     ids: frozenset[str] | None
+    hypotheses: frozenset[Hypothesis]
     found: list[Version] = field(default_factory=list)
     gaps: list[Gap] = field(default_factory=list)
     missing: int = 0
 
+    def wants(self, record: Record) -> bool:
+        """Whether that record was asked for."""
+        return self.ids is None or record.id in self.ids or hypothesis_of(record) in self.hypotheses
+
 
 def versions_with_aliases(
-    root: Path, history: History, ids: frozenset[str], include: Sequence[str], exclude: Sequence[str]
+    root: Path,
+    history: History,
+    ids: frozenset[str],
+    include: Sequence[str],
+    exclude: Sequence[str],
+    *,
+    hypotheses: frozenset[Hypothesis] = frozenset(),
 ) -> Recorded:
-    """Return the versions of the records `ids`, and of their earlier ids; see `record_versions`."""
+    """Return the versions of the records `ids` and of those that answer `hypotheses`, and of their earlier ids.
+
+    See `record_versions`.
+    """
     while True:
-        recorded = record_versions(root, history, ids, include, exclude)
-        all_of_them = recorded.lineage(ids)
+        recorded = record_versions(root, history, ids, include, exclude, hypotheses=hypotheses)
+        all_of_them = recorded.lineage(ids | recorded.by_id.keys())
         if all_of_them == ids:
             return recorded
         ids = all_of_them
@@ -118,11 +141,14 @@ def record_versions(
     ids: frozenset[str] | None = None,
     include: Sequence[str] = ("**",),
     exclude: Sequence[str] = (),
+    *,
+    hypotheses: frozenset[Hypothesis] = frozenset(),
 ) -> Recorded:
     """Return what the records `ids`, or all that there ever were, held after each commit that changed them.
 
-    A file is read if a reader knows its suffix and the globs name its path. A text that cannot be read is told as
-    a gap, where it may hold one of the records.
+    Those that answer one of `hypotheses` are among them, whatever their id. A file is read if a reader knows its
+    suffix and the globs name its path. A text that cannot be read is told as a gap, where it may hold one of the
+    records.
 
     Raises
     ------
@@ -130,8 +156,8 @@ def record_versions(
         Git ends before it has answered.
     """
     uses = _uses(history, include, exclude)
-    reading = _Reading(ids)
-    holds = may_hold(ids)
+    reading = _Reading(ids, hypotheses)
+    holds = _may_hold(ids, hypotheses)
     contents = git.read_blobs(root, [blob for blob, _ in uses], LONGEST_PARSED)
     for ((_, suffix), at), blob in zip(uses.items(), contents, strict=True):
         if blob.size is None:
@@ -146,6 +172,17 @@ def record_versions(
     for version in reading.found:
         by_id.setdefault(version.record.id, []).append(version)
     return Recorded({name: tuple(each) for name, each in by_id.items()}, tuple(reading.gaps), reading.missing)
+
+
+def _may_hold(ids: frozenset[str] | None, hypotheses: frozenset[Hypothesis]) -> Callable[[bytes], bool]:
+    """The test whether a content may hold one of the records asked for; it may err on that side alone."""
+    holds_id = may_hold(ids)
+    if not hypotheses:
+        return holds_id
+    # However a plan is named, the last part of its path stands there.
+    holds_plan = may_hold({posixpath.basename(file) for file, _ in hypotheses})
+    holds_name = may_hold({name or "" for _, name in hypotheses})
+    return lambda content: holds_id(content) or (holds_plan(content) and holds_name(content))
 
 
 _Uses = dict[tuple[str, str], list[tuple[int, str]]]
@@ -174,7 +211,7 @@ def _read(reading: _Reading, history: History, suffix: str, content: bytes, at: 
     told = as_text(path)
     for one in _outcomes(suffix, told, content):
         if isinstance(one, Found):
-            if reading.ids is None or one.record.id in reading.ids:
+            if reading.wants(one.record):
                 reading.found.append(Version(index, history.commits[index], one, path))
                 reading.found.extend(_version_elsewhere(history, one, *use) for use in at[1:])
         elif looks_declared(suffix, content):
@@ -192,12 +229,3 @@ def _outcomes(suffix: str, path: str, content: bytes) -> Iterator[Found | Proble
 def _version_elsewhere(history: History, found: Found, index: int, path: str) -> Version:
     here = replace(found, at=replace(found.at, path=as_text(path)))
     return Version(index, history.commits[index], here, path)
-
-
-def records_in(root: Path, content_id: str | None, path: str) -> tuple[Record, ...]:
-    """Return the records in one content, read as a file at `path` is; none where it is not there."""
-    if content_id is None:
-        return ()
-    (blob,) = git.read_blobs(root, [content_id], LONGEST_PARSED)
-    outcomes = _outcomes(suffix_of(path), path, blob.content or b"")
-    return tuple(one.record for one in outcomes if isinstance(one, Found))

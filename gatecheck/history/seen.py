@@ -13,6 +13,7 @@ from gatecheck.model.struct import struct
 
 _WITH_RESIDUAL_DF = {"t", "r", "F"}
 _Numbers = tuple[Reported | None, ...]
+_P = 1  # the place of p among them
 
 
 @struct
@@ -57,7 +58,8 @@ def distinct(versions: Sequence[Version], line: Collection[str] | None = None) -
     The first result, and one with other numbers from more units than the one before it, is a look; off the line
     any number of units that was not seen yet counts as more. One with other numbers from as many units as an
     earlier one, or with the same numbers from a number of units that is told otherwise, comes from other data or
-    other code. One that agrees with an earlier one as far as both go is its rerun.
+    other code. One that agrees with an earlier one as far as both go is its rerun; where all but p does, as after a
+    change of sides, it is told otherwise.
     """
     results: dict[tuple[object, ...], _Result] = {}
     for version, size in zip(versions, _sizes([one.record for one in versions]), strict=True):
@@ -91,6 +93,8 @@ def _change(result: _Result, previous: _Result, same_size: _Result | None) -> Ch
         return "rerun"
     if result.size is None or previous.size is None:
         return "unsized"
+    if same_size is not None and _agree(_beside_p(result.numbers), _beside_p(same_size.numbers)):
+        return "retold"
     if same_size is not None or _same(result.numbers, previous.numbers):
         return "other"
     return "look" if result.on_line_at is None or result.size > previous.size else "smaller"
@@ -148,6 +152,10 @@ def _agree(some: _Numbers, others: _Numbers) -> bool:
         (one, other) for one, other in zip(some, others, strict=False) if one is not None and other is not None
     ]
     return bool(pairs) and all(one.value == other.value or _overlap(one, other) for one, other in pairs)
+
+
+def _beside_p(numbers: _Numbers) -> _Numbers:
+    return (*numbers[:_P], *numbers[_P + 1 :])
 
 
 def _overlap(one: Reported, other: Reported) -> bool:

@@ -9,7 +9,7 @@ from pathlib import Path
 
 from gatecheck import git
 from gatecheck.errors import CannotJudge
-from gatecheck.model.looks_seen import day_of
+from gatecheck.model.looks_seen import Ancestry, day_of
 from gatecheck.model.struct import struct
 
 _FORMAT = "%H%x00%P%x00%ct%x00%an%x00%ae"
@@ -94,6 +94,11 @@ class History:
         return versions[-1][0] if versions else None
 
     @functools.cached_property
+    def ancestry(self) -> Ancestry:
+        """Which of the commits lead to which."""
+        return Ancestry({commit.id: commit.parents for commit in self.commits})
+
+    @functools.cached_property
     def _versions(self) -> Mapping[str, list[tuple[int, str | None]]]:
         versions: dict[str, list[tuple[int, str | None]]] = {}
         for index, commit in enumerate(self.commits):
@@ -145,7 +150,7 @@ def line_of(history: History, base: str | None = None) -> frozenset[str]:
     With `base`, into which the last commit goes as a pull request, the line of what it merges belongs to it too:
     a runner checks out the merge of the two.
     """
-    parents = {commit.id: commit.parents for commit in history.commits}
+    parents = history.ancestry.parents
     line: set[str] = set()
     tip = history.commits[-1].id if history.commits else ""
     for start in (tip, *parents.get(tip, ())[1:2]) if base is not None else (tip,):

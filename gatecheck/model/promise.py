@@ -40,9 +40,13 @@ class Promise:
 
 @struct
 class PlanInTree:
-    """A plan with the place of its document (path from the judged folder, 1-based line) and its digest."""
+    """A plan with the place of its document (path from the judged folder, 1-based line) and its digest.
+
+    `gone_since` is the commit that took it away, where the history alone has it still.
+    """
 
     path: str
     line: int
     plan: Plan
     digest: str = ""
+    gone_since: str | None = None

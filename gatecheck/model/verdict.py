@@ -50,7 +50,8 @@ class Figures:
     """The evidence in one result, with the assumptions that it rests on.
 
     `log_likelihood_ratio` is the natural log of the likelihood ratio for `alternative` over no effect;
-    `None` in a number means that it could not be computed, and `note` says why.
+    `None` in a number means that it could not be computed, and `note` says why. `pooled` says with which records
+    the result was pooled, and to what; empty where it was weighed alone.
     """
 
     alternative: str
@@ -60,6 +61,7 @@ class Figures:
     false_positive_risk: float | None
     prior_needed: float | None
     note: str
+    pooled: str = ""
 
 
 @dataclass(frozen=True, slots=True)

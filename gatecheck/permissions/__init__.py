@@ -5,17 +5,22 @@ They change no computed number: a finding that they cover keeps what was observe
 
 from __future__ import annotations
 
-import functools
 from collections.abc import Collection, Sequence
+from dataclasses import replace
 from datetime import date
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from gatecheck.model.found import Found
 from gatecheck.model.struct import struct
-from gatecheck.model.verdict import Problem
+from gatecheck.model.verdict import Judged, Problem
+from gatecheck.model.waivers import Waivers
 from gatecheck.permissions.accepted import accept, read_accepted
-from gatecheck.permissions.commits import changer_of, day_of
-from gatecheck.permissions.waivers import Circumstances, Permitted, Row, read_waivers, waive
+from gatecheck.permissions.commits import day_of
+from gatecheck.permissions.waivers import Circumstances, Permitted, Row, Subject, read_waivers, waive
+
+if TYPE_CHECKING:
+    from gatecheck.permissions.authors import Changer
 
 
 @struct
@@ -34,15 +39,18 @@ class Setting:
 
 @struct
 class Settled:
-    """Findings by row of which some are waived, with what is told and what could not be read."""
+    """Findings by row, and those of plans, of which some are waived; what could not be read, and what is told."""
 
     findings: tuple[Row, ...]
+    plans: tuple[Judged, ...]
     problems: tuple[Problem, ...]
     notes: tuple[str, ...]
 
 
-def permitted(setting: Setting, findings: Sequence[Row], found: Sequence[Found]) -> Settled:
-    """Return `findings`, a row for each of `found`, with those waived that a permission covers.
+def permitted(
+    setting: Setting, findings: Sequence[Row], found: Sequence[Found], plans: Sequence[Judged] = ()
+) -> Settled:
+    """Return `findings`, a row for each of `found`, and `plans`, with what a permission covers waived.
 
     Raises
     ------
@@ -50,13 +58,31 @@ def permitted(setting: Setting, findings: Sequence[Row], found: Sequence[Found])
         Git fails or does not know the base, or a file of permissions is there and cannot be read.
     """
     waivers, accepted = read_waivers(setting.root, setting.base), read_accepted(setting.root, setting.base)
-    result = Permitted(tuple(findings), (*waivers.notes, *accepted.notes))
+    subjects: tuple[Subject, ...] = (*found, *plans)
+    result = Permitted((*findings, *(one.findings for one in plans)), (*waivers.notes, *accepted.notes))
     if waivers.value is not None and waivers.value.waivers:
-        day = day_of(setting.root, setting.base, setting.today)
-        changer = functools.cache(functools.partial(changer_of, setting.root))
-        waived = waive(result.findings, found, waivers.value.waivers, Circumstances(day, changer, setting.rules))
+        waived = waive(result.findings, subjects, waivers.value.waivers, _circumstances(setting, waivers.value))
         result = Permitted(waived.findings, (*result.notes, *waived.notes))
     if accepted.value is not None:
-        passed = accept(result.findings, found, accepted.value.accepted)
+        passed = accept(result.findings, subjects, accepted.value.accepted)
         result = Permitted(passed.findings, (*result.notes, *passed.notes))
-    return Settled(result.findings, (*waivers.problems, *accepted.problems), result.notes)
+    of_plans = zip(plans, result.findings[len(found) :], strict=True)
+    return Settled(
+        result.findings[: len(found)],
+        tuple(replace(one, findings=row) for one, row in of_plans),
+        (*waivers.problems, *accepted.problems),
+        result.notes,
+    )
+
+
+def _circumstances(setting: Setting, waivers: Waivers) -> Circumstances:
+    from gatecheck.permissions.authors import Authors  # noqa: PLC0415  # most trees have no waivers
+    from gatecheck.rules import rule_named  # noqa: PLC0415
+
+    authors = Authors(setting.root, {each.record for each in waivers.waivers})
+
+    def changers(one: Subject, rule: str) -> Sequence[Changer]:
+        return authors.of(one, rule_named(rule).reads) if isinstance(one, Found) else authors.of_file(one.at.path)
+
+    day = day_of(setting.root, setting.base, setting.today)
+    return Circumstances(day, changers, setting.rules)

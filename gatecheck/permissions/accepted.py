@@ -2,16 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from pathlib import Path
 from typing import Literal
 
 from gatecheck.model.accepted import Accepted, AcceptedShortfall, Adoption
-from gatecheck.model.found import Found
 from gatecheck.model.verdict import Finding, Judged
 from gatecheck.permissions.reading import Read, read_permissions
-from gatecheck.permissions.waivers import Permitted, Row
+from gatecheck.permissions.waivers import Permitted, Row, Subject, kind_of, name_of
 
 ACCEPTED_FILE = "gatecheck.accepted.yaml"
 _MOST_NAMED = 5
@@ -37,11 +36,13 @@ def read_accepted(root: Path, base: str | None) -> Read[Accepted]:
     return read_permissions(root, ACCEPTED_FILE, Accepted, base)
 
 
-def accept(findings: Sequence[Row], found: Sequence[Found], accepted: Sequence[AcceptedShortfall]) -> Permitted:
-    """Return `findings`, a row for each of `found`, with those waived that were accepted on adoption."""
-    rows = {one.record.id: row for row, one in enumerate(found)}
+def accept(
+    findings: Sequence[Row], subjects: Sequence[Subject], accepted: Sequence[AcceptedShortfall]
+) -> Permitted:
+    """Return `findings`, a row for each of `subjects`, with those waived that were accepted on adoption."""
+    rows = {name_of(one): row for row, one in enumerate(subjects)}
     judged = [list(row) for row in findings]
-    changed: list[Key] = []
+    changed: dict[Key, str] = {}
     over = 0
     for entry in accepted:
         row = rows.get(entry.record)
@@ -53,26 +54,30 @@ def accept(findings: Sequence[Row], found: Sequence[Found], accepted: Sequence[A
         state = _state(entry, finding)
         over += state == "over"
         if finding.outcome == "short" and state == "changed":
-            changed.append((entry.record, entry.rule))
+            changed[entry.record, entry.rule] = kind_of(subjects[row])
         elif finding.outcome == "short" and state == "holds":
-            judged[row][position] = _waived(finding)
+            kind = kind_of(subjects[row])
+            judged[row] = [_waived(one, kind) if one.rule == entry.rule else one for one in judged[row]]
     return Permitted(tuple(tuple(row) for row in judged), (*_note_on_changed(changed), *_note_on_over(over)))
 
 
 def adoption(listed: Sequence[AcceptedShortfall] | None, judged: Sequence[Judged], *, whole: bool) -> Adoption:
     """Return which shortfalls of the records `judged` are to be accepted.
 
-    Without a list these are all that block and are short; what is no record, such as a line of prose, has no
-    digest and is not among them. Of a list that there is, those stay that still hold; none is added. Where the
-    tree was not read `whole`, a record that is not there may be one that cannot be read, and its entries stay.
+    Without a list these are all that block and are short; what is neither record nor plan, such as a line of
+    prose, has no digest and is not among them. Of a list that there is, those stay that still hold; none is added.
+    Where the tree was not read `whole`, a record that is not there may be one that cannot be read, and its entries
+    stay.
     """
     if listed is None:
-        entries = [
-            AcceptedShortfall(one.id, finding.rule, finding.digest)
+        # A plan has a finding for each hypothesis that is missing, and one permission for all of them.
+        found = {
+            (one.id, finding.rule): AcceptedShortfall(one.id, finding.rule, finding.digest)
             for one in judged
             for finding in one.findings
             if finding.digest and finding.blocks and finding.outcome == "short"
-        ]
+        }
+        entries = tuple(found.values())
         return Adoption(_in_order(entries), len(entries), 0)
     by_id = {one.id: one for one in judged}
     kept = [entry for entry in listed if _holds(entry, by_id.get(entry.record), whole=whole)]
@@ -109,17 +114,18 @@ def _holds(entry: AcceptedShortfall, one: Judged | None, *, whole: bool) -> bool
     return position is not None and _state(entry, one.findings[position]) == "holds"
 
 
-def _waived(finding: Finding) -> Finding:
-    message = f"{finding.message} Accepted on adoption, until the record changes in what the rule reads.".strip()
+def _waived(finding: Finding, kind: str) -> Finding:
+    message = f"{finding.message} Accepted on adoption, until the {kind} changes in what the rule reads.".strip()
     return replace(finding, outcome="waived", message=message)
 
 
-def _note_on_changed(changed: Sequence[Key]) -> tuple[str, ...]:
+def _note_on_changed(changed: Mapping[Key, str]) -> tuple[str, ...]:
     if not changed:
         return ()
     named = ", ".join(f"{record} ({rule})" for record, rule in sorted(changed)[:_MOST_NAMED])
     more = f" and {len(changed) - _MOST_NAMED} more" if len(changed) > _MOST_NAMED else ""
-    return (f"Accepted on adoption and no longer, as the record changed: {named}{more}.",)
+    what = " or ".join(sorted(set(changed.values()), reverse=True))
+    return (f"Accepted on adoption and no longer, as the {what} changed: {named}{more}.",)
 
 
 def _note_on_over(over: int) -> tuple[str, ...]:

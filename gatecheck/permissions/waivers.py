@@ -7,17 +7,22 @@ from collections.abc import Callable, Collection, Iterable, Iterator, Sequence
 from dataclasses import replace
 from datetime import date
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from gatecheck.model.found import Found
 from gatecheck.model.struct import struct
-from gatecheck.model.verdict import Finding, Outcome
+from gatecheck.model.verdict import Finding, Judged, Outcome
 from gatecheck.model.waivers import Waiver, Waivers
-from gatecheck.permissions.commits import Changer
 from gatecheck.permissions.reading import Read, problem, read_permissions
 from gatecheck.schema.read import Fault
 
+if TYPE_CHECKING:
+    from gatecheck.permissions.authors import Changer
+
 WAIVERS_FILE = "gatecheck.waivers.yaml"
 Row = tuple[Finding, ...]
+#: What a row of findings is about: a record, or a plan as it was judged.
+Subject = Found | Judged
 
 _NOT_NEEDED: dict[Outcome, str] = {
     "met": "the record meets the rule",
@@ -27,10 +32,10 @@ _NOT_NEEDED: dict[Outcome, str] = {
 
 @struct
 class Circumstances:
-    """On what it depends whether a waiver applies: the day, and who changed a file last, by its path."""
+    """On what it depends whether a waiver applies: the day, and who made something say what a rule reads in it."""
 
     day: date
-    changer: Callable[[str], Changer]
+    changers: Callable[[Subject, str], Sequence[Changer]]
     rules: Collection[str]
 
 
@@ -87,13 +92,13 @@ def _repeats(waivers: Sequence[Waiver]) -> Iterator[Fault]:
 
 
 def waive(
-    findings: Sequence[Row], found: Sequence[Found], waivers: Iterable[Waiver], circumstances: Circumstances
+    findings: Sequence[Row], subjects: Sequence[Subject], waivers: Iterable[Waiver], circumstances: Circumstances
 ) -> Permitted:
-    """Return `findings`, a row for each of `found`, with those waived that a waiver permits.
+    """Return `findings`, a row for each of `subjects`, with those waived that a waiver permits.
 
     A waived finding keeps all that was observed. A waiver that does not apply leaves a note that says why.
     """
-    rows = {one.record.id: row for row, one in enumerate(found)}
+    rows = {name_of(one): row for row, one in enumerate(subjects)}
     judged = list(findings)
     notes = []
     for waiver in waivers:
@@ -105,18 +110,23 @@ def waive(
         finding = next((one for one in judged[row] if one.rule == waiver.rule), None)
         if finding is None or finding.outcome in _NOT_NEEDED or finding.enforce != "block":
             notes.append(f"The waiver of {waiver.rule} on {waiver.record} is not needed: {_not_needed(finding)}.")
-        elif why := _against(waiver, finding, found[row], circumstances):
+        elif why := _against(waiver, finding, subjects[row], circumstances):
             notes.append(f"The waiver of {waiver.rule} on {waiver.record} does not apply: {why}.")
         else:
-            judged[row] = tuple(_waived(one, waiver) if one is finding else one for one in judged[row])
+            judged[row] = tuple(_waived(one, waiver) if one.rule == waiver.rule else one for one in judged[row])
     return Permitted(tuple(judged), tuple(notes))
+
+
+def name_of(subject: Subject) -> str:
+    """Return what a permission calls a subject: the id of a record, the path of a plan."""
+    return subject.record.id if isinstance(subject, Found) else subject.id
 
 
 def _unknown(waiver: Waiver, rows: Collection[str], rules: Collection[str]) -> str:
     if waiver.rule not in rules:
         return f"there is no rule of that name{_nearest(waiver.rule, rules)}"
     if waiver.record not in rows:
-        return f"there is no record of that id{_nearest(waiver.record, rows)}"
+        return f"there is no record of that id, and no plan at that path falls short{_nearest(waiver.record, rows)}"
     return ""
 
 
@@ -133,7 +143,7 @@ def _not_needed(finding: Finding | None) -> str:
     return _NOT_NEEDED.get(finding.outcome, "the policy only notes what the rule finds there")
 
 
-def _against(waiver: Waiver, finding: Finding, one: Found, circumstances: Circumstances) -> str:
+def _against(waiver: Waiver, finding: Finding, one: Subject, circumstances: Circumstances) -> str:
     """Why a waiver does not apply to a finding that blocks; nothing where it does."""
     if finding.outcome == "undecided":
         return "the rule cannot be decided there, and only what was judged can be waived"
@@ -143,17 +153,23 @@ def _against(waiver: Waiver, finding: Finding, one: Found, circumstances: Circum
     if day > waiver.until:
         return f"it expired on {waiver.until}"
     if finding.digest.removeprefix("sha256:") != waiver.digest.removeprefix("sha256:"):
-        return "the record has changed since in what the rule reads"
+        return f"the {kind_of(one)} has changed since in what the rule reads"
     if not _names(waiver.granted_by or ""):
         return "it says nobody in granted_by who grants it"
-    return _against_approver(waiver.granted_by or "", circumstances.changer(one.at.path))
+    return _against_approver(waiver.granted_by or "", circumstances.changers(one, waiver.rule), kind_of(one))
 
 
-def _against_approver(granted_by: str, changer: Changer) -> str:
-    if changer.unknown:
-        return f"who changed the record is not known here: {changer.unknown}"
-    if _names(granted_by) & {_plain(changer.name), _plain(changer.email)}:
-        return "it was granted by the author of the record's change"
+def kind_of(subject: Subject) -> str:
+    """Return what a subject is called in a sentence."""
+    return "record" if isinstance(subject, Found) else "plan"
+
+
+def _against_approver(granted_by: str, changers: Sequence[Changer], kind: str) -> str:
+    unknown = next((each.unknown for each in changers if each.unknown), "")
+    if unknown:
+        return f"who changed the {kind} is not known here: {unknown}"
+    if any(_names(granted_by) & {_plain(each.name), _plain(each.email)} for each in changers):
+        return f"it was granted by the author of the {kind}'s change"
     return ""
 
 

@@ -7,16 +7,16 @@ a time stamp adds to that order and does not replace it, since it says nothing o
 
 from __future__ import annotations
 
-import shlex
 from collections.abc import Collection
 from pathlib import Path
 
 from gatecheck import git
+from gatecheck.fetching import history_advice
 from gatecheck.history.walk import History
 from gatecheck.model.plan_settings import PlanSettings
 from gatecheck.model.promise import Grade
 from gatecheck.model.struct import struct
-from gatecheck.plans.order import Frozen, Line, Version, in_force
+from gatecheck.plans.order import Frozen, Governed, Line, Version, in_force
 from gatecheck.plans.reading import PlanFile, tidy
 from gatecheck.plans.seal import fits, seal_path, stamp_path
 from gatecheck.plans.store import Store
@@ -24,6 +24,7 @@ from gatecheck.plans.witnesses import Sealing, Shown, signed, stamped
 
 _BEFORE = "commit the sealed plan to the base before the data, in a pull request of its own"
 _LINE = "on the base's first-parent line"
+_NO_DATA = " (none of its data are in that history, so when they came is not shown)"
 _PUSH = "someone with the right to push rewrote that branch"
 
 
@@ -47,7 +48,7 @@ class Question:
     path: str
     plan: PlanFile
     found: Frozen
-    governed: Collection[str]
+    governed: Governed
     made_at: str | None = None
 
 
@@ -65,14 +66,15 @@ def grade_of(
     """
     store = Store(root, history, settings)
     inside = tidy(path)
-    found = frozen_in(store, inside or "", governed)
+    files = Governed(frozenset(governed), frozenset())
+    found = frozen_in(store, inside or "", files)
     plan = None if inside is None else plan_of_question(store, inside, found)
     if inside is None or plan is None or plan.plan is None:
         return Graded("none", f"there is no plan {git.safe(path)} that can be read")
-    return grade(store, Question(inside, plan, found, governed))
+    return grade(store, Question(inside, plan, found, files))
 
 
-def frozen_in(store: Store, path: str, governed: Collection[str]) -> Frozen:
+def frozen_in(store: Store, path: str, governed: Governed) -> Frozen:
     """Return which version of the plan counts; none where there is no history, or the plan is not in it."""
     return Frozen(0, None, before=False) if store.line is None else store.line.frozen(path, governed)
 
@@ -104,10 +106,8 @@ def grade(store: Store, asked: Question) -> Graded:
 
 def cut(root: Path, history: History) -> Graded:
     """Return the grade where the beginning of the history is not in this clone: it is not known."""
-    names = git.checked(root, "remote", *git.run(root, "remote")).decode("utf-8", "replace").split()
-    remote = "origin" if "origin" in names or not names else names[0]
     because = f"the history in this clone is cut at {history.cut_at[0][:12]}, so it is not known what came first"
-    return Graded(None, because, f"run `git fetch --unshallow {shlex.quote(git.safe(remote))}`")
+    return Graded(None, because, history_advice(root))
 
 
 def _not_before(line: Line, version: Version, asked: Question, own: str) -> Graded:
@@ -145,7 +145,8 @@ def _ahead_of(line: Line, asked: Question) -> str:
     end = asked.found.end
     if end == len(line.history.commits):
         return ", which holds none of its data and results yet"
-    return f", before {line.id_of(end)} first added {git.safe(line.first_of(asked.governed, end))}"
+    alone = "" if line.has_any(asked.governed.data) else _NO_DATA
+    return f", before {line.id_of(end)} first added {git.safe(line.first_of(asked.governed, end))}{alone}"
 
 
 def _witnessed(store: Store, sealing: Sealing, asked: Question, shown: str) -> Graded:

@@ -22,6 +22,24 @@ class Version:
     blob: str | None
 
 
+#: The index of a commit, and the path in it at which something was first.
+First = tuple[int, str]
+
+
+@struct
+class Governed:
+    """What a plan governs: the paths of data and of results, and where the result was first, in whatever file."""
+
+    data: frozenset[str]
+    results: frozenset[str]
+    first: First | None = None
+
+    @property
+    def paths(self) -> frozenset[str]:
+        """The paths of both."""
+        return self.data | self.results
+
+
 @struct
 class Frozen:
     """The version of a plan that counts.
@@ -53,18 +71,26 @@ class Line:
         """Return `paths` and the earlier names of the files there."""
         return frozenset(paths) | {one.path for path in paths for one in self.versions_of(path)}
 
-    def first_with(self, paths: Collection[str]) -> int:
-        """Return the index of the first commit that has one of `paths`, or the number of commits if none has."""
-        first = self.history.first_with(self.names_of(paths))
-        return len(self.history.commits) if first is None else first
+    def first_with(self, governed: Governed) -> int:
+        """Return the index of the first commit with something governed, or the number of commits if none has."""
+        by_path = self.history.first_with(self.names_of(governed.paths))
+        known = [one for one in (by_path, governed.first and governed.first[0]) if one is not None]
+        return min(known, default=len(self.history.commits))
 
-    def first_of(self, paths: Collection[str], index: int) -> str:
-        """Return which of `paths`, by any of its names, the commit with that index adds, for a message."""
-        names = self.names_of(paths)
-        return min(one.path for name in names for one in self._under(name) if one.index == index and one.blob)
+    def has_any(self, paths: Collection[str]) -> bool:
+        """Whether a commit has one of `paths`, by any of its names."""
+        return self.history.first_with(self.names_of(paths)) is not None
 
-    def frozen(self, path: str, governed: Collection[str]) -> Frozen:
-        """Return which version of the plan now at `path` counts for what lies at the paths `governed`."""
+    def first_of(self, governed: Governed, index: int) -> str:
+        """Return which governed file, by any of its names, the commit with that index adds, for a message."""
+        names = self.names_of(governed.paths)
+        added = [one.path for name in names for one in self._under(name) if one.index == index and one.blob]
+        if governed.first is not None and governed.first[0] == index:
+            added.append(governed.first[1])
+        return min(added)
+
+    def frozen(self, path: str, governed: Governed) -> Frozen:
+        """Return which version of the plan now at `path` counts for what it governs."""
         end, versions = self.first_with(governed), self.versions_of(path)
         stood = in_force(versions, end)
         if stood is not None:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -14,9 +15,10 @@ from gatecheck.model.plan_settings import PlanSettings
 from gatecheck.model.promise import Promise
 from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Problem
+from gatecheck.plans.appearances import Appearances, appearances
 from gatecheck.plans.canonical import filled, has_open_slots, whole_digest_of
 from gatecheck.plans.grade import Graded, Question, cut, frozen_in, grade
-from gatecheck.plans.order import Line, Version
+from gatecheck.plans.order import First, Governed, Line, Version
 from gatecheck.plans.reading import PlanFile, tidy
 from gatecheck.plans.seal import seal_path
 from gatecheck.plans.store import Store
@@ -35,15 +37,22 @@ class Promised:
 
 @struct
 class _Asked:
-    """What one record asks: the path of its plan, `None` if outside; what is governed; its own files of these."""
+    """What one record asks: the path of its plan, `None` if outside; what is governed; when it was made."""
 
     path: str | None
-    governed: frozenset[str]
-    results: frozenset[str]
+    governed: Governed
     made_at: str | None
 
 
-def promises(root: Path, found: Sequence[Found], history: History | None, settings: PlanSettings) -> Promised:
+def promises(
+    root: Path,
+    found: Sequence[Found],
+    history: History | None,
+    settings: PlanSettings,
+    *,
+    include: Sequence[str] = ("**",),
+    exclude: Sequence[str] = (),
+) -> Promised:
     """Return what was promised for each of `found`, by the history of the base.
 
     Parameters
@@ -53,14 +62,22 @@ def promises(root: Path, found: Sequence[Found], history: History | None, settin
     history
         The first-parent line of the base, or of the checked-out commit where there is none; `None` for a folder
         in no repository.
+    include, exclude
+        The globs of the files in which earlier results are looked for.
 
     Raises
     ------
     CannotJudge
         Git fails.
     """
-    promiser = _Promiser(Store(root, history, settings))
-    asked = [_asked(one) for one in found]
+    whole = history is not None and not history.cut_at
+    seen = (
+        appearances(root, history, found, include, exclude)
+        if history and whole
+        else Appearances((None,) * len(found))
+    )
+    promiser = _Promiser(Store(root, history, settings), seen)
+    asked = [_asked(one, first) for one, first in zip(found, seen.firsts, strict=True)]
     promiser.load([one for one in asked if one is not None])
     made = tuple(
         None
@@ -71,14 +88,14 @@ def promises(root: Path, found: Sequence[Found], history: History | None, settin
     return Promised(made, tuple(sorted(promiser.problems)))
 
 
-def _asked(one: Found) -> _Asked | None:
+def _asked(one: Found, first: First | None) -> _Asked | None:
     if one.record.plan is None:
         return None
     made_in = one.record.provenance
     inputs = (tidy(each.path) for each in made_in.inputs) if made_in is not None else ()
     results = frozenset(each.path for each in (one.at, *one.also_at))
-    governed = results | {each for each in inputs if each is not None}
-    return _Asked(tidy(one.record.plan.file), governed, results, made_in.made_at if made_in is not None else None)
+    governed = Governed(frozenset(each for each in inputs if each is not None), results, first)
+    return _Asked(tidy(one.record.plan.file), governed, made_in.made_at if made_in is not None else None)
 
 
 @struct
@@ -96,8 +113,9 @@ class _Stood:
 class _Promiser:
     """Answers for the records of one tree; records that ask the same are answered once."""
 
-    def __init__(self, store: Store) -> None:
+    def __init__(self, store: Store, seen: Appearances) -> None:
         self.store = store
+        self.seen = seen
         self.problems: set[Problem] = set()
         self._answers: dict[tuple[Any, ...], _Stood] = {}
 
@@ -113,7 +131,8 @@ class _Promiser:
         if asked.path is None:
             missing = f"{git.safe(file)} lies outside the judged folder; {_NAME_IT}"
             return Promise(file, identifier, grade="none", missing=missing)
-        key = (asked.path, asked.governed, asked.results, asked.made_at)
+        governed = asked.governed
+        key = (asked.path, governed.data, governed.results, governed.first, asked.made_at)
         if key not in self._answers:
             self._answers[key] = self._stood(asked.path, asked)
         stood = self._answers[key]
@@ -153,6 +172,8 @@ class _Promiser:
         if plan.plan is None:
             return _Stood(None, Graded(None, "the plan cannot be read", "mend the plan"))
         graded = grade(self.store, Question(path, plan, found, asked.governed, asked.made_at))
+        if self.seen.unread and graded.grade not in {"none", "self-declared"}:
+            graded = Graded(None, self.seen.unread, self.seen.advice, "self-declared")
         if line is None or found.version is None:
             return _Stood(plan.plan, graded, digest=self.store.whole_digest_of(plan))
         promised, document = self._with_slots_filled(line, plan, found.version, asked)
@@ -168,7 +189,7 @@ class _Promiser:
         document = plan.document
         if not has_open_slots(document):
             return plan.plan, document
-        end = line.first_with(asked.results)
+        end = line.first_with(replace(asked.governed, data=frozenset()))
         for version in line.versions_of(asked.path or ""):
             later = self.store.plan_in(version) if counts.index < version.index < end and version.blob else None
             if later is not None and later.plan is not None:

@@ -99,7 +99,7 @@ def plans_in_tree(
         `root` is no folder, git fails, or the revision is not known.
     """
     tree = listed(root, revision)
-    named = [one for one in tree.entries if suffix_of(one.path) in _SUFFIXES and matches(include, one.path)]
+    named = [one for one in tree.entries if may_be_plan(one.path) and matches(include, one.path)]
     links, seen = [one for one in named if one.kind == "link"], set()
     files: list[PlanFile] = []
     problems: list[Problem] = []
@@ -118,6 +118,11 @@ def plans_in_tree(
         if one.plan is not None
     )
     return tuple(sorted(plans, key=lambda one: one.path)), tuple(sorted(problems))
+
+
+def may_be_plan(path: str) -> bool:
+    """Whether a file of that name may be a plan."""
+    return suffix_of(path) in _SUFFIXES
 
 
 def _declared(path: str, content: bytes) -> Iterator[PlanFile]:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import os
+from dataclasses import replace
 from pathlib import Path
 
 from gatecheck.errors import CannotJudge
@@ -13,6 +14,7 @@ from gatecheck.model.struct import struct
 from gatecheck.model.verdict import Problem
 from gatecheck.plans.canonical import digest_of
 from gatecheck.plans.reading import bytes_of, read_plan, seal_of
+from gatecheck.scan.unread import as_text
 
 _SEAL = ".seal.json"
 _STAMP = ".tsr"
@@ -55,7 +57,8 @@ def seal_plan(path: Path) -> Sealed:
         raise CannotJudge(f"there is no plan {safe(str(path))}", "name a plan that is there")
     beside = seal_path(str(path))
     if plan.plan is None:
-        return Sealed(problems=plan.problems)
+        named = as_text(str(path))
+        return Sealed(problems=tuple(replace(one, at=replace(one.at, path=named)) for one in plan.problems))
     seal = Seal("seal/1", path.name, plan.plan.id, digest_of(plan.document))
     found = bytes_of(path.parent, seal_path(path.name))
     if found is None:

@@ -7,6 +7,7 @@ from collections.abc import Iterable
 from pathlib import Path
 
 from gatecheck import git
+from gatecheck.fetching import contents_advice
 from gatecheck.history.walk import History
 from gatecheck.model.plan_settings import PlanSettings
 from gatecheck.model.seal import Seal
@@ -56,8 +57,8 @@ class Store:
             return blob.content
         if blob.size is not None:
             return too_long(version.path, blob.size)
-        message = "a version of this file is not in this clone, which is a partial one"
-        return Problem(Place(as_text(version.path)), message, "clone without --filter")
+        clone, advice = contents_advice(self.root)
+        return Problem(Place(as_text(version.path)), f"a version of this file is not in {clone}", advice)
 
     def plan_in(self, version: Version) -> PlanFile:
         """Return the plan of a version."""

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from gatecheck.model.looks_seen import Course, Step
+from gatecheck.model.looks_seen import Course, Step, uneven_spacing
 from gatecheck.model.shown import decimal, percent
 from gatecheck.render import words
 from gatecheck.render.layout import item, page, paragraph, section
@@ -19,6 +19,7 @@ _SHORT = 12
 _CHANGES = {
     "look": "new look",
     "rerun": "rerun",
+    "retold": "p told otherwise",
     "other": "other data or code",
     "smaller": "fewer units: other data or code",
     "unsized": "other numbers, from a number of units that is not told",
@@ -97,12 +98,21 @@ def _assumed(told: Course) -> str:
 def _looks(told: Course) -> str:
     looks = len(told.looks.looks)
     least = "" if told.looks.known else "at least "
+    shown = f"The history shows {least}{'one look' if looks == 1 else f'{looks} looks'}"
+    if told.planned:
+        return f"{shown}. {told.planned}"
     if looks == 1:
-        return f"The history shows {least}one look, so its type I error is that of one test: {told.alpha:g}."
+        return f"{shown}, so its type I error is that of one test: {told.alpha:g}."
     return (
-        f"The history shows {least}{looks} looks: without a boundary planned for them, as many at {told.alpha:g} "
-        f"have a real type I error of {decimal(told.error, told.alpha)}."
+        f"{shown}: without a boundary planned for them, as many{' one-sided ones' if told.sides == 1 else ''} at "
+        f"{told.alpha:g}{_spacing(told)} have a real type I error of {decimal(told.error, told.alpha)}."
     )
+
+
+def _spacing(told: Course) -> str:
+    information = told.looks.information
+    spacing = uneven_spacing(information) if information else ""
+    return f", with information as {spacing}," if spacing else ""
 
 
 def _unreadable(told: Course) -> list[str]:
@@ -112,5 +122,5 @@ def _unreadable(told: Course) -> list[str]:
 def _hints(told: Course) -> list[str]:
     if not told.maybe_before:
         return []
-    held = f"Before its first state the same file held {', '.join(told.maybe_before)} for the same hypothesis."
-    return [f"{held} If that is an earlier id of this result, give it under aliases, so that its looks count."]
+    held = f"The history held {', '.join(told.maybe_before)} for the same hypothesis, and no record here does."
+    return [f"{held} What is an earlier id of this result belongs under aliases."]

@@ -94,7 +94,7 @@ def _digests(findings: Sequence[Finding], width: int) -> list[str]:
     for one in findings:
         if one.digest:
             rules.setdefault(one.digest, []).append(one.rule)
-    return [item(f"{', '.join(names)}: {digest}", width) for digest, names in rules.items()]
+    return [item(f"{', '.join(dict.fromkeys(names))}: {digest}", width) for digest, names in rules.items()]
 
 
 def _figures(one: Judged, figures: Figures, width: int) -> str:

@@ -4,10 +4,17 @@ It judges plans, not records: each hypothesis of the `roles` asked for that no r
 file of its plan. With `release: open` such a finding is only noted, as the study may still run; with `strict` it
 blocks. Safety outcomes are held to it like all others. CONSORT 2025, item 26, asks for the results of each primary
 and secondary outcome.
+
+In a git repository a promise is not undone by a later edit of its plan. What counts is what the plan said when
+results that name it first appeared, for any of them; where none names it, what it says now. A plan that was taken
+away still counts if it was sealed or a result named it, save for what was reported while it was there. With
+`release: strict`, a history that is cut (a shallow clone) or lacks contents (a partial one) cannot be judged.
 """
 
 from __future__ import annotations
 
+import hashlib
+import json
 from collections.abc import Sequence
 from dataclasses import KW_ONLY
 from typing import Annotated, Literal
@@ -24,6 +31,7 @@ from gatecheck.policy import RuleSettings
 from gatecheck.rules.rule import rule_beyond_records
 
 _NAME = "all-promised-reported"
+_COMMIT = 12
 _ASKS = "every hypothesis that a plan promises is answered by a record"
 
 
@@ -66,22 +74,31 @@ def _judged(found: NotReported, settings: Settings) -> Judged:
         claim=None,
         result=f"plan {plan.plan.id}, {reported}",
         evidence=None,
-        findings=tuple(_finding(plan, each, enforce) for each in found.missing),
+        findings=tuple(_finding(found, each, enforce) for each in found.missing),
     )
 
 
-def _finding(plan: PlanInTree, hypothesis: Hypothesis, enforce: Enforce) -> Finding:
+def _finding(found: NotReported, hypothesis: Hypothesis, enforce: Enforce) -> Finding:
+    plan = found.plan
     what = shown(hypothesis.text if hypothesis.outcome is None else hypothesis.outcome.variable)
+    gone = "" if plan.gone_since is None else f"; its plan was taken away in {plan.gone_since[:_COMMIT]}"
     return Finding(
         _NAME,
         "short",
         enforce,
-        message=f"{hypothesis.role.capitalize()} outcome not reported: {what} ({hypothesis.id}).",
+        message=f"{hypothesis.role.capitalize()} outcome not reported: {what} ({hypothesis.id}){gone}.",
         remedy=(
             f"Report its result, whatever it is, in a record with plan.file {plan.path} and plan.hypothesis "
             f"{hypothesis.id}; without a claim, where nothing is claimed."
         ),
+        digest=_digest(found),
     )
+
+
+def _digest(found: NotReported) -> str:
+    """What a permission rests on: what the plan says, and which of its hypotheses are not reported."""
+    rests_on = json.dumps([found.plan.digest, [each.id for each in found.missing]])
+    return f"sha256:{hashlib.sha256(rests_on.encode('ascii')).hexdigest()}"
 
 
 RULE = rule_beyond_records(_NAME, _ASKS, Settings, "plans")

@@ -42,7 +42,7 @@ from gatecheck.model.shown import decimal, percent
 from gatecheck.model.struct import struct
 from gatecheck.policy import RuleSettings
 from gatecheck.rules.rule import Judgement, Rule, Said, Table, setting
-from gatecheck.rules.words import describe_result, plural, tell_number
+from gatecheck.rules.words import as_reported, describe_result, plural, tell_number
 
 _Alpha = Annotated[float, Range(0, 0.5, low_open=True, high_open=True)]
 
@@ -117,8 +117,9 @@ def explain(table: Table, row: int, settings: Settings, judgement: Judgement) ->
     estimate = record.estimate
     if estimate is None or estimate.margin is None:
         return Said(
-            f"The claim is one of {record.aim} and gives no margin ({describe_result(record)}); a p-value above "
-            "any level does not show that there is no effect, and the policy wants an interval inside a margin.",
+            f"The claim is one of {record.aim} and gives no margin ({_result(table, row, judgement)}); a p-value "
+            "above any level does not show that there is no effect, and the policy wants an interval inside a "
+            "margin.",
             "Give estimate.margin as it was set before the data, or say that no difference was found.",
         )
     margin = f"{tell_number(estimate.margin[0])} to {tell_number(estimate.margin[1])}"
@@ -131,7 +132,8 @@ def explain(table: Table, row: int, settings: Settings, judgement: Judgement) ->
         )
     support: _Support = judgement.facts
     found = support.margins
-    ends = f"{_as_given(table, row, found.low[row])} to {_as_given(table, row, found.high[row])}"
+    low, high = (as_reported(table.columns, row, each[row]) for each in (found.low, found.high))
+    ends = f"{low} to {high}"
     p = judgement.observed[row] if judgement.observed is not None else np.nan
     tests = f" ({_tell_p(float(p), settings.alpha)} by the one-sided tests)" if np.isfinite(p) else ""
     where = "leaves" if judgement.short[row] else "lies within"
@@ -140,6 +142,17 @@ def explain(table: Table, row: int, settings: Settings, judgement: Judgement) ->
         f"{record.aim}.{_tell_support(table, row, support, short=bool(judgement.short[row]))}",
         _tell_remedy(table, row, support),
     )
+
+
+def _result(table: Table, row: int, judgement: Judgement) -> str:
+    """The result, with the interval that its standard error gives where it reports none."""
+    record, found = table.record(row), judgement.facts.margins
+    reported = record.estimate is not None and record.estimate.interval is not None
+    if reported or not np.isfinite(found.low[row] + found.high[row]):
+        return describe_result(record)
+    low, high = (as_reported(table.columns, row, ends[row]) for ends in (found.low, found.high))
+    level = f"{100 * (1 - 2 * found.alpha[row]):.4g} %"
+    return f"{describe_result(record)}; {level} interval by its standard error {low} to {high}"
 
 
 def _tell_support(table: Table, row: int, support: _Support, *, short: bool) -> str:
@@ -197,14 +210,6 @@ def _tell_sample(table: Table, row: int, n: float, found: Margins) -> str:
     sample = table.record(row).sample
     each = " per group" if groups > 1 else ""
     return f"{n:,.0f} {plural(sample.unit if sample else None)}{each}"
-
-
-def _as_given(table: Table, row: int, end: float) -> str:
-    """An end of the interval on the scale of the estimate as it is reported."""
-    estimate = table.columns.estimate
-    null = float(estimate.null[row])
-    value = null * float(np.exp(end)) if estimate.log_scale[row] else null + float(end)
-    return f"{value:.3g}" if np.isfinite(value) else "unbounded"
 
 
 RULE = Rule(

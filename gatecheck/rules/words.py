@@ -61,12 +61,24 @@ def tell_result(columns: Columns, evidence: Evidence, row: int) -> str:
 
 
 def _tell_together(columns: Columns, evidence: Evidence, row: int) -> str:
-    others = [columns.found[each].record.id for each in evidence.together.members[row] if each != row]
-    named = ", ".join(others[:_MOST_NAMED]) + (
-        f" and {len(others) - _MOST_NAMED} more" * (len(others) > _MOST_NAMED)
+    return (
+        f"Together with {tell_others(columns, evidence, row)}, this result ({tell_pooled(evidence, row)}, pooled)"
     )
+
+
+def tell_others(columns: Columns, evidence: Evidence, row: int) -> str:
+    """The records with which a row is pooled, the first few by name."""
+    others = [columns.found[each].record.id for each in evidence.together.members[row] if each != row]
+    more = f" and {len(others) - _MOST_NAMED} more" if len(others) > _MOST_NAMED else ""
+    return ", ".join(others[:_MOST_NAMED]) + more
+
+
+def tell_pooled(evidence: Evidence, row: int) -> str:
+    """The pooled result, such as `t(4) = 2.83, p = 0.04742`; a z where all standard errors are known."""
+    df = evidence.together.df[row]
+    named = f"t({df:.3g})" if math.isfinite(df) else "z"
     p = _digits(math.exp(evidence.weighed.log_p[row]))
-    return f"Together with {named}, this result (z = {evidence.weighed.value[row]:.3g}, p = {p}, pooled)"
+    return f"{named} = {evidence.weighed.value[row]:.3g}, p = {p}"
 
 
 def tell_sample(sample: Sample | None) -> str:
@@ -98,10 +110,11 @@ def tell_number(number: Reported | None) -> str:
 def tell_prior(columns: Columns, evidence: Evidence, row: int) -> str:
     """The prior with its origin where that is the record or its plan."""
     prior = f"prior {evidence.prior[row]:.4g}"
-    own = columns.found[row].record.prior
     if columns.prior_from_plan[row]:
         return f"{prior}, which the plan sets"
-    return prior if own is None else f"{prior}, which the record sets ({own.basis})"
+    who = "had at the base" if columns.prior_at_base[row] else "sets"
+    basis = columns.prior_basis[row]
+    return f"{prior}, which the record {who} ({basis})" if basis else prior
 
 
 def tell_alternative(columns: Columns, evidence: Evidence, row: int) -> str:
@@ -148,6 +161,13 @@ def tell_n(evidence: Evidence, row: int, n: float, unit: str | None) -> str:
     """The sample that would do: `29 plots per group`."""
     each = " per group" if evidence.design.arms[row] > 1 else ""
     return f"{n:,.0f} {plural(unit)}{each}"
+
+
+def as_reported(columns: Columns, row: int, shift: float) -> str:
+    """A shift from no effect on the scale of the estimate as it is reported."""
+    null = float(columns.estimate.null[row])
+    value = null * math.exp(shift) if columns.estimate.log_scale[row] else null + float(shift)
+    return f"{value:.3g}" if math.isfinite(value) else "unbounded"
 
 
 def tell_statistic(test: Test) -> str:

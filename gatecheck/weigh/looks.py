@@ -153,6 +153,42 @@ def error_of_unplanned_looks(looks: ArrayLike, alpha: ArrayLike) -> FloatArray:
     return rowwise(_unplanned_rows, _legal_unplanned, looks, alpha)
 
 
+def error_of_looks_taken(information: ArrayLike, alpha: float, *, sides: int = TWO_SIDED) -> float:
+    """Type I error of looks at this information, each tested at ``alpha`` as if it were the only one.
+
+    Parameters
+    ----------
+    information : array_like, shape (k,)
+        As in :func:`exit_probabilities`, such as the number of units at each look.
+    alpha : float
+        The nominal level of each, above 0 and below 1.
+    sides : {1, 2}
+        Whether each is tested in one direction or in both.
+
+    Returns
+    -------
+    float
+        Not a number outside the domain.
+    """
+    if sides not in {ONE_SIDED, TWO_SIDED} or not 0 < alpha < 1:
+        return nan
+    limit = -float(special.ndtri(alpha / sides))
+    return type_one_error(np.full(np.size(information), limit), information, sides=sides)
+
+
+def apart(information: ArrayLike) -> FloatArray:
+    """Of looks at rising information, those that stand far enough apart for the integration; the last always.
+
+    Shape (m,), with m at most that of `information`; a look that is left out lies just before one that is kept.
+    """
+    levels = np.asarray(information, dtype=np.float64)
+    kept = list(levels[-1:])
+    for level in levels[-2::-1]:
+        if kept[-1] - level >= LEAST_STEP * levels[-1]:
+            kept.append(level)
+    return np.array(kept[::-1])
+
+
 def fractions(information: ArrayLike) -> FloatArray:
     """Information as shares of its last level; empty where these are no looks, or too close to each other."""
     levels = np.asarray(information, dtype=np.float64)

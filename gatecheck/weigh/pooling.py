@@ -14,7 +14,10 @@ outcome. Statistics in Medicine 20, 3875-3889.
 Higgins, J. P. T. & Thompson, S. G. (2002). Quantifying heterogeneity in a meta-analysis. Statistics in Medicine
 21, 1539-1558 (I squared).
 Higgins, J. P. T., Thompson, S. G. & Spiegelhalter, D. J. (2009). A re-evaluation of random-effects meta-analysis.
-Journal of the Royal Statistical Society A 172, 137-159 (the prediction interval). All from memory.
+Journal of the Royal Statistical Society A 172, 137-159 (the prediction interval).
+Meier, P. (1953). Variance of a weighted mean. Biometrics 9, 59-73.
+Satterthwaite, F. E. (1946). An approximate distribution of estimates of variance components. Biometrics Bulletin 2,
+110-114. All from memory.
 """
 
 from __future__ import annotations
@@ -34,6 +37,9 @@ if TYPE_CHECKING:
 
 # Newton's steps end where the generalised Q exceeds its expectation by no more than this share of it.
 CLOSE_ENOUGH = 1e-14
+# On fewer degrees of freedom chance would choose the weights: the study whose units happen to vary least would
+# count most, and seem surer than it is (common practice, no source).
+ENOUGH_DF = 30.0
 
 
 class Spread(Enum):
@@ -135,6 +141,65 @@ def pool_random(
         tau2 = estimator(rows)
         pooled = _pooled(rows, tau2)
         return _hartung_knapp(rows, tau2, pooled) if hartung_knapp else pooled
+
+
+def pool_estimated(
+    estimates: ArrayLike,
+    standard_errors: ArrayLike,
+    df: ArrayLike,
+    sizes: ArrayLike,
+    groups: ArrayLike = 0,
+    *,
+    random: bool,
+) -> Pooled:
+    """Pool estimates whose standard errors are themselves estimated: the pooled effect has a t, and no z.
+
+    Where all rows of a group have at least ``ENOUGH_DF`` degrees of freedom they are weighed by the inverse of
+    their squared standard errors, and Meier's factor allows for weights that are estimated; else as if their units
+    varied alike, which leaves the choice of weights to the sizes. Either way the standard error comes from those of
+    the rows, with Satterthwaite's degrees of freedom.
+
+    With variance between three or more rows these are ``studies - 1`` at most, which is Hartung and Knapp's way and
+    never narrower than the ordinary one: at Paule and Mandel's variance their factor on the standard error is 1.
+
+    Parameters
+    ----------
+    estimates, standard_errors, groups : array_like
+        As in :func:`pool_fixed`.
+    df : array_like
+        Degrees of freedom of the standard errors, above zero; infinite where one is known.
+    sizes : array_like
+        What the squared standard errors are inverse to where units vary alike, in any unit and above zero; not used
+        where the degrees of freedom suffice.
+    random : bool
+        Whether effects differ from row to row, with Paule and Mandel's variance between them.
+
+    Returns
+    -------
+    Pooled
+        As in :func:`pool_fixed`; q, i2 and tau2 rest on the standard errors by which the rows are weighed.
+
+    Raises
+    ------
+    ValueError
+        If a group number is not whole or is negative.
+    """
+    rows = _rows(estimates, standard_errors, groups)
+    nu, size = (np.broadcast_to(np.asarray(each, dtype=np.float64), rows.groups.shape) for each in (df, sizes))
+    with np.errstate(all="ignore"):
+        by_size = (_sum(rows, (nu < ENOUGH_DF).astype(np.float64)) > 0)[rows.groups]
+        weighing = rows._replace(variances=np.where(by_size, _alike(rows, size), rows.variances))
+        tau2 = _paule_mandel(weighing) if random else np.zeros_like(rows.unit)
+        weights, _, total = _weighted(weighing, tau2)
+        shares = weights / total[rows.groups]
+        own = shares**2 * rows.variances
+        by_chance = np.where(by_size, 0.0, 4 * shares * (1 - shares) / nu)
+        variance = _sum(rows, own) * (1 + _sum(rows, by_chance)) + tau2 * _sum(rows, shares**2)
+        own_df = _sum(rows, own) ** 2 / _sum(rows, own**2 / nu)
+        most = np.where((tau2 > 0) & (rows.studies > 2), rows.studies - 1, np.inf)  # noqa: PLR2004
+        return _pooled(weighing, tau2)._replace(
+            standard_error=rows.unit * np.sqrt(variance), df=np.minimum(own_df, most)
+        )
 
 
 def log_p_pooled(pooled: Pooled, null: ArrayLike = 0.0) -> FloatArray:
@@ -243,6 +308,13 @@ def _hartung_knapp(rows: _Rows, tau2: FloatArray, pooled: Pooled) -> Pooled:
     return pooled._replace(
         standard_error=pooled.standard_error * np.sqrt(q / df), df=np.where(np.isnan(pooled.df), np.nan, df)
     )
+
+
+def _alike(rows: _Rows, sizes: FloatArray) -> FloatArray:
+    """The squared standard errors that rows of these sizes would have if the units of all varied alike."""
+    of_unit = _sum(rows, sizes**2 * rows.variances) / _sum(rows, sizes)
+    alike: FloatArray = of_unit[rows.groups] / sizes
+    return alike
 
 
 def _at_least_zero(values: FloatArray, counts: NDArray[np.bool_]) -> FloatArray:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 import re
 import subprocess
 import sys
@@ -111,7 +112,7 @@ def test_the_hook_runs_the_command_once() -> None:
     assert (hook["pass_filenames"], hook["always_run"]) == (False, True)
 
 
-def _gitlab(checkout: Path, base: str) -> subprocess.CompletedProcess[str]:
+def _gitlab(checkout: Path, base: str, **variables: str) -> subprocess.CompletedProcess[str]:
     """Run the job's last script, with the package of this tree in place of an installed one."""
     program = checkout.parent / "environment" / "bin" / "python"
     program.parent.mkdir(parents=True, exist_ok=True)
@@ -121,7 +122,7 @@ def _gitlab(checkout: Path, base: str) -> subprocess.CompletedProcess[str]:
     return subprocess.run(
         ["sh", "-e", "-c", f"environment={program.parents[1]}\n{script}"],
         cwd=checkout,
-        env={"PATH": "/usr/bin:/bin:/usr/local/bin", "CI_MERGE_REQUEST_DIFF_BASE_SHA": base},
+        env={"PATH": "/usr/bin:/bin:/usr/local/bin", "CI_MERGE_REQUEST_DIFF_BASE_SHA": base} | variables,
         capture_output=True,
         text=True,
         check=False,
@@ -169,3 +170,85 @@ def test_the_gitlab_job_stops_where_the_base_cannot_be_fetched(merge_request: tu
 
     assert done.returncode == 3
     assert done.stdout.endswith(f"The base commit {base} cannot be fetched: raise GIT_DEPTH.\n")
+
+
+@pytest.fixture
+def stale(tmp_path: Path) -> Path:
+    """An origin whose branch `request` departs from `main` before `main` takes over a policy that asks for more."""
+    origin = tmp_path / "origin"
+    origin.mkdir()
+    commit_all(origin, "start")
+    commit_all(write_tree(origin, drainage(), policy=changed(POLICY, name="old", rules={})), "an old policy")
+    git(origin, "checkout", "-q", "-b", "request")
+    (origin / "notes.txt").write_text("only words\n", encoding="utf-8")
+    commit_all(origin, "notes")
+    git(origin, "checkout", "-q", "main")
+    commit_all(write_tree(origin, drainage(), drainage(id="gained")), "a policy that asks for more")
+    return origin
+
+
+OF_THE_TARGET = {
+    "CI_MERGE_REQUEST_TARGET_BRANCH_NAME": "main",
+    "CI_MERGE_REQUEST_PROJECT_ID": "7",
+    "CI_PROJECT_ID": "7",
+}
+
+
+def _told(checkout: Path) -> dict[str, Any]:
+    return dict(json.loads((checkout / "gatecheck-verdict.json").read_text(encoding="utf-8")))
+
+
+@pytest.mark.parametrize(("depth", "shallow"), [("0", "false"), ("2", "true")])
+def test_the_gitlab_job_takes_the_policy_of_the_target_branch_as_it_is(
+    stale: Path, depth: str, shallow: str
+) -> None:
+    """A branch that departed long ago chooses no older policy; what it changes is told since it departed."""
+    few = [] if depth == "0" else [f"--depth={depth}"]
+    git(stale.parent, "clone", "-q", *few, "--single-branch", "--branch=request", f"file://{stale}", "checkout")
+    checkout = stale.parent / "checkout"
+
+    done = _gitlab(checkout, git(stale, "rev-parse", "main~1"), GIT_DEPTH=depth, **OF_THE_TARGET)
+
+    assert done.returncode == 1
+    assert done.stdout.startswith("Fetching the target branch.\n")
+    told = _told(checkout)
+    assert (told["policy"]["name"], told["base"]) == (POLICY["name"], git(stale, "rev-parse", "main"))
+    assert told["changes"] == []
+    assert git(checkout, "rev-parse", "--is-shallow-repository") == shallow
+
+
+def test_the_gitlab_job_takes_what_a_pipeline_of_merged_results_was_merged_into(stale: Path) -> None:
+    git(stale, "merge", "-q", "--no-ff", "request", "-m", "merged results")
+    merged_into = git(stale, "rev-parse", "HEAD^1")
+    git(stale.parent, "clone", "-q", "--depth=1", f"file://{stale}", "checkout")
+    checkout = stale.parent / "checkout"
+
+    done = _gitlab(checkout, "", CI_MERGE_REQUEST_TARGET_BRANCH_SHA=merged_into, **OF_THE_TARGET)
+
+    assert done.stdout.startswith(f"This checkout lacks the base commit {merged_into}; fetching it alone.\n")
+    assert (_told(checkout)["base"], _told(checkout)["changes"]) == (merged_into, [])
+
+
+@pytest.mark.parametrize(
+    ("variables", "said"),
+    [
+        ({"CI_PROJECT_ID": "8"}, ""),
+        (
+            {"CI_MERGE_REQUEST_TARGET_BRANCH_NAME": "gone"},
+            "Fetching the target branch.\nIt cannot be fetched: the commit from which the merge request departs "
+            "counts in its place.\n",
+        ),
+    ],
+)
+def test_the_gitlab_job_where_the_target_branch_cannot_be_had(
+    stale: Path, variables: dict[str, str], said: str
+) -> None:
+    """The branches of a fork are its author's own: the commit that the service names counts, as it is no choice."""
+    git(stale.parent, "clone", "-q", "--branch=request", f"file://{stale}", "checkout")
+    checkout, departs = stale.parent / "checkout", git(stale, "rev-parse", "main~1")
+
+    done = _gitlab(checkout, departs, **OF_THE_TARGET | variables)
+
+    assert done.returncode == 0
+    assert done.stdout.startswith(f"{said}#")
+    assert _told(checkout)["base"] == departs

@@ -15,7 +15,6 @@ from gatecheck.history import records
 from gatecheck.history.records import (
     Recorded,
     record_versions,
-    records_in,
     versions_with_aliases,
 )
 from gatecheck.history.walk import history_of
@@ -189,12 +188,3 @@ def test_aliases_in_a_circle_end(repo: Repository) -> None:
     found = versions_with_aliases(repo.root, history_of(repo.root), frozenset(["two"]), ALL, ())
 
     assert found.lineage(["two"]) == {"one", "two"}
-
-
-def test_the_records_in_one_text(repo: Repository) -> None:
-    repo.commit(a=result(0.2, 20))
-    blob = repo.git("rev-parse", "HEAD:a.json")
-
-    assert [each.id for each in records_in(repo.root, blob, "a.json")] == [ID]
-    assert records_in(repo.root, None, "a.json") == ()
-    assert records_in(repo.root, "0" * 40, "a.json") == ()

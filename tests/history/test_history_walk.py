@@ -190,7 +190,7 @@ def test_a_merge_that_git_tells_for_each_parent_is_taken_once(
 ) -> None:
     """Versions of git before 2.32 do not know the setting log.diffMerges, and tell a merge for each parent."""
     side_branch(repo)
-    monkeypatch.setattr(git, "_OVERRULED", ("-c", "log.diffMerges=separate"))
+    monkeypatch.setattr("gatecheck.git_process._OVERRULED", ("-c", "log.diffMerges=separate"))
     told = git.pieces(repo.root, "log", "-m", "--raw", "-z", "--format=%H", "-1", "HEAD")
     assert len([piece for piece in told if len(piece) == 40]) == 2
 
@@ -198,6 +198,21 @@ def test_a_merge_that_git_tells_for_each_parent_is_taken_once(
 
     assert len(history.commits) == 4
     assert changes(history.commits[3]) == [("b.json", False, True)]
+
+
+def test_which_commits_lead_to_which(repo: Repository) -> None:
+    made = side_branch(repo)
+    ancestry = history_of(repo.root, first_parent=False).ancestry
+
+    root, side, main, merge = made["root"], made["side"], made["main"], made["merge"]
+    assert all(ancestry.leads_to(each, merge) for each in (root, side, main, merge))
+    assert ancestry.leads_to(root, side)
+    assert not ancestry.leads_to(side, main)
+    assert not ancestry.leads_to(merge, root)
+    assert not any(ancestry.leads_to(*pair) for pair in (("f" * 40, merge), (merge, "f" * 40)))
+    # What a merge brings along did not stand there before it.
+    assert [ancestry.stood_before(each, merge) for each in (root, main, side, merge)] == [True, True, False, False]
+    assert not ancestry.stood_before(root, root)
 
 
 def test_two_roots_are_both_whole(repo: Repository) -> None:

@@ -246,39 +246,163 @@ def test_what_could_not_be_read_is_listed(repo: Repository) -> None:
 
 
 PLANNED = {"plan": {"file": "plan.yaml", "hypothesis": "H1"}}
+NO_PLAN = {"plan": {"file": "plan.yaml"}}
 
 
 @pytest.mark.parametrize(
-    ("before", "now", "hinted"),
+    ("before", "now", "doubted"),
     [
-        (result(0.4, 20, id="old", **PLANNED), result(0.2, 40, **PLANNED), ("old",)),
-        (result(0.4, 20, id="old", **PLANNED), result(0.2, 40, aliases=["old"], **PLANNED), ()),
-        (result(0.4, 20, id="old", plan={"file": "plan.yaml"}), result(0.2, 40, **PLANNED), ()),
-        (result(0.4, 20, id="old"), result(0.2, 40, **PLANNED), ()),
-        (result(0.4, 20, id="old", **PLANNED), result(0.2, 40), ()),
-        (result(0.4, 20, id="old", **PLANNED), result(0.2, 40, plan={"file": "plan.yaml"}), ()),
+        (result(0.4, 20, id="old", **PLANNED), result(0.2, 40, **PLANNED), True),
+        (
+            result(0.4, 20, id="old", **PLANNED),
+            result(0.2, 40, plan__file="./plan.yaml", plan__hypothesis="H1"),
+            True,
+        ),
+        (result(0.4, 20, id="old", **NO_PLAN), result(0.2, 40, **NO_PLAN), True),
+        (result(0.4, 20, id="old", **PLANNED), result(0.2, 40, aliases=["old"], **PLANNED), False),
+        (result(0.4, 20, id="old", **NO_PLAN), result(0.2, 40, **PLANNED), False),
+        (result(0.4, 20, id="old"), result(0.2, 40, **PLANNED), False),
+        (result(0.4, 20, id="old", **PLANNED), result(0.2, 40), False),
+        (result(0.4, 20, id="old", **PLANNED), result(0.2, 40, **NO_PLAN), False),
     ],
 )
-def test_an_id_that_was_rewritten_is_no_more_than_a_hint(
-    repo: Repository, before: Document, now: Document, hinted: tuple[str, ...]
+def test_looks_under_an_id_that_was_rewritten_are_not_known(
+    repo: Repository, before: Document, now: Document, doubted: bool
 ) -> None:
     repo.commit(r=before)
     repo.commit(r=now)
 
     told = traced(repo)
 
-    assert told.maybe_before == hinted
-    assert len(told.steps) == (2 if now.get("aliases") else 1)
-    assert ("the same file held old for the same hypothesis" in " ".join(course(told, 80).split())) == bool(hinted)
+    assert told.looks.known != doubted
+    assert (told.maybe_before, len(told.steps)) == ((), 2 if now.get("aliases") else 1)
+    text = " ".join(course(told, 80).split())
+    held = "the history held old for the same hypothesis, and no record here has such an id or alias. To mend: name"
+    assert (held in text) == doubted
+    assert ("The history shows at least one look" in text) == doubted
+
+
+def test_an_id_that_was_rewritten_with_its_result_is_a_hint(repo: Repository) -> None:
+    repo.commit(r=result(0.4, 40, id="old", **PLANNED))
+    repo.commit(r=result(0.2, 40, **PLANNED))
+
+    told = traced(repo)
+
+    assert (told.looks.known, told.maybe_before) == (True, ("old",))
+    assert (
+        "The history held old for the same hypothesis, and no record here does. What is an earlier id of this "
+        "result belongs under aliases."
+    ) in " ".join(course(told, 80).split())
 
 
 def test_a_record_beside_another_of_its_hypothesis_is_no_rewritten_one(repo: Repository) -> None:
     old, new = result(0.4, 20, id="old", **PLANNED), result(0.2, 40, **PLANNED)
     repo.commit(r=json.dumps([old]))
     repo.commit(r=json.dumps([old, new]))
-    assert traced(repo).maybe_before == ()
+    assert (traced(repo).maybe_before, traced(repo).looks.known) == ((), True)
     repo.put("n.json", result(0.2, 40, id="new", **PLANNED))
-    assert traced(repo, "new").maybe_before == ()
+    assert (traced(repo, "new").maybe_before, traced(repo, "new").looks.known) == ((), True)
+
+
+def test_a_p_of_the_same_statistic_is_told_otherwise(repo: Repository) -> None:
+    t = {"name": "t", "statistic": "t", "value": 2.19, "df": 98, "p": "0.031"}
+    repo.commit(r=result(0.4, 100, test=t))
+    repo.commit(r=result(0.4, 100, test={**t, "p": "0.0155", "sides": 1, "tail": "greater"}))
+    repo.commit(r=result(0.4, 100, test={**t, "value": 2.18, "p": "0.032"}))
+
+    told = traced(repo)
+
+    assert [each.change for each in told.steps] == ["look", "retold", "other"]
+    assert "p told otherwise" in course(told, 100)
+    assert "The history shows one look," in course(told, 100)
+
+
+def one_sided(p: float, n: int, **changes: object) -> Document:
+    """A one-sided result at level 0.025."""
+    return result(p, n, test__sides=1, test__tail="greater", test__alpha=0.025, **changes)
+
+
+def test_the_cost_of_looks_is_by_sides_and_units(repo: Repository) -> None:
+    """By scipy.stats.multivariate_normal, as in `tests/compare/test_looks_facts.py`: 0.0607."""
+    for p, n in ((0.2, 20), (0.15, 22), (0.1, 24), (0.06, 26), (0.0155, 100)):
+        repo.commit(r=one_sided(p, n))
+
+    told = traced(repo)
+
+    assert told.error == pytest.approx(0.06068, abs=2e-5)
+    assert (
+        "The history shows 5 looks: without a boundary planned for them, as many one-sided ones at 0.025, with "
+        "information as 20 : 22 : 24 : 26 : 100, have a real type I error of 0.0607."
+    ) in " ".join(course(told, 80).split())
+
+
+LOOKS = {"planned": 5, "boundary": "obrien-fleming"}
+PLAN: Document = {
+    "gatecheck": "plan/1",
+    "id": "drainage",
+    "title": "Drainage",
+    "data": "none",
+    "hypotheses": [{"id": "H1", "text": "It grows.", "looks": LOOKS}],
+}
+
+
+@pytest.mark.parametrize(
+    ("first", "look", "told"),
+    [
+        # A plan that came first, O'Brien-Fleming's nominal p at the last of five looks (recomputed).
+        (
+            "plan",
+            None,
+            "The history shows 2 looks. This is look 2 of 5, by the obrien-fleming boundary that plan.json sets, "
+            "with a nominal p of 0.00126 there.",
+        ),
+        (
+            "result",
+            None,
+            "The history shows 2 looks. They come with a boundary that plan.json set only after the first look.",
+        ),
+        (
+            "result",
+            {"number": 2, **LOOKS, "schedule": [1.0]},
+            "The history shows 2 looks. They come with a boundary that plan.json set only after the first look.",
+        ),
+    ],
+)
+def test_what_was_planned_for_the_looks_is_told(
+    repo: Repository, first: str, look: Document | None, told: str
+) -> None:
+    answers: Document = {"plan": {"file": "plan.json", "hypothesis": "H1"}}
+    if first == "plan":
+        repo.commit(plan=PLAN)
+    repo.commit(r=result(0.4, 20, **answers))
+    if first != "plan":
+        repo.commit(plan=PLAN)
+    repo.commit(r=result(0.2, 40, **answers, **({} if look is None else {"look": look})))
+
+    assert told in " ".join(course(traced(repo), 80).split())
+
+
+def test_a_boundary_of_the_record_and_what_is_not_known_of_it_are_told(repo: Repository) -> None:
+    repo.commit(r=result(0.4, 20, look={"number": 1, **LOOKS}))
+    repo.commit(r=result(0.2, 40, look={"number": 2, **LOOKS, "schedule": [1.0]}))
+    squashed = result(0.2, 40, id="squashed", look={"number": 2, **LOOKS})
+    repo.commit(s=squashed, t={**squashed, "id": "unread", "look": {"number": 2}, "plan": {"file": "gone.json"}})
+    repo.commit(
+        u=result(0.2, 40, id="broken", look={"number": 2}, plan={"file": "b.json"}), b='{"gatecheck": "plan/1"}'
+    )
+
+    own, not_known, unplanned, broken = (
+        " ".join(course(traced(repo, name), 80).split()) for name in (ID, "squashed", "unread", "broken")
+    )
+
+    assert "The history shows 2 looks. This is look 2 of 5, by the obrien-fleming boundary that its first" in own
+    assert own.endswith("that its first look told.")
+    assert (
+        "This is look 2 of 5, by the obrien-fleming boundary that the record tells, with a nominal p" in not_known
+    )
+    assert "The first result that the history shows is by its own word from look 2, so" in not_known
+    assert "The history shows one look, so its type I error is that of one test: 0.05." in unplanned
+    assert "The history shows one look. What b.json promised is not known (the plan cannot be read)." in broken
 
 
 def test_text_from_a_record_is_cleaned(repo: Repository) -> None:

@@ -89,6 +89,26 @@ def test_many_notes_are_two() -> None:
     )
 
 
+def test_what_a_plan_does_not_report_is_accepted_as_one() -> None:
+    """Until the plan changes, or another of its hypotheses is not reported."""
+    path = "plans/p.json"
+    findings = tuple(replace(SHORT, message=f"{name} is not reported.") for name in ("H1", "H2"))
+    plan = Judged(path, Place(path), None, "a plan", None, findings, kind="plan")
+
+    entries = adoption(None, [plan, judged(SHORT)], whole=True).entries
+    done = accept([(SHORT,), plan.findings], [found(), plan], entries)
+    other = [AcceptedShortfall(one.record, RULE, OTHER) for one in entries]
+
+    assert told(entries) == [(ID, RULE, SHORT.digest), (path, RULE, SHORT.digest)]
+    assert [[one.outcome for one in row] for row in done.findings] == [["waived"], ["waived", "waived"]]
+    assert done.findings[1][1].message == (
+        "H2 is not reported. Accepted on adoption, until the plan changes in what the rule reads."
+    )
+    assert accept([(SHORT,), plan.findings], [found(), plan], other).notes == (
+        f"Accepted on adoption and no longer, as the record or plan changed: {ID} ({RULE}), {path} ({RULE}).",
+    )
+
+
 def test_adoption_lists_what_blocks_and_is_short() -> None:
     family = replace(SHORT, rule="family")
     records = [

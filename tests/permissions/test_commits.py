@@ -1,4 +1,4 @@
-"""What permissions ask of git: the day on which a tree is judged, and who changed a file last."""
+"""What commit a tree is judged at, and on what day."""
 
 from __future__ import annotations
 
@@ -10,15 +10,11 @@ from pathlib import Path
 import pytest
 from support import GIT_ENVIRONMENT, git
 
-from gatecheck.permissions.commits import Changer, changer_of, day_of, judged_commit
+from gatecheck.errors import CannotJudge
+from gatecheck.permissions.commits import day_of, judged_commit
 
 TODAY = date(2040, 1, 1)
 NOON = "T12:00:00+00:00"
-
-
-def told(changer: Changer) -> tuple[str, str, str]:
-    """The changer as texts."""
-    return changer.name, changer.email, changer.unknown
 
 
 def commit(root: Path, day: str, author: str = "Ada Example <ada@example.org>", **files: str) -> str:
@@ -109,105 +105,10 @@ def test_a_commit_without_a_date_is_judged_today(tmp_path: Path) -> None:
     assert day_of(tmp_path, None, TODAY) == TODAY
 
 
-def test_who_changed_a_file_last(tmp_path: Path) -> None:
-    commit(tmp_path, "2031-05-01", a="1", b="1")
-    commit(tmp_path, "2031-05-02", "Bo Sample <bo@example.org>", b="2")
-
-    assert told(changer_of(tmp_path, "a.json")) == ("Ada Example", "ada@example.org", "")
-    assert told(changer_of(tmp_path, "b.json")) == ("Bo Sample", "bo@example.org", "")
-
-
-def test_a_merge_changes_nothing_by_itself(tmp_path: Path) -> None:
-    """Whoever merges a request is not the author of what it brings in."""
-    commit(tmp_path, "2031-05-01", a="1", b="1")
-    git(tmp_path, "checkout", "-q", "-b", "request")
-    commit(tmp_path, "2031-05-02", "Bo Sample <bo@example.org>", a="2")
-    git(tmp_path, "checkout", "-q", "main")
-    commit(tmp_path, "2031-05-03", "Cy Model <cy@example.org>", b="2")
-    git(tmp_path, "merge", "-q", "--no-ff", "-m", "merge", "request")
-
-    assert told(changer_of(tmp_path, "a.json")) == ("Bo Sample", "bo@example.org", "")
-    assert told(changer_of(tmp_path, "b.json")) == ("Cy Model", "cy@example.org", "")
-
-
-def test_a_conflict_is_solved_by_whoever_merges(tmp_path: Path) -> None:
+def test_a_head_that_names_nothing_stops_the_gate(tmp_path: Path) -> None:
+    """Git takes it for a branch without commits, and lists the files of the index."""
     commit(tmp_path, "2031-05-01", a="1")
-    git(tmp_path, "checkout", "-q", "-b", "request")
-    commit(tmp_path, "2031-05-02", "Bo Sample <bo@example.org>", a="2")
-    git(tmp_path, "checkout", "-q", "main")
-    commit(tmp_path, "2031-05-03", "Cy Model <cy@example.org>", a="3")
-    git(tmp_path, "merge", "-q", "-s", "ours", "--no-commit", "request")
-    commit(tmp_path, "2031-05-04", "Di Instance <di@example.org>", a="4")
+    (tmp_path / ".git/HEAD").write_text("ref: refs/heads/ma\x01in\n", encoding="ascii")
 
-    assert told(changer_of(tmp_path, "a.json")) == ("Di Instance", "di@example.org", "")
-
-
-def test_paths_are_relative_to_the_judged_folder_and_taken_as_they_are(tmp_path: Path) -> None:
-    inner = tmp_path / "in ner"
-    inner.mkdir()
-    commit(tmp_path, "2031-05-01", a="1")
-    (inner / "[a]*.json").write_text("1", encoding="utf-8")
-    commit(tmp_path, "2031-05-02", "Bo Sample <bo@example.org>", a="2")
-
-    assert told(changer_of(inner, "[a]*.json")) == ("Bo Sample", "bo@example.org", "")
-    assert changer_of(inner, "a.json").unknown == "git tracks no file of that name"
-
-
-def test_the_persons_settings_change_no_name(tmp_path: Path) -> None:
-    commit(tmp_path, "2031-05-01", a="1")
-    (tmp_path / ".mailmap").write_text("Another <another@example.org> <ada@example.org>\n", encoding="utf-8")
-    commit(tmp_path, "2031-05-02", "Bo Sample <bo@example.org>", b="2")
-    git(tmp_path, "config", "log.mailmap", "true")
-    git(tmp_path, "config", "log.follow", "true")
-
-    assert told(changer_of(tmp_path, "a.json")) == ("Ada Example", "ada@example.org", "")
-
-
-def test_what_is_not_known_says_what_is_missing(tmp_path: Path) -> None:
-    outside = changer_of(tmp_path, "a.json").unknown
-    git(tmp_path, "init", "-q")
-    unborn = changer_of(tmp_path, "a.json").unknown
-    commit(tmp_path, "2031-05-01", a="1", b="1")
-    (tmp_path / "a.json").write_text("2", encoding="utf-8")
-    (tmp_path / "c.json").write_text("2", encoding="utf-8")
-
-    assert outside == "judge it in the git repository that holds its history"
-    assert unborn == "commit it"
-    assert [changer_of(tmp_path, f"{name}.json").unknown for name in "abc"] == ["commit it", "", "commit it"]
-
-
-def test_at_the_cut_of_a_shallow_clone_nobody_is_known(tmp_path: Path) -> None:
-    """There, one commit seems to have added every file."""
-    full, shallow = tmp_path / "full", tmp_path / "shallow"
-    full.mkdir()
-    commit(full, "2031-05-01", a="1")
-    commit(full, "2031-05-02", "Bo Sample <bo@example.org>", b="1")
-    commit(full, "2031-05-03", "Cy Model <cy@example.org>", c="1")
-    git(tmp_path, "clone", "-q", "--depth=2", full.as_uri(), str(shallow))
-
-    assert told(changer_of(shallow, "c.json")) == ("Cy Model", "cy@example.org", "")
-    assert changer_of(shallow, "a.json").unknown == (
-        "the history of this clone is cut, so fetch it whole (`git fetch --unshallow`)"
-    )
-    git(shallow, "fetch", "-q", "--unshallow")
-    assert told(changer_of(shallow, "a.json")) == ("Ada Example", "ada@example.org", "")
-
-
-@pytest.mark.parametrize(
-    ("author", "name", "email", "unknown"),
-    [
-        ("author Ada <a@example.org> 5 +0000", "Ada", "a@example.org", ""),
-        ("author <a@example.org> 5 +0000", "", "a@example.org", ""),
-        ("author nobody", "", "", "its last commit names no author"),
-    ],
-)
-def test_odd_authors(tmp_path: Path, author: str, name: str, email: str, unknown: str) -> None:
-    commit(tmp_path, "2031-05-01", a="1")
-    tree = git(tmp_path, "rev-parse", "HEAD^{tree}")
-    # A signature holds whatever its maker likes, on lines that begin with a blank.
-    signed = "gpgsig x\n author Forged <forged@example.org> 5 +0000\n"
-    hand_made(
-        tmp_path, f"tree {tree}\n{signed}{author}\ncommitter Ada <a@example.org> 5 +0000\n\nauthor C <c@d> 1\n"
-    )
-
-    assert told(changer_of(tmp_path, "a.json")) == (name, email, unknown)
+    with pytest.raises(CannotJudge, match="HEAD of this repository names neither a branch nor a commit"):
+        judged_commit(tmp_path)

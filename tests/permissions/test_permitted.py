@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 from collections.abc import Sequence
 from datetime import date
 from pathlib import Path
@@ -33,7 +34,7 @@ waivers:
 def root(tmp_path: Path) -> Path:
     """A repository with the record in it, whose author is called `someone`."""
     (tmp_path / "results").mkdir()
-    (tmp_path / "results" / "drainage.json").write_text("{}", encoding="utf-8")
+    (tmp_path / "results" / "drainage.json").write_text(json.dumps(RECORD.document), encoding="utf-8")
     return tmp_path
 
 

@@ -9,18 +9,17 @@ import pytest
 from permissions.permitting import RULE, SHORT, circumstances, found, waiver
 from support import drainage
 
-from gatecheck.model.verdict import Finding
-from gatecheck.permissions.commits import Changer
-from gatecheck.permissions.waivers import waive
+from gatecheck.model.verdict import Finding, Judged, Place
+from gatecheck.permissions.authors import Changer
+from gatecheck.permissions.waivers import Subject, waive
 
 MET = Finding("numbers-agree", "met", "block")
 WHAT = "The waiver of false-positive-risk on drainage/earthworm-biomass"
 
 
-def note(finding: Finding, day: str = "2031-05-15", changer: Changer | None = None, **changes: Any) -> str:
+def note(finding: Finding, day: str = "2031-05-15", *changers: Changer, **changes: Any) -> str:
     """What is said of a waiver that leaves the finding as it is."""
-    at = circumstances(day) if changer is None else circumstances(day, changer)
-    done = waive([(finding,)], [found()], [waiver(**changes)], at)
+    done = waive([(finding,)], [found()], [waiver(**changes)], circumstances(day, *changers))
     assert done.findings == ((finding,),)
     (told,) = done.notes
     return told
@@ -99,13 +98,13 @@ def test_the_author_of_the_change_grants_nothing(granted_by: str) -> None:
 def test_an_author_without_a_name_is_nobody_else() -> None:
     changer = Changer("", "ada@example.org")
 
-    done = waive([(SHORT,)], [found()], [waiver(granted_by="Bo")], circumstances(changer=changer))
+    done = waive([(SHORT,)], [found()], [waiver(granted_by="Bo")], circumstances("2031-05-15", changer))
 
     assert done.findings[0][0].outcome == "waived"
 
 
 def test_without_an_author_it_does_not_apply() -> None:
-    assert note(SHORT, changer=Changer(unknown="commit it")) == (
+    assert note(SHORT, "2031-05-15", Changer("Bo", "b"), Changer(unknown="commit it")) == (
         f"{WHAT} does not apply: who changed the record is not known here: commit it."
     )
 
@@ -138,11 +137,12 @@ def test_one_that_nothing_needs_is_told(finding: Finding, why: str) -> None:
         (
             {"record": "drainage/earthworms"},
             "The waiver of false-positive-risk on drainage/earthworms does not apply: there is no record of that "
-            "id; the nearest is drainage/earthworm-biomass.",
+            "id, and no plan at that path falls short; the nearest is drainage/earthworm-biomass.",
         ),
         (
             {"record": "zzz"},
-            "The waiver of false-positive-risk on zzz does not apply: there is no record of that id.",
+            "The waiver of false-positive-risk on zzz does not apply: there is no record of that id, and no plan "
+            "at that path falls short.",
         ),
         (
             {"rule": "false-positive-rate"},
@@ -159,18 +159,41 @@ def test_names_that_nothing_has_are_told_with_the_nearest(changes: dict[str, Any
     assert note(SHORT, **changes) == told
 
 
+def test_none_of_several_authors_may_grant_it() -> None:
+    """Two branches may both have brought the same numbers."""
+    told = note(SHORT, "2031-05-15", Changer("Cy", "c"), Changer("Bo Sample", "other"))
+
+    assert told == f"{WHAT} does not apply: it was granted by the author of the record's change."
+
+
 def test_the_author_is_asked_for_only_where_all_else_holds() -> None:
     """Git is asked once for each waiver that would apply, and not for the others."""
-    asked: list[str] = []
+    asked: list[tuple[str, str]] = []
 
-    def changer(path: str) -> Changer:
-        asked.append(path)
-        return Changer("Ada", "a")
+    def changers(one: Subject, rule: str) -> tuple[Changer, ...]:
+        asked.append((one.at.path, rule))
+        return (Changer("Ada", "a"),)
 
-    at = replace(circumstances(), changer=changer)
+    at = replace(circumstances(), changers=changers)
     several = [waiver(rule="numbers-agree"), waiver(until="2031-05-02"), waiver()]
 
     waive([(MET, SHORT)], [found()], several, at)
 
-    assert asked == ["results/drainage.json"]
+    assert asked == [("results/drainage.json", RULE)]
     assert RULE in at.rules
+
+
+def test_one_waiver_covers_all_that_a_plan_does_not_report() -> None:
+    first, second = (replace(SHORT, message=f"{name} is not reported.") for name in ("H1", "H2"))
+    plan = Judged("plans/p.json", Place("plans/p.json"), None, "a plan", None, (first, second), kind="plan")
+    granted = waiver(record="plans/p.json")
+
+    done = waive([(MET,), plan.findings], [found(), plan], [granted], circumstances())
+    own = waive([plan.findings], [plan], [waiver(record=plan.id, granted_by="Ada Example")], circumstances())
+    other = waive([plan.findings], [plan], [waiver(record=plan.id, digest="0" * 64)], circumstances())
+
+    assert [one.outcome for one in done.findings[1]] == ["waived", "waived"]
+    assert (done.findings[0], done.notes) == ((MET,), ())
+    what = "The waiver of false-positive-risk on plans/p.json does not apply"
+    assert own.notes == (f"{what}: it was granted by the author of the plan's change.",)
+    assert other.notes == (f"{what}: the plan has changed since in what the rule reads.",)

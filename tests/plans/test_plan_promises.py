@@ -198,8 +198,10 @@ def test_a_version_whose_content_is_not_there(station: Station, size: str) -> No
         f"the file has {(1 << 20) + 1 + len(json.dumps(PLAN))} bytes, and plans and their seals are read up to "
         "1048576"
         if size == "too long"
-        else "a version of this file is not in this clone, which is a partial one"
+        else "a version of this file is not in this clone, although it is no partial one"
     )
+    if size == "gone":
+        assert problem.advice == "run `git fsck`, which names what is lost, and clone anew"
     assert [one.grade for one in promised.promises if one] == [None]
 
 

@@ -84,9 +84,9 @@ def test_a_plan_with_faults_is_not_sealed(plan: Path, capsys: pytest.CaptureFixt
 
     assert main(["seal", str(plan)]) == 3
     assert capsys.readouterr().out == (
-        "drainage.yaml:3: titel is no known key; the nearest known one is title (known: data, families, gatecheck, "
+        f"{plan}:3: titel is no known key; the nearest known one is title (known: data, families, gatecheck, "
         "hypotheses, id, title).\n"
-        "drainage.yaml:1: title is missing; give it: title.\n"
+        f"{plan}:1: title is missing; give it: title.\n"
     )
     assert not seal_beside(plan).exists()
 

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from promising import FILE, HYPOTHESIS, PLAN, kept, model, promise, table
@@ -9,6 +11,7 @@ from support import Document, changed
 
 from gatecheck.model.plan import Plan
 from gatecheck.model.promise import PlanInTree
+from gatecheck.model.record import Record
 from gatecheck.model.verdict import Place, PolicyUsed, Verdict
 from gatecheck.render.terminal import account
 from gatecheck.rules.all_promised_reported import RULE, Settings, judge_plans
@@ -39,6 +42,31 @@ def test_a_primary_outcome_that_is_not_reported_blocks_at_release() -> None:
     verdict = Verdict(PolicyUsed("a policy", "sha256:0", "tree"), (row,))
     assert verdict.exit == 1
     assert "Primary outcome not reported: seedling_survival_90d (H2)." in account(verdict, 200)
+
+
+def test_a_permission_rests_on_the_plan_and_on_what_is_missing() -> None:
+    """It is the same for all that one plan does not report, and ends with another plan or another gap."""
+
+    def digests(found: PlanInTree, *records: Record) -> set[str]:
+        return {each.digest for row in judge_plans([found], records, STRICT) for each in row.findings}
+
+    both = plan(HYPOTHESIS, SURVIVAL)
+    (of_both,) = digests(both)
+    others = [digests(both, kept()), digests(replace(both, digest="sha256:1")), digests(replace(both, line=9))]
+
+    assert of_both.startswith("sha256:")
+    assert [len(each) for each in others] == [1, 1, 1]
+    assert [of_both in each for each in others] == [False, False, True]
+
+
+def test_a_plan_that_was_taken_away_says_since_when() -> None:
+    gone = replace(plan(SURVIVAL), gone_since="a1b2c3d4e5f60718293a4b5c6d7e8f9001122334")
+
+    (row,) = judge_plans([gone], [], STRICT)
+
+    assert row.findings[0].message == (
+        "Primary outcome not reported: seedling_survival_90d (H2); its plan was taken away in a1b2c3d4e5f6."
+    )
 
 
 def test_while_the_study_may_still_run_it_is_noted() -> None:

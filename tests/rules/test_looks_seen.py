@@ -4,13 +4,16 @@ from __future__ import annotations
 
 from dataclasses import replace
 from pathlib import Path
+from typing import Any
 
 import pytest
+from promising import FILE, deviation, planned, promise
 from support import POLICY, Document, changed, drainage, write_tree
 
 from gatecheck.columns import columns_of
 from gatecheck.evidence import weigh_columns
-from gatecheck.model.looks_seen import Change, LooksSeen, Seen
+from gatecheck.model.looks_seen import Ancestry, Change, LooksSeen, Seen
+from gatecheck.model.promise import Promise
 from gatecheck.model.record import Look, Record
 from gatecheck.model.verdict import Finding
 from gatecheck.policies import read_own_policy
@@ -53,7 +56,7 @@ def cut(shown: LooksSeen) -> LooksSeen:
     return replace(shown, known=False, why=WHY, advice="run it")
 
 
-def judged(folder: Path, *shown: LooksSeen | None) -> Finding | None:
+def judged(folder: Path, *shown: LooksSeen | None, promised: Promise | None = None) -> Finding | None:
     """What the rule says of the record below `folder`, in full, if it concerns it."""
     policy, _ = read_own_policy(changed(POLICY, rules={"looks": {}}))
     assert policy is not None
@@ -61,7 +64,7 @@ def judged(folder: Path, *shown: LooksSeen | None) -> Finding | None:
     applied = tuple(policy.for_record(one.record, one.at.path) for one in found)
     columns = columns_of(found)
     evidence = weigh_columns(columns, [each.evidence for each in applied])
-    table = Table(columns, evidence, (), applied, looks_seen=tuple(shown))
+    table = Table(columns, evidence, (), applied, promises=(promised,), looks_seen=tuple(shown))
     ((*findings,),) = judge_all([rule_named("looks")], table, explain=frozenset([0]))
     return findings[0] if findings else None
 
@@ -164,13 +167,273 @@ def test_a_boundary_that_the_first_look_did_not_tell_is_chosen_after_the_fact(
     assert "with a boundary that its first look did not tell: 5 unadjusted looks" in finding.message
 
 
-def test_a_registration_may_tell_the_boundary_in_place_of_the_first_look(tmp_path: Path) -> None:
-    record = record_of(tmp_path, 0.031, WHOLE_PLAN, plan={"file": "plan.yaml", "hypothesis": "H1"})
+PLANNED: Document = {"file": FILE, "hypothesis": "H1"}
+FIVE = {"planned": 5, "boundary": "obrien-fleming"}
 
-    finding = judged(tmp_path, seen(record, None, *[record.look] * 4))
+
+def registered(looks: Document | None = FIVE, **values: object) -> Promise:
+    """What a plan promises that was committed before the data, unless `values` say otherwise."""
+    return promise(planned(looks=looks), **values)
+
+
+@pytest.mark.parametrize("look", [WHOLE_PLAN, {"number": 5}, None])
+def test_a_registration_sets_the_boundary_whether_or_not_the_record_repeats_it(
+    tmp_path: Path, look: Document | None
+) -> None:
+    record = record_of(tmp_path, 0.031, look, plan=PLANNED)
+
+    finding = judged(tmp_path, seen(record, None, *[record.look] * 4), promised=registered())
 
     assert finding is not None
     assert finding.outcome == "met"
+    assert "is within the nominal 0.0413 of the obrien-fleming boundary that plans/drainage.yaml sets." in (
+        finding.message
+    )
+
+
+@pytest.mark.parametrize("promised", [
+    registered(None),
+    Promise(FILE, "H9", planned(), missing="plans/drainage.yaml has no hypothesis 'H9'"),
+    None,
+])  # fmt: skip
+def test_a_plan_that_promises_no_looks_makes_no_late_boundary_a_planned_one(
+    tmp_path: Path, promised: Promise | None
+) -> None:
+    record = record_of(tmp_path, 0.031, WHOLE_PLAN, plan=PLANNED)
+
+    finding = judged(tmp_path, seen(record, None, *[record.look] * 4), promised=promised)
+
+    assert finding is not None
+    assert finding.outcome == "short"
+    assert "with a boundary that its first look did not tell: 5 unadjusted looks" in finding.message
+
+
+def test_a_promise_goes_before_what_the_record_tells(tmp_path: Path) -> None:
+    """Pocock's nominal p over five looks is .0158, O'Brien-Fleming's at the last .0413 (recomputed)."""
+    record = record_of(tmp_path, 0.031, WHOLE_PLAN, plan=PLANNED)
+    shown = seen(record, *[Look(1, 5, boundary="obrien-fleming")] * 5)
+
+    finding = judged(tmp_path, shown, promised=registered({"planned": 5, "boundary": "pocock"}))
+
+    assert finding is not None
+    assert finding.outcome == "short"
+    assert "is above the nominal 0.0158 of the pocock boundary that plans/drainage.yaml sets." in finding.message
+
+
+@pytest.mark.parametrize(("known", "outcome"), [
+    ("before-data", "met"), ("before-results", "met"), ("after-results", "short"),
+])  # fmt: skip
+def test_an_amendment_that_the_first_look_told_holds(tmp_path: Path, known: str, outcome: str) -> None:
+    record = record_of(tmp_path, 0.031, WHOLE_PLAN, plan=PLANNED, deviations=[deviation("looks.boundary", known)])
+    shown = seen(record, *[Look(1, 5, boundary="obrien-fleming")] * 5)
+
+    finding = judged(tmp_path, shown, promised=registered({"planned": 5, "boundary": "pocock"}))
+
+    assert finding is not None
+    assert finding.outcome == outcome
+
+
+def test_a_plan_may_leave_the_boundary_to_the_first_look(tmp_path: Path) -> None:
+    record = record_of(tmp_path, 0.031, WHOLE_PLAN, plan=PLANNED)
+
+    finding = judged(
+        tmp_path, seen(record, *[Look(1, 5, boundary="obrien-fleming")] * 5), promised=registered({"planned": 5})
+    )
+
+    assert finding is not None
+    assert finding.outcome == "met"
+    assert "of the obrien-fleming boundary that its first look told." in finding.message
+
+
+def test_a_plan_without_a_boundary_plans_none(tmp_path: Path) -> None:
+    record = record_of(tmp_path, 0.031, None, plan=PLANNED)
+
+    finding = judged(tmp_path, seen(record, *[None] * 5), promised=registered({"planned": 5}))
+
+    assert finding is not None
+    assert finding.outcome == "short"
+    assert "without a boundary that was planned: 5 unadjusted looks" in finding.message
+
+
+def test_more_looks_than_the_plan_promises_fall_short(tmp_path: Path) -> None:
+    record = record_of(tmp_path, 0.001, None, plan=PLANNED)
+
+    finding = judged(tmp_path, seen(record, *[None] * 5), promised=registered({**FIVE, "planned": 3}))
+
+    assert finding is not None
+    assert finding.outcome == "short"
+    assert "beyond the 3 that were planned" in finding.message
+
+
+FIRST, SECOND, THIRD = ("1" * 40, "2" * 40, "3" * 40)
+LINE = Ancestry({FIRST: (), SECOND: (FIRST,), THIRD: (SECOND,), "f" * 40: (FIRST, SECOND)})
+SELF_DECLARED: dict[str, Any] = {"grade": "self-declared", "because": "they came together.", "advice": "seal it"}
+
+
+@pytest.mark.parametrize(("frozen", "outcome"), [
+    (FIRST, "met"),  # with the first look, whose own word would do as well
+    (SECOND, "short"),
+    ("f" * 40, "short"),  # it merges the second look, and the first stood there before
+])  # fmt: skip
+def test_a_plan_that_came_after_the_first_look_sets_no_boundary(tmp_path: Path, frozen: str, outcome: str) -> None:
+    record = record_of(tmp_path, 0.031, None, plan=PLANNED)
+    shown = replace(seen(record, *[None] * 5), ancestry=LINE)
+
+    finding = judged(tmp_path, shown, promised=registered(frozen_at=frozen, **SELF_DECLARED))
+
+    assert finding is not None
+    assert finding.outcome == outcome
+    late = "with a boundary that plans/drainage.yaml set only after the first look: 5 unadjusted looks"
+    assert (late in finding.message) == (outcome == "short")
+
+
+@pytest.mark.parametrize("frozen", [None, "9" * 40])
+def test_where_the_order_of_plan_and_first_look_is_not_shown_its_grade_decides(
+    tmp_path: Path, frozen: str | None
+) -> None:
+    record = record_of(tmp_path, 0.031, None, plan=PLANNED)
+    shown = replace(seen(record, *[None] * 5), ancestry=LINE)
+
+    sealed = judged(tmp_path, shown, promised=registered(frozen_at=frozen))
+    at_least = registered(frozen_at=frozen, grade=None, at_least="repository-order")
+    unsealed = judged(tmp_path, shown, promised=registered(frozen_at=frozen, **SELF_DECLARED))
+
+    assert sealed is not None
+    assert sealed.outcome == "met"
+    assert getattr(judged(tmp_path, shown, promised=at_least), "outcome", "") == "met"
+    assert unsealed is not None
+    assert (unsealed.outcome, unsealed.message, unsealed.remedy) == (
+        "undecided",
+        "Whether plans/drainage.yaml set its looks before the first one is not known (they came together).",
+        "Seal it.",
+    )
+
+
+def test_what_the_first_look_told_holds_beside_a_plan_that_came_late(tmp_path: Path) -> None:
+    record = record_of(tmp_path, 0.031, WHOLE_PLAN, plan=PLANNED)
+    shown = replace(seen(record, *[Look(1, 5, boundary="obrien-fleming")] * 5), ancestry=LINE)
+    late = registered({"planned": 5, "boundary": "pocock"}, frozen_at=SECOND, **SELF_DECLARED)
+
+    finding = judged(tmp_path, shown, promised=late)
+
+    assert finding is not None
+    assert finding.outcome == "met"
+    assert "boundary that its first look told." in finding.message
+
+
+@pytest.mark.parametrize("look", [WHOLE_PLAN, None])
+def test_a_promise_that_is_not_known_decides_nothing(tmp_path: Path, look: Document | None) -> None:
+    record = record_of(tmp_path, 0.0000001, look, plan=PLANNED)
+    shown = seen(record, *[record.look and Look(1, 5, boundary="obrien-fleming")] * 5)
+
+    finding = judged(tmp_path, shown, promised=Promise(FILE, "H1"))
+
+    assert finding is not None
+    assert (finding.outcome, finding.message, finding.remedy) == (
+        "undecided",
+        "What plans/drainage.yaml promised is not known.",
+        "Judge a clone that holds the whole history.",
+    )
+
+
+@pytest.mark.parametrize("history", [True, False])
+def test_a_record_that_does_not_tell_its_look_is_not_judged_as_the_first(tmp_path: Path, history: bool) -> None:
+    record = record_of(tmp_path, 0.0000001, None, plan=PLANNED)
+
+    finding = judged(tmp_path, *[seen(record, None)] if history else [None], promised=registered())
+
+    assert finding is not None
+    assert (finding.outcome, finding.message, finding.remedy) == (
+        "undecided",
+        "The record does not tell at which of the 5 looks that were planned it was taken.",
+        "Give look.number.",
+    )
+
+
+@pytest.mark.parametrize(("p", "outcome"), [(0.031, "undecided"), (0.2, "short")])
+def test_a_last_look_alone_does_not_show_that_its_boundary_was_planned(
+    tmp_path: Path, p: float, outcome: str
+) -> None:
+    """As a squash leaves it; above the limit of O'Brien-Fleming, .0413, it falls short whenever that was set."""
+    record = record_of(tmp_path, p, WHOLE_PLAN)
+
+    finding = judged(tmp_path, seen(record, record.look))
+
+    assert finding is not None
+    assert finding.outcome == outcome
+    if outcome == "undecided":
+        assert finding.message == (
+            "The first result that the history shows is by its own word from look 5, so whether its boundary was "
+            "planned before look 1 is not known."
+        )
+        assert finding.remedy.startswith(
+            "Name under plan the registration that sets the boundary, or judge a history"
+        )
+
+
+def test_a_registration_shows_it_in_place_of_the_history(tmp_path: Path) -> None:
+    record = record_of(tmp_path, 0.031, WHOLE_PLAN, plan=PLANNED)
+
+    finding = judged(tmp_path, seen(record, record.look), promised=registered())
+
+    assert finding is not None
+    assert finding.outcome == "met"
+
+
+ONE_SIDED: Document = {"sides": 1, "tail": "greater"}
+UNEVEN = ", with information as 20 : 22 : 24 : 26 : 100,"
+
+
+@pytest.mark.parametrize(
+    ("test", "sizes", "looks", "error"),
+    # Recomputed by scipy.stats.multivariate_normal in tests/compare/test_looks_facts.py.
+    [
+        ({}, (20, 22, 24, 26, 100), f"looks at 0.05{UNEVEN}", "0.121"),
+        (ONE_SIDED, (20, 40, 60, 80, 100), "one-sided looks at 0.05", "0.13"),
+        ({**ONE_SIDED, "alpha": 0.025}, (20, 40, 60, 80, 100), "one-sided looks at 0.025", "0.0709"),
+        ({}, (20, 40, None, 80, 100), "looks at 0.05", "0.142"),
+    ],
+)
+def test_the_cost_of_looks_is_by_sides_and_units(
+    tmp_path: Path, test: Document, sizes: tuple[float | None, ...], looks: str, error: str
+) -> None:
+    record = record_of(tmp_path, 0.015, None)
+    write_tree(
+        tmp_path, drainage(test={"name": "z", "statistic": "z", "p": 0.015, **test}, estimate=...), policy=None
+    )
+    results = tuple(replace(one, size=n) for one, n in zip(seen(record, *[None] * 5).results, sizes, strict=True))
+
+    finding = judged(tmp_path, LooksSeen(results))
+
+    assert finding is not None
+    assert f": 5 unadjusted {looks} have a real type I error of {error};" in finding.message
+
+
+def test_looks_that_stand_too_close_give_the_least_error(tmp_path: Path) -> None:
+    """Two looks at 4999 and 5000 of 10000 units count as one: .0831 or more, and Pocock's level .0294 or less."""
+    record = record_of(tmp_path, 0.015, None)
+    results = tuple(
+        replace(one, size=n) for one, n in zip(seen(record, *[None] * 3).results, (4999, 5000, 10000), strict=True)
+    )
+
+    finding = judged(tmp_path, LooksSeen(results))
+
+    assert finding is not None
+    told = "3 unadjusted looks at 0.05, with information as 4999 : 5000 : 10000, have a real type I error of"
+    assert f"{told} at least 0.0831;" in finding.message
+    assert "a Pocock boundary over 3 looks would have been at most 0.0294 at each" in finding.remedy
+
+
+def test_a_safety_outcome_pays_no_penalty_for_looks(tmp_path: Path) -> None:
+    record = record_of(tmp_path, 0.031, None, harm=True)
+
+    finding = judged(tmp_path, cut(seen(record, *[None] * 5)))
+
+    assert finding is not None
+    assert (finding.outcome, finding.message) == (
+        "does-not-apply",
+        "A safety outcome: no penalty for several looks is put on reporting a possible harm.",
+    )
 
 
 @pytest.mark.parametrize("look", [None, {"number": 1}, {"number": 1, "planned": 1}, WHOLE_PLAN])
@@ -229,12 +492,12 @@ def test_where_the_history_was_not_asked_nothing_is_said_of_it(tmp_path: Path) -
 
     assert finding is not None
     assert finding.message.endswith(
-        "is within the nominal 0.0413 of the obrien-fleming boundary that the plan sets."
+        "is within the nominal 0.0413 of the obrien-fleming boundary that the record tells."
     )
 
 
 def test_a_boundary_without_a_look_in_the_history_is_not_late(tmp_path: Path) -> None:
-    record = record_of(tmp_path, 0.031, WHOLE_PLAN)
+    record = record_of(tmp_path, 0.000001, {**WHOLE_PLAN, "number": 1})
 
     finding = judged(tmp_path, replace(seen(record, record.look), results=()))
 

@@ -67,6 +67,7 @@ def test_without_a_margin_the_message_is_another(tmp_path: Path) -> None:
     assert answer.rule(RULE)["message"].startswith(
         "The claim is one of equivalence and gives no margin (t(38) = 0.3795"
     )
+    assert "; 90 % interval by its standard error -0.413 to 0.653);" in answer.rule(RULE)["message"]
     assert answer.rule(RULE)["remedy"].startswith("Give estimate.margin as it was set before the data")
 
 

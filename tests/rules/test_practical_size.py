@@ -97,3 +97,52 @@ def test_a_size_that_is_met_is_explained_too(tmp_path: Path, capsys: pytest.Capt
     assert main(["explain", "drainage/earthworm-biomass", str(tmp_path)]) == 0
 
     assert "reaches the smallest effect of interest, 0.12." in " ".join(capsys.readouterr().out.split())
+
+
+@pytest.mark.parametrize(
+    ("changes", "message", "remedy"),
+    [
+        ({"smallest_effect": ...}, "the smallest effect of interest", "estimate.smallest_effect"),
+        ({"interval": ...}, "an interval with two limits", "estimate.interval, or estimate.standard_error"),
+        (
+            {"smallest_effect": ..., "interval": ...},
+            "the smallest effect of interest and an interval with two limits",
+            "estimate.smallest_effect and estimate.interval, or estimate.standard_error",
+        ),
+    ],
+)
+def test_only_what_is_missing_is_asked_for(tmp_path: Path, changes: Document, message: str, remedy: str) -> None:
+    record = lift(**{f"estimate__{name}": value for name, value in changes.items()})
+    said = judge(tmp_path, record, policy=POLICY_ON).rule(RULE)
+
+    assert said["outcome"] == "undecided"
+    assert said["message"].endswith(f" does not give {message}.")
+    assert said["remedy"] == f"Give {remedy}."
+
+
+@pytest.mark.parametrize(
+    ("scale", "value", "error", "smallest", "outcome", "told"),
+    [
+        # .10 with 1.96 standard errors of .0275: .0461 to .154. Odds ratio 1.2 with .0445: 1.10 to 1.31.
+        ("linear", "0.10", 0.0275, 0.30, "short", "95 % interval by its standard error 0.0461 to 0.154"),
+        ("linear", "0.10", 0.0275, 0.15, "met", ""),
+        ("log", "1.20", 0.0445, 1.5, "short", "95 % interval by its standard error 1.1 to 1.31"),
+        ("log", "1.20", 0.0445, 1.3, "met", ""),
+    ],
+)
+def test_without_an_interval_the_standard_error_gives_one(  # one argument a column
+    tmp_path: Path, scale: str, value: str, error: float, smallest: float, outcome: str, told: str
+) -> None:
+    measure = "odds ratio" if scale == "log" else "difference"
+    estimate = {
+        "measure": measure,
+        "scale": scale,
+        "value": value,
+        "standard_error": error,
+        "smallest_effect": smallest,
+    }
+    record = lift(test={"name": "Wald", "p": 0.0001}, estimate=estimate)
+    said = judge(tmp_path, record, policy=POLICY_ON).rule(RULE)
+
+    assert said["outcome"] == outcome
+    assert told in said["message"]

@@ -65,6 +65,27 @@ def test_a_broken_link_to_a_repository_is_no_missing_one(root: Path, write: Writ
     assert error.advice == "mend the repository, then run again"
 
 
+@pytest.mark.parametrize("head", [b"ref: elsewhere\n", b"", b"no id\n"])
+def test_a_repository_whose_head_is_broken_is_no_plain_folder(
+    git: Git, root: Path, write: Write, head: bytes
+) -> None:
+    """Git passes it over as if there were none (seen with git 2.39)."""
+    write("sub/a.json", "{}")
+    git("commit", "-q", "--allow-empty", "-m", "first")
+    write(".git/HEAD", head)
+    error = refusal(toplevel, root / "sub")
+    assert error.message == f"there is a repository at {root}, and git cannot read it"
+    assert error.advice == "see that .git/HEAD there names a branch or a commit, or clone the repository anew"
+
+
+def test_a_repository_above_where_git_stops_is_none(git: Git, root: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    inner = root / "inner" / "most"
+    inner.mkdir(parents=True)
+    monkeypatch.setenv("GIT_CEILING_DIRECTORIES", str(root / "inner"))
+    assert git("rev-parse", "--is-inside-work-tree") == "true"
+    assert toplevel(inner) is None
+
+
 def test_a_bare_repository_has_no_work_tree(git: Git, root: Path) -> None:
     git("clone", "-q", "--bare", ".", "bare.git")
     assert "must be run in a work tree" in refusal(toplevel, root / "bare.git").message
@@ -309,12 +330,11 @@ def test_a_revision_is_resolved_to_its_commit(git: Git, root: Path) -> None:
 
 @pytest.mark.parametrize("name", ["nope", "0" * 39 + "1", "", "--all", "a\0b", "HEAD~9", "two words"])
 def test_an_unknown_revision_is_named(git: Git, root: Path, name: str) -> None:
+    """What may be fetched is in `test_fetching.py`: here there is nothing to fetch from."""
     git("commit", "-q", "--allow-empty", "-m", "first")
     error = refusal(resolve, root, name)
-    plain = name.replace("\0", "\\x00")
-    quoted = f"'{plain}'" if not plain or " " in plain or "\\" in plain or "~" in plain else plain
-    assert error.message == f"git knows no revision {plain} here"
-    assert error.advice == f"name a commit, or run `git fetch --depth=1 origin {quoted}`"
+    assert error.message == f"git knows no revision {name.replace(chr(0), chr(92) + 'x00')} here"
+    assert error.advice.startswith("name a commit that is here")
 
 
 def test_a_shallow_clone_advises_the_fetch_and_does_not_fetch(git: Git, root: Path, tmp_path: Path) -> None:

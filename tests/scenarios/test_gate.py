@@ -41,6 +41,23 @@ def test_a_tree_without_a_policy_is_judged_by_the_built_in_one(tmp_path: Path) -
     ]
 
 
+def test_a_base_without_a_policy_is_what_is_told(repository: Path) -> None:
+    git(repository, "rm", "-q", "gatecheck.yaml")
+    base = commit_all(repository, "no policy")
+
+    none = weigh(repository, "--base", "HEAD").verdict["notes"]
+    write_tree(repository, drainage())
+    first = weigh(repository, "--base", "HEAD").verdict["notes"]
+
+    assert none == [
+        "The base has no gatecheck.yaml, so the built-in starting policy applies; `gatecheck start` writes one."
+    ]
+    assert first[:2] == [
+        f"The policy gatecheck.yaml is new here; what counts is the base, {base[:12]}.",
+        "The base has no gatecheck.yaml, so the built-in starting policy applies.",
+    ]
+
+
 def test_an_empty_tree_is_no_pass(tmp_path: Path) -> None:
     answer = judge(tmp_path)
 

@@ -124,6 +124,48 @@ def test_a_waiver_lives_and_ends(station: Path, capsys: pytest.CaptureFixture[st
     )
 
 
+def test_another_layout_of_the_file_does_not_change_who_may_grant(
+    station: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """The numbers are Ada's, whoever sets them out otherwise: she grants herself nothing, and Cleo may grant."""
+    (station / "r000.json").write_text(json.dumps(YIELD, indent=4), encoding="utf-8")
+    commit(station, "2021-05-02", "Cleo Test <cleo@example.org>")
+    digest = digest_told(capsys, station)
+
+    grant(station, digest, "Ada Example")
+    commit(station, "2021-05-03", "Bo Sample <bo@example.org>")
+    by_ada = weigh(station)
+    grant(station, digest, "Cleo Test")
+    commit(station, "2021-05-04", "Bo Sample <bo@example.org>")
+    by_cleo = weigh(station)
+
+    assert (by_ada.status, by_ada.verdict["notes"]) == (
+        1,
+        [f"{WHAT} does not apply: it was granted by the author of the record's change."],
+    )
+    assert (by_cleo.status, by_cleo.verdict["notes"]) == (0, [])
+
+
+def test_in_a_shallow_clone_a_waiver_needs_the_history(
+    station: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    grant(station, digest_told(capsys, station))
+    commit(station, "2021-05-03")
+    clone = tmp_path / "clone"
+    git(tmp_path, "clone", "-q", "--depth=1", "-o", "field", station.as_uri(), str(clone))
+
+    cut = weigh(clone)
+    (note,) = cut.verdict["notes"]
+    subprocess.run(["bash", "-c", note.split("`")[1]], cwd=clone, check=True, capture_output=True)
+
+    assert cut.status == 1
+    assert note == (
+        f"{WHAT} does not apply: who changed the record is not known here: the history of this clone is cut; run "
+        "`git fetch --unshallow field`."
+    )
+    assert (weigh(clone).status, weigh(clone).verdict["notes"]) == (0, [])
+
+
 def test_another_wording_keeps_a_waiver(station: Path, capsys: pytest.CaptureFixture[str]) -> None:
     grant(station, digest_told(capsys, station))
     (station / "r000.json").write_text(json.dumps(changed(YIELD, claim="Liming helps.")), encoding="utf-8")

@@ -13,7 +13,9 @@ from scipy import integrate, stats
 
 from gatecheck.weigh import looks, roots
 from gatecheck.weigh.looks import (
+    apart,
     drift_needed,
+    error_of_looks_taken,
     error_of_unplanned_looks,
     exit_probabilities,
     exit_probabilities_by_side,
@@ -123,6 +125,53 @@ def test_too_few_nodes_are_no_answer(monkeypatch: pytest.MonkeyPatch) -> None:
 
     with pytest.raises(ArithmeticError, match=r"the probabilities of the looks add up to 0\.53\d+ instead of 1"):
         exit_probabilities([3.0, 3.0, 3.0], [1, 2, 3])
+
+
+@pytest.mark.parametrize("sides", [1, 2])
+@pytest.mark.parametrize("information", [[20, 40, 60, 80, 100], [20, 22, 24, 26, 100], [0.1, 0.9, 1.0], [7.0]])
+@pytest.mark.parametrize("alpha", [0.05, 0.001])
+def test_unadjusted_looks_as_taken_against_the_multivariate_normal(
+    information: list[float], alpha: float, sides: int
+) -> None:
+    """The source is scipy.stats.multivariate_normal, which integrates by random numbers, good to 1e-5."""
+    levels, limits = np.array(information), np.full(len(information), -stats.norm.ppf(alpha / sides))
+    covariance = np.sqrt(np.minimum.outer(levels, levels) / np.maximum.outer(levels, levels))
+    normal = stats.multivariate_normal(cov=covariance, seed=1)
+    never = float(normal.cdf(limits, lower_limit=-limits if sides == 2 else np.full(limits.size, -inf)))
+
+    assert error_of_looks_taken(information, alpha, sides=sides) == pytest.approx(1 - never, abs=2e-5)
+
+
+def test_unadjusted_looks_by_equal_steps_are_those_of_the_table() -> None:
+    """Both routes at five looks: two-sided by half of alpha a side."""
+    found = error_of_looks_taken([1, 2, 3, 4, 5], 0.05)
+
+    assert found == pytest.approx(float(error_of_unplanned_looks(5, 0.05)), rel=1e-13)
+
+
+@pytest.mark.parametrize(
+    ("information", "alpha", "sides"),
+    [([1, 2], 0.0, 2), ([1, 2], 1.0, 1), ([1, 2], nan, 2), ([1, 2], 0.05, 3), ([2, 1], 0.05, 2), ([], 0.05, 2)],
+)
+def test_unadjusted_looks_outside_the_domain(information: list[float], alpha: float, sides: int) -> None:
+    assert np.isnan(error_of_looks_taken(information, alpha, sides=sides))
+
+
+@given(st.lists(st.floats(1, 1e5), min_size=1, max_size=40, unique=True).map(sorted))
+@settings(max_examples=60, deadline=None)
+def test_looks_kept_apart_can_be_computed(levels: list[float]) -> None:
+    kept = apart(levels)
+
+    assert kept[-1] == levels[-1]
+    assert set(kept.tolist()) <= set(levels)
+    left_out = np.array([each for each in levels if each not in kept.tolist()])
+    after = np.array([kept[kept > each].min() for each in left_out])
+    assert (after - left_out < looks.LEAST_STEP * levels[-1]).all()
+    assert 0.05 - 1e-12 <= error_of_looks_taken(kept, 0.05) < 1
+
+
+def test_no_looks_are_none_apart() -> None:
+    assert apart([]).size == 0
 
 
 def simulated_exits(bounds: Array, information: Array, drift: float, seed: int, paths: int) -> Array:
