@@ -30,6 +30,7 @@ _LANDMARKS = 40
 _PARTS = np.arange(1, 8) / 8
 #: So many units (per group) allow whatever the test allows.
 _SOME_UNITS = 100
+_NEARLY_SURE = 1 - 1e-9
 _USUAL_ALPHA, _USUAL_POWER = 0.05, 0.8
 _WEIGHINGS = {
     "observed-effect": of_standing.Weighing.OBSERVED_EFFECT,
@@ -54,13 +55,13 @@ def design(question: DesignQuestion, policy: Policy) -> Design:
     plan = plan_of(question, applied.evidence.scale)
     prior = question.prior if question.prior is not None else applied.evidence.prior
     alternative, needs = _needs(plan, applied, prior)
+    log_p_limits = _log_p_limits(question, applied)
     wanted = _Wanted(
-        tuple((_WEIGHINGS[need.alternative], need.log_likelihood_ratio) for need in needs),
-        _log_p_limit(question, applied),
+        tuple((_WEIGHINGS[need.alternative], need.log_likelihood_ratio) for need in needs), log_p_limits
     )
     levels = sorted({*ASSURANCES, question.assurance})
     least = _least_sizes(plan, wanted, [*levels, *_POINTS])
-    (bare,) = _least_sizes(plan, _Wanted((), math.log(_USUAL_ALPHA)), [_USUAL_POWER])
+    (bare,) = _least_sizes(plan, _Wanted((), (math.log(_USUAL_ALPHA),)), [_USUAL_POWER])
     serving = _at_sizes(plan, wanted, [*least, bare])
     return Design(
         question=question,
@@ -68,7 +69,7 @@ def design(question: DesignQuestion, policy: Policy) -> Design:
         alternative=alternative,
         prior=prior,
         needs=needs,
-        log_p_limit=wanted.log_p,
+        log_p_limit=log_p_limits[-1],
         statistic=plan.test.statistic,
         levels=tuple(
             Level(level, None if n is None else serving[n]) for level, n in zip(levels, least, strict=False)
@@ -80,10 +81,10 @@ def design(question: DesignQuestion, policy: Policy) -> Design:
 
 @struct
 class _Wanted:
-    """What is wanted of a result: log likelihood ratios, each by a weighing, and the log of a p-value."""
+    """What is wanted of a result: log likelihood ratios, each by a weighing, and the log of a p-value by look."""
 
     log_ratios: tuple[tuple[of_standing.Weighing, float], ...]
-    log_p: float
+    log_p: tuple[float, ...]
 
 
 def _needs(plan: Plan, applied: Applied, prior: float) -> tuple[str, tuple[Need, ...]]:
@@ -135,33 +136,61 @@ def _allows(plan: Plan, alternative: str) -> bool:
     return bool(np.isfinite(of_standing.log_lr(planned, _WEIGHINGS[alternative], np.ones_like(some))).all())
 
 
-def _log_p_limit(question: DesignQuestion, applied: Applied) -> float:
-    """The p that family and looks ask for at the last look: Bonferroni over the family, at the boundary's level."""
+def _log_p_limits(question: DesignQuestion, applied: Applied) -> tuple[float, ...]:
+    """The p that family and looks ask for at each look: Bonferroni over the family, at the boundary's level."""
     behind = {"family": question.family > 1, "looks": question.looks > 1}
     if not any(behind.values()):
-        return 0.0
+        return (0.0,)
     levels = [getattr(applied.rules.get(rule), "alpha", _USUAL_ALPHA) for rule, there in behind.items() if there]
     alpha = min(levels) / question.family
     if question.looks == 1:
-        return math.log(alpha)
+        return (math.log(alpha),)
     from gatecheck.weigh import spending  # noqa: PLC0415  # most designs have one look
 
     kind = spending.BoundaryKind[question.boundary.upper().replace("-", "_")]
     limits = spending.boundary(kind, np.arange(1, question.looks + 1), alpha, sides=question.sides)
-    nominal = float(spending.nominal_p(limits, sides=question.sides)[-1])
-    if math.isnan(nominal):
+    if np.isnan(limits).any():
         raise WrongUsage(
             f"A boundary {question.boundary} over {question.looks} looks cannot keep the level {alpha:.4g}: "
             "choose another --boundary, or a smaller --family."
         )
-    return math.log(nominal)
+    with np.errstate(divide="ignore"):
+        return tuple(np.log(spending.nominal_p(limits, sides=question.sides)).tolist())
 
 
 def _standing(plan: Plan, wanted: _Wanted, n: Floats) -> tuple[Planned, Floats, Floats]:
     """The test at each number of units (per group), its least value, and the assurance."""
+    *earlier, last = wanted.log_p
     planned = plan.at(n)
-    least = of_standing.least_value(planned, wanted.log_ratios, wanted.log_p)
-    return planned, least, of_standing.assurance(planned, least)
+    least = of_standing.least_value(planned, wanted.log_ratios, last)
+    assured = of_standing.assurance(planned, least)
+    if earlier and not plan.asked.only_last_look:
+        assured = assured + _by_earlier_looks(plan, wanted, n, assured)
+    return planned, least, assured
+
+
+def _by_earlier_looks(plan: Plan, wanted: _Wanted, n: Floats, at_last: Floats) -> Floats:
+    """What equally spaced looks before the last add to the assurance, where one goes on until the claim stands.
+
+    By the normal process of the looks, at each of which the same evidence is wanted from the units so far, and the
+    p-value of its boundary.
+    """
+    from gatecheck.weigh import looks  # noqa: PLC0415  # most designs have one look
+
+    information = np.arange(1, len(wanted.log_p) + 1) / len(wanted.log_p)
+    limits = np.full((len(wanted.log_p), n.size), np.inf)
+    for look, (share, log_p) in enumerate(zip(information, wanted.log_p, strict=True)):
+        some = n * share >= plan.test.fewest
+        planned = plan.at(n[some] * share)
+        least = of_standing.least_value(planned, wanted.log_ratios, log_p)
+        limits[look, some] = of_standing.as_z(planned, least)
+    drift, added = plan.at(n).ncp, np.zeros_like(n)
+    # Where the last look leaves next to nothing to add the drift may be beyond the integration.
+    for row in np.flatnonzero(np.isfinite(limits[-1]) & (at_last < _NEARLY_SURE)):
+        each, mean = limits[:, row], float(drift[row])
+        over_all = looks.power_of_looks(each, information, mean, sides=plan.asked.sides)
+        added[row] = over_all - looks.power_of_looks(each[-1:], information[-1:], mean, sides=plan.asked.sides)
+    return np.clip(added, 0.0, 1 - at_last)
 
 
 def _least_sizes(plan: Plan, wanted: _Wanted, levels: Sequence[float]) -> list[int | None]:

@@ -154,7 +154,11 @@ _TESTS: Mapping[PlannedTest, PlannableTest] = {
         _R, "r", 4, _DIRECTED, lambda plan, n: tests.correlation(plan.effect, n, one_sided=plan.one_sided)
     ),
     "one-way-F": PlannableTest(
-        _F, "F", 2, frozenset({_GROUPS}), lambda plan, n: tests.one_way_f(plan.effect, plan.groups, n)
+        _F,
+        "F",
+        2,
+        frozenset({_GROUPS}),
+        lambda plan, n: tests.one_way_f(plan.effect, plan.groups, n, scale=plan.scale),
     ),
     "chi-squared": PlannableTest(
         _W, "chi2", 1, frozenset({_DF}), lambda plan, n: tests.chi_squared(plan.effect, plan.df, n)

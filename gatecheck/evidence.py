@@ -142,23 +142,25 @@ def _choose(
 
 
 def _pooled(statistics: Statistics, columns: Columns, together: Together, on_all: Booleans) -> Statistics:
-    """The statistics with the pooled z where a row is judged on several records."""
+    """The statistics with the pooled t or z where a row is judged on several records."""
     if not on_all.any():
         return statistics
     one_sided = statistics.one_sided & on_all
-    z = np.where(one_sided, together.z * columns.test.toward, together.z)
-    kind = np.where(on_all, weigh.Statistic.Z, statistics.kind)
-    value = np.where(on_all, z, statistics.value)
-    no_df = np.where(on_all, np.nan, 0.0)
-    from_z = weigh.log_p(kind, value, statistics.df1 + no_df, statistics.df2 + no_df, statistics.one_sided)
+    pooled = np.where(one_sided, together.t * columns.test.toward, together.t)
+    by_t = np.isfinite(together.df)
+    kind = np.where(on_all, np.where(by_t, weigh.Statistic.T, weigh.Statistic.Z), statistics.kind)
+    value = np.where(on_all, pooled, statistics.value)
+    df1 = np.where(on_all, np.where(by_t, together.df, np.nan), statistics.df1)
+    df2 = np.where(on_all, np.nan, statistics.df2)
+    log_p = weigh.log_p(kind, value, df1, df2, statistics.one_sided)
     return Statistics(
         kind,
         value,
-        statistics.df1 + no_df,
-        statistics.df2 + no_df,
+        df1,
+        df2,
         statistics.one_sided,
         statistics.recovered & ~on_all,
-        np.where(on_all, from_z, statistics.log_p),
+        np.where(on_all, log_p, statistics.log_p),
     )
 
 

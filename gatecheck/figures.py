@@ -12,6 +12,7 @@ from gatecheck.model.verdict import Figures, Sensitivity
 from gatecheck.policy import AlternativeName, Applied
 from gatecheck.rules.rule import Table
 from gatecheck.rules.weighed import tell_unweighed
+from gatecheck.rules.words import tell_others, tell_pooled
 
 _USUAL_RISK = 0.05
 #: From what a screen may start with to near certainty.
@@ -26,6 +27,14 @@ _ERRS = {
     "bound": (
         "errs in favour of the claim: the most that alternatives spread smoothly about no effect give for this p "
         "(a single one picked after the data can give more)"
+    ),
+}
+#: How records are weighed that are pooled, and whether it is by their sizes.
+_WEIGHTS = {
+    False: "Each counts by the inverse of its squared standard error.",
+    True: (
+        "Each counts by its size, as standard errors on fewer than 30 degrees of freedom are too uncertain to "
+        "choose the weights."
     ),
 }
 
@@ -85,16 +94,31 @@ class FigureTable:
             float(self.needed[alternative][row]),
             f"{_ERRS[alternative]}; the prior needed is for a risk of {percent(wanted, wanted)}.{recovered}"
             f"{self._together(row)}",
+            self._pooled(row),
         )
+
+    def _pooled(self, row: int) -> str:
+        """With which records a row is pooled, how, and to what."""
+        columns, evidence = self.table.columns, self.table.evidence
+        if not evidence.on_all[row]:
+            return ""
+        return (
+            f"pooled with {tell_others(columns, evidence, row)} by {self._how(row)} to {tell_pooled(evidence, row)}"
+        )
+
+    def _how(self, row: int) -> str:
+        return "random effects" if self.table.applied[row].evidence.together == "random" else "one common effect"
 
     def _together(self, row: int) -> str:
         """On how many records a row is judged, or why it is not judged on all that answer its hypothesis."""
         together = self.table.evidence.together
         if self.table.evidence.on_all[row]:
-            how = "random effects" if self.table.applied[row].evidence.together == "random" else "one common effect"
             spread = decimal(math.exp(together.log_p_spread[row]))
             members = len(together.members[row])
-            return f" Weighed on {members} records of one hypothesis, pooled with {how} (spread: p = {spread})."
+            return (
+                f" Weighed on {members} records of one hypothesis, pooled with {self._how(row)} "
+                f"(spread: p = {spread}). {_WEIGHTS[bool(together.by_size[row])]}"
+            )
         if together.pooled[row]:
             return (
                 " Pooling would make the claim stronger, and no record says that its data are its own (replicates)."

@@ -207,9 +207,11 @@ def _families(base: Sequence[Found], now: Mapping[int, Found]) -> dict[str, Fami
 
 
 def _family(name: str, members: Sequence[Found], now: Mapping[int, Found]) -> FamilyBefore:
-    sizes = [one.record.family.size for one in members if one.record.family and one.record.family.size]
+    declared = [one.record.family for one in members if one.record.family is not None]
+    sizes = [family.size for family in declared if family.size is not None]
     lost = [one.record.id for one in members if not _in_family(now.get(id(one)), name)]
-    return FamilyBefore(max(sizes, default=None), tuple(sorted(lost)))
+    procedures = tuple(sorted({family.procedure for family in declared}))
+    return FamilyBefore(max(sizes, default=None), tuple(sorted(lost)), procedures)
 
 
 def _in_family(one: Found | None, name: str) -> bool:

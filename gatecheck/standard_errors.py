@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from gatecheck import weigh
-from gatecheck.columns import Booleans, Columns, Floats, R, T
+from gatecheck.columns import NO_STATISTIC, Booleans, Columns, F, Floats, R, T
 
 _SYMMETRIC = 0.02
 
@@ -29,3 +29,14 @@ def by_t(columns: Columns) -> Booleans:
 def t_df(columns: Columns) -> Floats:
     """Degrees of freedom of the estimate over its standard error; infinite where it is a z."""
     return np.where(by_t(columns), columns.test.df1.value, np.inf)
+
+
+def error_df(columns: Columns) -> Floats:
+    """Degrees of freedom on which the standard error itself is estimated; infinite where it is a z's, or unknown.
+
+    Where the record gives no statistic they are its units less its groups.
+    """
+    of_f = columns.test.is_one_of(F) & (columns.test.df1.value == 1) & np.isfinite(columns.test.df2.value)
+    left = columns.sample.n - np.maximum(columns.sample.groups, 1)
+    without = columns.test.is_one_of(NO_STATISTIC) & (left > 0)
+    return np.where(of_f, columns.test.df2.value, np.where(without, left, t_df(columns)))

@@ -20,8 +20,9 @@ from gatecheck.columns import Booleans, Columns, Floats
 from gatecheck.model.record import Record
 from gatecheck.model.struct import struct
 from gatecheck.policy import Pooling
-from gatecheck.standard_errors import standard_error
+from gatecheck.standard_errors import error_df, standard_error
 from gatecheck.weigh.default_prior import log_bf_unit_information
+from gatecheck.weigh.quantiles import z_from_log_p
 
 
 @struct
@@ -29,55 +30,65 @@ class Together:
     """What stands behind each row, arrays of shape (n,).
 
     `members` holds the rows that are pooled with a row, itself among them; only itself where it stands alone. On
-    the scale of the estimates less no effect, `z` is the pooled estimate over its standard error, `log_p` the
-    natural log of its two-sided p, `log_p_spread` that of Cochran's Q, and `share` the standard error for one
-    common effect over the one that was used; all nan where a row stands alone. `stated` is where the records say
-    themselves that their data are their own. `apart` says why a row is not pooled with another that answers the
-    same hypothesis; empty where there is none.
+    the scale of the estimates less no effect, `t` is the pooled estimate over its standard error on `df` degrees of
+    freedom (infinite: a z), `log_p` the natural log of its two-sided p, `log_p_spread` that of Cochran's Q, and
+    `share` the standard error for one common effect, if all standard errors were known, over the one that was used;
+    all nan where a row stands alone. `by_size` is where the sizes of the records weigh them, as their standard
+    errors rest on few degrees of freedom. `stated` is where the records say themselves that their data are their
+    own. `apart` says why a row is not pooled with another that answers the same hypothesis; empty where there is
+    none.
     """
 
     members: tuple[tuple[int, ...], ...]
-    z: Floats
+    t: Floats
+    df: Floats
     log_p: Floats
     log_p_spread: Floats
     share: Floats
+    by_size: Booleans
     stated: Booleans
     apart: tuple[str, ...]
 
     @property
     def pooled(self) -> Booleans:
         """Where a row is pooled with another."""
-        return np.isfinite(self.z)
+        return np.isfinite(self.t)
 
 
 def pool_columns(columns: Columns, settings: Sequence[Pooling]) -> Together:
     """Pool the rows of `columns` that answer one hypothesis, each by the setting in the same position."""
     count = len(columns.found)
     members: list[tuple[int, ...]] = [(row,) for row in range(count)]
-    stated, apart = np.zeros(count, np.bool_), [""] * count
-    figures, groups = np.full((4, count), np.nan), _groups([one.record for one in columns.found])
+    by_size, stated, apart = np.zeros(count, np.bool_), np.zeros(count, np.bool_), [""] * count
+    figures, groups = np.full((5, count), np.nan), _groups([one.record for one in columns.found])
     errors = standard_error(columns) if groups else np.empty(0)
+    on_df = error_df(columns) if groups else np.empty(0)
     for group in groups:
         for row in group:
             if settings[row] == "apart" or columns.no_effect_aim[row]:
                 continue
             rows = tuple(each for each in group if _may_join(columns, each, row))
-            apart[row] = why_apart(columns, rows, errors)
-            if len(rows) > 1 and not apart[row]:
+            if len(rows) == 1:
+                continue
+            estimates = _estimates(columns, rows, errors, on_df)
+            apart[row] = why_apart(columns, rows, errors) or estimates.why_no_weights()
+            if not apart[row]:
                 members[row], stated[row] = rows, _say_so([columns.found[each].record for each in rows])
-                figures[:, row] = _pool(columns.estimate.value.value[list(rows)], errors[list(rows)], settings[row])
-    z, log_p, log_p_spread, share = figures
-    return Together(tuple(members), z, log_p, log_p_spread, share, stated, tuple(apart))
+                by_size[row], figures[:, row] = estimates.few_df, estimates.pooled(settings[row])
+    t, df, log_p, log_p_spread, share = figures
+    return Together(tuple(members), t, df, log_p, log_p_spread, share, by_size, stated, tuple(apart))
 
 
 def log_bf_together(columns: Columns, together: Together, one_sided: Booleans) -> Floats:
     """Natural log of the Bayes factor of the pooled estimates under the prior worth one observation.
 
-    nan where a row stands alone, a sample size is missing, or one side is tested (Kass and Wasserman, Journal of
-    the American Statistical Association 90 (1995) 928-934; from memory).
+    It is taken at the z that has the p of the pooled t. nan where a row stands alone, a sample size is missing, or
+    one side is tested (Kass and Wasserman, Journal of the American Statistical Association 90 (1995) 928-934; from
+    memory).
     """
     units = np.array([columns.sample.n[list(rows)].sum() for rows in together.members], np.float64)
-    return log_bf_unit_information(np.where(one_sided, np.nan, together.z**2 / 2), units)
+    z = z_from_log_p(together.log_p, one_sided=False)
+    return log_bf_unit_information(np.where(one_sided, np.nan, z**2 / 2), units)
 
 
 def _groups(records: Sequence[Record]) -> list[list[int]]:
@@ -129,8 +140,6 @@ def why_apart(columns: Columns, rows: tuple[int, ...], errors: Floats) -> str:
     Empty where they are.
     """
     records = [columns.found[row].record for row in rows]
-    if len(records) == 1:
-        return ""
     if any(record.look is not None and (record.look.planned or record.look.number) > 1 for record in records):
         return "looks at one study hold the same data"
     if _share_data(records):
@@ -169,13 +178,48 @@ def _comparable(record: Record) -> tuple[object, ...]:
     return (estimate.measure, estimate.unit, estimate.scale, null, record.population, names)
 
 
-def _pool(estimates: Floats, errors: Floats, setting: Pooling) -> tuple[float, float, float, float]:
-    from gatecheck.weigh import pooling  # noqa: PLC0415  # most trees hold each hypothesis once
+@struct
+class _Estimates:
+    """The estimates of one hypothesis, arrays of shape (k,), with their standard errors and what these rest on.
 
-    fixed = pooled = pooling.pool_fixed(estimates, errors)
-    if setting == "random":
-        # On two studies the method of Hartung and Knapp has one degree of freedom, and says next to nothing.
-        pooled = pooling.pool_random(estimates, errors, spread=pooling.Spread.PAULE_MANDEL, hartung_knapp=False)
-    z = pooled.estimate[0] / pooled.standard_error[0]
-    share = fixed.standard_error[0] / pooled.standard_error[0]
-    return float(z), float(pooling.log_p_pooled(pooled)[0]), float(pooled.log_p_q[0]), float(share)
+    The squared standard errors are inverse to `sizes` where units vary alike; nan where the records do not tell.
+    """
+
+    values: Floats
+    errors: Floats
+    df: Floats
+    sizes: Floats
+
+    @property
+    def few_df(self) -> bool:
+        """Whether the standard errors are too uncertain to choose the weights."""
+        from gatecheck.weigh.pooling import ENOUGH_DF  # noqa: PLC0415  # most trees hold each hypothesis once
+
+        return bool((self.df < ENOUGH_DF).any())
+
+    def why_no_weights(self) -> str:
+        """Why nothing can weigh the estimates; empty where something can."""
+        if np.isfinite(self.sizes).all() or not self.few_df:
+            return ""
+        return "a standard error rests on few degrees of freedom, and a record gives no sample.n to weigh it by"
+
+    def pooled(self, setting: Pooling) -> tuple[float, float, float, float, float]:
+        """The pooled t with its degrees of freedom, and the other figures of `Together` in their order."""
+        from gatecheck.weigh import pooling  # noqa: PLC0415  # most trees hold each hypothesis once
+
+        known = pooling.pool_fixed(self.values, self.errors)
+        pooled = pooling.pool_estimated(self.values, self.errors, self.df, self.sizes, random=setting == "random")
+        t = pooled.estimate[0] / pooled.standard_error[0]
+        share = known.standard_error[0] / pooled.standard_error[0]
+        log_p = pooling.log_p_pooled(pooled)[0]
+        return float(t), float(pooled.df[0]), float(log_p), float(pooled.log_p_q[0]), float(share)
+
+
+def _estimates(columns: Columns, rows: tuple[int, ...], errors: Floats, df: Floats) -> _Estimates:
+    """The estimates of `rows`. Where not all give their numbers of units, degrees of freedom stand for these."""
+    at, sample = list(rows), columns.sample
+    with np.errstate(all="ignore"):
+        of_two = sample.n1 * sample.n2 / (sample.n1 + sample.n2)
+    units = np.where(sample.groups == 2, of_two, sample.n)[at]  # noqa: PLR2004
+    sizes = units if (units > 0).all() else np.where(np.isfinite(df[at]), df[at], np.nan)
+    return _Estimates(columns.estimate.value.value[at], errors[at], df[at], sizes)

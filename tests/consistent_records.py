@@ -296,8 +296,8 @@ def permutation(generator: Generator) -> Document:
 
 
 def adjusted(generator: Generator) -> Document:
-    """A raw z with its p adjusted over a family."""
-    size = int(generator.integers(2, 30))
+    """A raw z with its p adjusted over a family, which is larger than the few spellings of the record told together."""
+    size = int(generator.integers(4, 30))
     z = generator.normal(1, 1.5, size)
     raw = 2 * stats.norm.sf(np.abs(z))
     procedure = str(generator.choice(["bonferroni", "holm", "benjamini-hochberg"]))
@@ -311,7 +311,12 @@ def adjusted(generator: Generator) -> Document:
         corrected = stats.false_discovery_control(raw)
     return {
         "test": {"name": "z", "statistic": "z", "value": float(z[0]), "p": float(raw[0])},
-        "family": {"name": "growth", "size": size, "procedure": procedure, "adjusted_p": float(corrected[0])},
+        "family": {
+            "name": f"growth {generator.integers(2**31)}",
+            "size": size,
+            "procedure": procedure,
+            "adjusted_p": float(corrected[0]),
+        },
     }
 
 

@@ -12,7 +12,8 @@ import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from scipy import special
+from numpy.typing import NDArray
+from scipy import special, stats
 from statsmodels.stats import power
 from support import POLICY, Document, changed
 
@@ -26,7 +27,7 @@ from gatecheck.policies import read_own_policy
 from gatecheck.render import design as told
 from gatecheck.weigh.assurance import Weighing, assurance, least_value
 from gatecheck.weigh.default_prior import log_bf_t
-from gatecheck.weigh.planned import two_sample_t
+from gatecheck.weigh.planned import one_sample_t, two_sample_t
 
 
 def answer(policy: Document = POLICY, **question: Any) -> Design:
@@ -428,12 +429,80 @@ TOLD: tuple[tuple[dict[str, Any], str], ...] = (
     ({"test": "two-sample-t", "ratio": 0.01}, "units in the first group and"),
     ({"test": "paired-t"}, "pairs for a claim on a true effect of 0.5 (paired-t)"),
     ({"test": "two-proportions"}, "units per group for a claim"),
-    ({"test": "correlation", "looks": 3}, "(correlation), at the last of 3 looks (obrien-fleming) to stand"),
+    ({"test": "correlation", "looks": 3}, "(correlation), at one of 3 looks (obrien-fleming), to stand"),
+    (
+        {"test": "correlation", "looks": 26},
+        "(correlation), if it goes on to the last of 26 looks (obrien-fleming), to stand",
+    ),
     ({"test": "one-way-F", "groups": 1000}, "(one-way-F, 1000 groups)"),
     ({"test": "chi-squared", "df": 1, "family": 6}, "(chi-squared, 1 df), as one of a family of 6 to stand"),
     ({"test": "log-rank", "sides": 1, "ratio": 100.0}, "(log-rank, one-sided, ratio 100)"),
     ({"test": "one-proportion", "effect": 0.0007, "assurance": 0.123456789}, "with 12.3456789 % probability"),
 )
+
+
+BY_P_ALONE = changed(POLICY, evidence__prior=0.9, rules={"false-positive-risk": {"limit": 0.5}})
+
+
+def stood(n: int, limits: NDArray[np.float64], effect: float) -> float:
+    """The share of simulated studies of two groups of `n` that cross a limit of p at one of equal looks."""
+    rng = np.random.default_rng(41)
+    x, y = rng.normal(effect, 1, (20_000, n)), rng.normal(0, 1, (20_000, n))
+    crossed = np.zeros(20_000, np.bool_)
+    for look, limit in enumerate(limits, start=1):
+        each = n * look // limits.size
+        t = stats.ttest_ind(x[:, :each], y[:, :each], axis=1)
+        crossed |= (t.pvalue <= limit) & (t.statistic > 0)
+    return float(crossed.mean())
+
+
+def test_the_assurance_is_that_of_all_looks() -> None:
+    """Pocock's nominal p of five looks is .0158 (Pocock 1977); where p alone binds, the last look would take 87."""
+    found = answer(BY_P_ALONE, looks=5, boundary="pocock")
+
+    assert size(found) in {78, 79}
+    assert found.wanted is not None
+    assert stood(size(found), np.full(5, math.exp(found.log_p_limit)), 0.5) == pytest.approx(
+        found.wanted.assurance, abs=0.012
+    )
+
+
+def test_looks_on_too_few_units_for_the_test_add_nothing() -> None:
+    """Two units in all, five looks: only the last has the two that a t takes."""
+    found = answer(BY_P_ALONE, test="one-sample-t", effect=40.0, looks=5)
+
+    assert found.wanted is not None
+    assert found.wanted.size.n == 2
+    planned = one_sample_t(40.0, np.array([2.0]), one_sided=False, scale=1.0)
+    alone = assurance(planned, least_value(planned, [], found.log_p_limit))
+    assert found.wanted.assurance == pytest.approx(float(alone[0]), abs=1e-6)
+
+
+@pytest.mark.parametrize("question", [{"looks": 26}, {"test": "one-way-F", "groups": 3, "looks": 3}], ids=str)
+def test_where_the_last_look_alone_is_counted_the_account_says_so(question: dict[str, Any]) -> None:
+    found = answer(BY_P_ALONE, **question)
+
+    words = " ".join(told(found, 80).split())
+    assert f"if it goes on to the last of {question['looks']} looks" in words
+    assert "over all looks the probability is no smaller, if the study goes on where its claim" in words
+
+
+def test_the_account_says_what_a_look_before_the_last_does() -> None:
+    words = " ".join(told(answer(BY_P_ALONE, looks=5), 80).split())
+
+    assert "at the last look are wanted)" in words
+    assert (
+        "A look ends the study where the claim stands at it, and not where it is within its boundary alone."
+        in words
+    )
+
+
+def test_an_assurance_close_to_one_keeps_its_column() -> None:
+    table = told(answer(BY_P_ALONE, looks=5, assurance=0.999999), 80).split("\n\n")[2]
+
+    assert "99.9999 %" in table
+    assert "  99.9999" in table.splitlines()[-1][20:]
+    assert len({len(line) for line in table.splitlines()}) == 1
 
 
 @pytest.mark.parametrize("width", [80, 140])
@@ -579,7 +648,7 @@ def test_the_command_names_family_and_looks(tmp_path: Path, capsys: pytest.Captu
     assert main(["design", *arguments, str(tmp_path)]) == 0
 
     words = " ".join(capsys.readouterr().out.split())
-    assert "(correlation), as one of a family of 6, at the last of 3 looks (obrien-fleming) to stand" in words
+    assert "(correlation), as one of a family of 6, at one of 3 looks (obrien-fleming), to stand" in words
     assert "at prior 0.2 (a likelihood ratio of 76 and a p of at most" in words
 
 

@@ -101,6 +101,18 @@ def on_all(found: Agreement, rows: Integers, of: int) -> Agreement:
     return Agreement(found.name, found.figures, checked, agrees, *ends, found.harmless, found.borne_out)
 
 
+def with_rows(found: Agreement, rows: Sequence[int], other: Agreement | None, places: Sequence[int]) -> Agreement:
+    """A comparison whose `rows` are those of another one at `places`; not made there where there is no other."""
+    to, at = np.array(rows, np.intp), np.array(places, np.intp)
+    checked, agrees, low, high = found.checked.copy(), found.agrees.copy(), found.low.copy(), found.high.copy()
+    if other is None:
+        checked[to] = False
+    else:
+        checked[to], agrees[to] = other.checked[at], other.agrees[at]
+        low[to], high[to] = other.low[at], other.high[at]
+    return Agreement(found.name, found.figures, checked, agrees, low, high, found.harmless, found.borne_out)
+
+
 @struct
 class Compared:
     """One comparison of one row: whether the figures agree, and what would fit."""

@@ -46,6 +46,11 @@ CONTINUITY = r"(?<!without )(?<!no )(?:yates|continuity)"
 #: Tests that are no estimate over its error, and differ from it by more where effects are large.
 OTHER_METHOD = r"score|log-?rank|likelihood|mantel|\bcmh\b|mcnemar|exact"
 WALD = r"\bwald\b"
+#: Measures that may be ratios, or the relative changes that they make.
+RATIO_OR_CHANGE = (
+    r"\bratios?\b|relative|\bfold\b|fractional|proportional|%|per ?cent|efficacy|effectiveness"
+    r"|^\W*a?(?:or|rr|hr|irr|gmr)\W*$"
+)
 
 
 @functools.lru_cache(maxsize=4096)

@@ -6,15 +6,19 @@ variance, all in their textbook forms (from memory); a test is set against the o
 
 from __future__ import annotations
 
+import math
+from collections.abc import Sequence
+
 import numpy as np
 
-from gatecheck.columns import Booleans, Columns, Floats, Integers, Interval, T, Z
+from gatecheck.columns import Booleans, Columns, Floats, Integers, Interval, T, Z, columns_of
 from gatecheck.compare.agreement import Agreement, in_size, minus, on_all, over_ends, overlap, where, widened
 from gatecheck.compare.design_names import T_TEST, WELCH
 from gatecheck.compare.group_summaries import (
     HARMLESS,
     SAME,
     SUMMARIES,
+    Group,
     Summaries,
     at,
     fits,
@@ -27,6 +31,8 @@ from gatecheck.compare.group_summaries import (
     summarised,
     unmodelled,
 )  # fmt: skip
+from gatecheck.model.found import Found
+from gatecheck.model.numbers import Reported
 from gatecheck.model.struct import struct
 
 _LOST = 1e-12
@@ -39,9 +45,32 @@ _Z_OF_MEANS = r"two[- ]sample z"
 
 def group_numbers(columns: Columns) -> tuple[Agreement, ...]:
     """Every comparison with the summaries of groups, of all rows; none where no record gives them."""
+    return _compared(columns, [summarised(columns, row) for row in range(len(columns.found))])
+
+
+def as_errors(one: Found, name: str) -> tuple[float, ...]:
+    """The standard deviations of the groups of a record if those that it gives are standard errors.
+
+    None where the comparison of that `name` does not agree with them.
+    """
+    columns = columns_of([one])
+    groups = tuple(
+        Group(group.n, group.mean, _times(group.sd, math.sqrt(group.n))) for group in summarised(columns, 0)
+    )
+    with np.errstate(all="ignore"):
+        compared = [each for each in _compared(columns, [groups]) if each.name == name]
+    fits = any(each.checked[0] and each.agrees[0] for each in compared)
+    return tuple(group.sd.value for group in groups) if fits else ()
+
+
+def _times(number: Reported, by: float) -> Reported:
+    return Reported(number.value * by, number.low * by, number.high * by, text=number.text)
+
+
+def _compared(columns: Columns, by_row: Sequence[tuple[Group, ...]]) -> tuple[Agreement, ...]:
+    """The comparisons with these groups of each row."""
     from gatecheck.compare.analysis_of_variance import analysis_of_variance  # noqa: PLC0415  # F is rarer than t
 
-    by_row = [summarised(columns, row) for row in range(len(columns.found))]
     found: list[Agreement] = []
     for number, compare in ((1, _one_sample), (2, _two_samples)):
         rows = np.array([row for row, groups in enumerate(by_row) if len(groups) == number], np.intp)

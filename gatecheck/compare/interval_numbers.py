@@ -6,8 +6,17 @@ import numpy as np
 
 from gatecheck import weigh
 from gatecheck.columns import CHI2, Booleans, Columns, F, Floats, Interval, R, T, Z
-from gatecheck.compare.agreement import Agreement, in_size, minus, widened
-from gatecheck.compare.design_names import CONTINUITY, FISHER, OTHER_METHOD, PROPORTIONS, WALD, named
+from gatecheck.compare.agreement import Agreement, in_size, minus, overlap, widened
+from gatecheck.compare.design_names import (
+    CONTINUITY,
+    FISHER,
+    OTHER_METHOD,
+    PROPORTIONS,
+    RATIO_OR_CHANGE,
+    WALD,
+    named,
+    says,
+)
 from gatecheck.compare.interval_shapes import (
     ERROR,
     ESTIMATE,
@@ -17,17 +26,21 @@ from gatecheck.compare.interval_shapes import (
     apart_from_test,
     half_width,
     multiples,
+    of_plain_t,
     otherwise_made,
     own_df,
     statistic_size,
 )  # fmt: skip
 from gatecheck.compare.limit_numbers import limit_numbers
+from gatecheck.model.record import Estimate
 
 #: A score test and a Wald interval of the same data may differ by this much (common practice, no source).
 _OTHER_METHOD = 0.10
 #: Likelihood ratio and Wald differ more, and the continuity correction makes chi-squared smaller still.
 _LESS_BY_CORRECTION = 0.50
 _MORE_BY_METHOD = 0.25
+#: An interval by bootstrap, profile or score is so much wider or narrower than that of the statistic at most.
+_OTHER_INTERVAL = 0.50
 _OTHER_METHOD_P = 1.5
 #: An interval that is not symmetric was made another way, and its nearer limit says less about p.
 _SKEWED_P = 10.0
@@ -42,7 +55,22 @@ _METHODS = (
 
 
 def interval_numbers(columns: Columns) -> tuple[Agreement, ...]:
-    """Every comparison of an estimate with its precision and its test."""
+    """Every comparison of an estimate with its precision and its test, on the scale that a record gives or fits."""
+    found = numbers_on_one_scale(columns)
+    if not any(may_be_ratio(one.record.estimate) for one in columns.found):
+        return found
+    from gatecheck.compare.ratio_scales import compared_as_read  # noqa: PLC0415  # ratios that do not say their scale
+
+    return compared_as_read(found, columns, numbers_on_one_scale)
+
+
+def may_be_ratio(estimate: Estimate | None) -> bool:
+    """Whether an estimate may be a ratio, or a relative change, of which the record does not say that it is one."""
+    return estimate is not None and estimate.scale == "linear" and says(RATIO_OR_CHANGE, estimate.measure)
+
+
+def numbers_on_one_scale(columns: Columns) -> tuple[Agreement, ...]:
+    """The same, on the scale of the columns."""
     half = half_width(columns)
     return (
         _estimate_inside(columns),
@@ -119,6 +147,8 @@ def _statistic(
     loose = test.is_one_of(CHI2) | named(columns, of_z, OTHER_METHOD) | named(columns, of_z, CONTINUITY)
     more, less = np.where(loose, _MORE_BY_METHOD, slack), np.where(loose, _LESS_BY_CORRECTION, slack)
     agrees = (low * (1 - less) <= found.high) & (high * (1 + more) >= found.low)
+    other = otherwise_made(columns, checked & ~agrees & ~estimate.standard_error.known)
+    agrees |= other & overlap(widened(Interval(low, low, high), _OTHER_INTERVAL), found)
     # What is tested on one side has that side's sign, in the statistic as in the estimate.
     directed = test.one_sided & test.is_one_of(T, Z)
     against = ((test.value.low > 0) & (estimate.value.high < 0)) | (
@@ -135,6 +165,7 @@ def _statistic(
             "the statistic is of another method (score, likelihood ratio, continuity correction)",
             "it is for another contrast",
             "the value of no effect is another one",
+            *((_METHODS[1],) if INTERVAL in figures else ()),
         ),
         figures,
     )
@@ -175,9 +206,22 @@ def _interval_and_p(columns: Columns, half: Interval) -> Agreement:
     apart = np.abs(np.log(implied / two_sided))
     checked = _comparable_p(columns) & np.isfinite(implied)
     checked &= ~apart_from_test(columns, checked & differs)
-    near = half.known & ~otherwise_made(columns, checked & differs & half.known)
+    near = half.known | of_plain_t(columns, checked & differs & includes & ~half.known)
+    near &= ~otherwise_made(columns, checked & differs & near)
+    # The correction for continuity makes p larger, and an interval is commonly without it.
+    near &= ~(excludes & named(columns, checked & differs & excludes, CONTINUITY))
     far = apart > np.log(np.where(near, _OTHER_METHOD_P, _SKEWED_P))
+    checked &= ~_made_by_counts(columns, checked & differs & far, half)
     return Agreement("sides", (INTERVAL, "p"), checked, ~(differs & far), implied, implied, _METHODS)
+
+
+def _made_by_counts(columns: Columns, rows: Booleans, half: Interval) -> Booleans:
+    """Which of these rows have interval and p from the same counts of events, by two methods."""
+    if not rows.any():
+        return rows
+    from gatecheck.compare.count_numbers import made_by_counts  # noqa: PLC0415  # most intervals and p agree
+
+    return made_by_counts(columns, rows, half)
 
 
 def _p_of(columns: Columns, halves: Floats, df: Floats | None = None) -> Floats:
@@ -215,4 +259,6 @@ def _p_from_estimate(columns: Columns, half: Interval) -> Agreement:
     checked = _comparable_p(columns) & ~test.value.known & np.isfinite(low) & (error.known | (half.low > 0))
     agrees = (reported_low <= high) & (reported_high >= low)
     checked &= ~apart_from_test(columns, checked & ~agrees) & ~otherwise_made(columns, checked & ~agrees)
+    larger = named(columns, checked & ~agrees & (reported_low > high), CONTINUITY)
+    checked &= ~(larger & (reported_low <= _SKEWED_P * high)) & ~_made_by_counts(columns, checked & ~agrees, half)
     return Agreement("p-estimate", (ESTIMATE, "its precision", "p"), checked, agrees, low, high, _METHODS)

@@ -6,8 +6,8 @@ import numpy as np
 
 from gatecheck import weigh
 from gatecheck.columns import CHI2, Booleans, Columns, F, Floats, Interval, R, T, Z
-from gatecheck.compare.agreement import in_size, minus, over_ends, where
-from gatecheck.compare.design_names import named, says
+from gatecheck.compare.agreement import in_size, minus, over_ends, overlap, where, widened
+from gatecheck.compare.design_names import PAIRED, T_TEST, WITHIN_UNITS, named, says
 
 ESTIMATE, ERROR, INTERVAL, STATISTIC = "the estimate", "the standard error", "the interval", "the statistic"
 #: Relative differences that two careful programs may show between multiples of an error (1.96 for 1.959964).
@@ -20,6 +20,8 @@ _EFFECT_SIZE = (
     r"standardi[sz]ed|cohen|hedges|glass|\bsmd\b|effect size|\beta\b|eta[- ]?squared|η|omega|\br ?(2|²|squared)"
     r"|cram[eé]r|\bphi\b|correlation|median|hodges|shift|\bauc\b|common language|rank|dominance|cliff"
 )
+_OF_MEANS = rf"{T_TEST}|{PAIRED}|linear (?:regression|model)|\bols\b|\blm\b|ancova|analysis of covariance"
+_NOT_PLAIN = rf"{WITHIN_UNITS}|generali[sz]ed|quasi|non-?linear|weighted|rank|\bsigned|wilcoxon|trimm|yuen|log-"
 _BY_RANKS = r"\brank|wilcoxon|mann|kruskal|signed"
 
 
@@ -64,6 +66,18 @@ def otherwise_made(columns: Columns, rows: Booleans) -> Booleans:
         told = ((record.estimate.measure if record.estimate else ""), *record.tags)
         found[row] = any(says(_OTHER_INTERVAL, text) for text in told)
     return found
+
+
+def of_plain_t(columns: Columns, rows: Booleans) -> Booleans:
+    """Which of these rows have a t that is the estimate over its error, in a test of means or a linear model.
+
+    Unless it is said to be made another way, their interval is of that same error.
+    """
+    test, error = columns.test, columns.estimate.standard_error
+    size = in_size(columns.estimate.value)
+    ratio = Interval(size.value / error.value, size.low / error.high, size.high / error.low)
+    same = rows & test.is_one_of(T) & overlap(in_size(test.value), widened(ratio, SAME_MULTIPLE))
+    return named(columns, same, _OF_MEANS) & ~named(columns, same, _NOT_PLAIN)
 
 
 def apart_from_test(columns: Columns, rows: Booleans) -> Booleans:

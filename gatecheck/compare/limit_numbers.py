@@ -11,6 +11,7 @@ import numpy as np
 from gatecheck import weigh
 from gatecheck.columns import Booleans, Columns, Interval, R, T, Z
 from gatecheck.compare.agreement import Agreement, in_size, minus, over_ends, overlap, where, widened
+from gatecheck.compare.design_names import PROPORTIONS, named
 from gatecheck.compare.interval_shapes import (
     ERROR,
     ESTIMATE,
@@ -19,17 +20,20 @@ from gatecheck.compare.interval_shapes import (
     STATISTIC,
     apart_from_test,
     multiples,
+    of_plain_t,
     otherwise_made,
     own_df,
     statistic_size,
 )  # fmt: skip
 
-#: How sharp the place of a limit must be known, and by which share of its distance the other one then is off
-#: (common practice, no source).
-_SHARPNESS = ((0.03, 0.10), (0.10, 0.25), (0.30, 2.00))
+#: How sharp the place of a limit must be known, and by which shares of its distance the other one then is off,
+#: away from the estimate and toward it (common practice, no source).
+_SHARPNESS = ((0.03, 0.10, 0.10), (0.10, 0.25, 0.25), (0.30, 2.00, 2.00))
+#: The same where the interval is plainly of the error of a t; one by resampling is rather too narrow than too wide.
+_SHARPNESS_OF_T = ((0.05, 0.03, 0.10),)
 #: An interval of a correlation by ranks is at most so much wider than Fisher's (common practice, no source).
 _BY_RANKS = 1.25
-_SKEWED = ("it is a profile or bootstrap interval", "the level is another one")
+_SKEWED = ("it is a profile or bootstrap interval", "it was made on the log scale", "the level is another one")
 
 
 def limit_numbers(columns: Columns, half: Interval) -> tuple[Agreement, ...]:
@@ -73,6 +77,7 @@ def _limits(columns: Columns, half: Interval) -> Agreement:
         for by in (weigh.t_quantile_two_sided(estimate.level, df) for df in (own_df(columns), infinite))
     ]
     one_off = np.logical_or.reduce([_one_off(to_low, to_high, each) for each in places])
+    one_off |= of_plain_t(columns, _one_off(to_low, to_high, places[0], _SHARPNESS_OF_T) & ~one_off)
     usable = _usable(columns) & np.isfinite(error.high) & (error.low > 0) & ~half.known
     usable &= estimate.low.known & estimate.high.known
     usable &= ~otherwise_made(columns, usable & one_off) & ~apart_from_test(columns, usable & one_off)
@@ -82,15 +87,20 @@ def _limits(columns: Columns, half: Interval) -> Agreement:
     )
 
 
-def _one_off(to_low: Interval, to_high: Interval, expected: Interval) -> Booleans:
+def _one_off(
+    to_low: Interval,
+    to_high: Interval,
+    expected: Interval,
+    sharpness: tuple[tuple[float, float, float], ...] = _SHARPNESS,
+) -> Booleans:
     """Where one distance is sharply the one expected and the other is far from it."""
     one_off = np.zeros(expected.value.shape, np.bool_)
-    for sharp, off in _SHARPNESS:
-        beyond = off * expected.value
-        far = Interval(expected.value, expected.low - beyond, expected.high + beyond)
+    for sharp, away, toward in sharpness:
+        size = expected.value
+        far = Interval(size, expected.low - toward * size, expected.high + away * size)
         for near, other in ((to_low, to_high), (to_high, to_low)):
             blurred = (expected.high - expected.low) + (near.high - near.low)
-            one_off |= overlap(near, expected) & ~overlap(other, far) & (blurred < sharp * expected.value)
+            one_off |= overlap(near, expected) & ~overlap(other, far) & (blurred < sharp * size)
     return one_off
 
 
@@ -124,6 +134,8 @@ def _centre(columns: Columns, half: Interval) -> Agreement:
     apart = in_size(minus(estimate.value, middle)).low > _SHARPNESS[0][1] * reach.value
     usable = _usable(columns) & fits & sharp & ~half.known & (reach.low > 0)
     usable &= ~otherwise_made(columns, usable & apart) & ~apart_from_test(columns, usable & apart)
+    # Intervals of differences of proportions are commonly drawn toward 0 (Newcombe, or units added).
+    usable &= ~named(columns, usable & apart & ~estimate.log_scale, PROPORTIONS)
     return Agreement("centre", (ESTIMATE,), usable, ~apart, middle.low, middle.high, _SKEWED)
 
 

@@ -113,16 +113,21 @@ def _corrected(columns: Columns, evidence: Evidence, where: Booleans, reported: 
 
 
 def adjusted_p(columns: Columns, evidence: Evidence) -> Agreement | None:
-    """An adjusted p against the raw one and the size of its family; `None` where no record gives such a p."""
+    """An adjusted p against the raw one and the size of its family, or all raw ones where the family is whole.
+
+    `None` where no record gives such a p.
+    """
     given = [_adjusted(one.record) for one in columns.found]
     if not any(given):
         return None
+    from gatecheck.compare.adjusted_in_family import within_family  # noqa: PLC0415  # few records give such a p
+
     bounds = np.array([_multiples_of_raw(one.record.family) for one in columns.found]).T
     low, high = (np.exp(end) for end in _log_p_range(columns, evidence))
     from_p = ~np.isfinite(low) & columns.test.p_is_raw
-    low = np.where(from_p, columns.test.p.low, low) * bounds[0]
-    high = np.where(from_p, columns.test.p.high, high) * bounds[1]
-    low, high = np.minimum(low, 1.0), np.minimum(high, 1.0)
+    raw = np.where(from_p, columns.test.p.low, low), np.where(from_p, columns.test.p.high, high)
+    of_own_p = np.minimum(raw[0] * bounds[0], 1.0), np.minimum(raw[1] * bounds[1], 1.0)
+    low, high = within_family(columns, evidence, raw, of_own_p)
     ends = [(np.nan, np.nan) if each is None else (each.low, each.high) for each in given]
     adjusted_low, adjusted_high = np.array(ends).T
     return Agreement(

@@ -2,13 +2,15 @@
 
 A pattern is a row of elements with blanks between them: `a|b` is one of these words, `?` behind it makes it
 optional, `..3` stands for up to three words of the same sentence, `#` for a number and `$` for the end of a clause.
-Words are compared without case; a compound with a hyphen, such as "same-day", is a word of its own. The time taken
-grows with the length of the text and no faster.
+The marks `.|!|?|;|:` stand for themselves, and before the first word of a text stands a full stop, so that a
+pattern can ask for the head of a sentence. Words are compared without case; a compound with a hyphen, such as
+"same-day", is a word of its own. The time taken grows with the length of the text and no faster.
 """
 
 from __future__ import annotations
 
 import bisect
+import itertools
 import re
 from collections import defaultdict
 from collections.abc import Iterable, Sequence
@@ -43,8 +45,8 @@ class Tokens:
 def tokens_of(text: str) -> Tokens:
     """Take a text apart; typographic apostrophes and hyphens are plain ones, and soft hyphens are none."""
     found = list(_TOKEN.finditer(text))
-    words = tuple(one[0].translate(_INVISIBLE).translate(_ALIKE).casefold() for one in found)
-    return Tokens(text, words, tuple(one.span() for one in found), frozenset(words))
+    words = (".", *(one[0].translate(_INVISIBLE).translate(_ALIKE).casefold() for one in found))
+    return Tokens(text, words, ((0, 0), *(one.span() for one in found)), frozenset(words))
 
 
 @struct
@@ -126,7 +128,7 @@ def _after(element: _Element, words: Sequence[str], place: int) -> list[int]:
         return _across(words, place, element.gap)
     after = [place] if element.optional else []
     word = words[place] if place < len(words) else ""
-    if word in element.words or (element.number and word[:1].isdecimal()):
+    if word in element.words or (element.number and word.removeprefix(".")[:1].isdecimal()):
         after.append(place + 1)
     if element.clause_end and (not word or word in _CLAUSE_ENDS):
         after.append(place)
@@ -174,11 +176,7 @@ def spans_of(found: Iterable[tuple[int, int]]) -> Spans:
 
 def words_before(words: Sequence[str], start: int, most: int, stop: frozenset[str]) -> list[str]:
     """Up to `most` words of the same sentence before `start`, the nearest first, up to one of `stop`."""
-    found: list[str] = []
-    for place in range(start - 1, -1, -1):
-        word = words[place]
-        if word in _SENTENCE_ENDS or word in stop or len(found) == most:
-            break
-        if word not in _CLAUSE_ENDS:
-            found.append(word)
-    return found
+    before = (words[place] for place in range(start - 1, -1, -1))
+    ends = _SENTENCE_ENDS | stop
+    same = itertools.takewhile(lambda word: word not in ends, before)
+    return list(itertools.islice((word for word in same if word not in _CLAUSE_ENDS), most))

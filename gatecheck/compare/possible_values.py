@@ -8,6 +8,7 @@ Preprints 4 (2016) e2400; from memory). Everything is computed in whole numbers,
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Callable, Sequence
 from decimal import Decimal
 from fractions import Fraction
@@ -15,9 +16,11 @@ from typing import NamedTuple
 
 from gatecheck.columns import Columns
 from gatecheck.compare.agreement import Agreement, Compared, Kind, gathered
+from gatecheck.compare.design_names import MODELLED, T_TEST, says
+from gatecheck.compare.names import same_unit
 from gatecheck.compare.written import places
 from gatecheck.model.numbers import Reported
-from gatecheck.model.record import Group, Record, Test
+from gatecheck.model.record import Estimate, Group, Record, Test
 
 _MEAN = Kind(
     "item-mean",
@@ -33,6 +36,15 @@ _SD = Kind(
     ("the standard deviation of a group", "the mean of a group", "its number of units", "its number of items"),
     ("it was cut off, not rounded", "items are missing for some units", "it was computed from a rounded mean"),
 )
+_SHARE = Kind(
+    "share",
+    ("the estimate", "the number of units"),
+    (
+        "it is a share of fewer units, since some are missing",
+        "it is weighted, or a mean of shares",
+        "it was cut off, not rounded",
+    ),
+)
 _PERMUTATION = Kind(
     "permutation", ("p", "the number of resamples"), ("the tail was fitted by a curve", "ties were counted by half")
 )
@@ -43,6 +55,14 @@ _LOST = Fraction(1, 10**_ALL_DIGITS)
 _LARGEST = 2.0**53
 #: Of more sums than this that a mean leaves open, some fit any standard deviation.
 _MOST_SUMS = 2000
+_PERCENT = 100
+_IN_PERCENT = r"^\s*(?:%|percent|per cent)\s*$"
+#: A share of units; of what else a share may be, such as ground that is covered, only the author knows.
+_SHARE_WORDS = (
+    r"^(?:(?:the|observed|crude|raw|overall) )*(?:percentage|per ?cent|proportion|share|fraction|prevalence)"
+)
+_OF_WHAT = re.compile(r" (?:of|among) (?:the |all )?([\w-]+)(?: (?:with|that|which|who|having|showing)\b.*)?$")
+_NOT_OF_UNITS = r"weighted|adjusted|imput|mean|bayes"
 
 
 class Ends(NamedTuple):
@@ -54,7 +74,7 @@ class Ends(NamedTuple):
 
 def possible_values(columns: Columns) -> tuple[Agreement, ...]:
     """Every comparison with the values that are possible, of all rows; none where no record has such."""
-    found: dict[Kind, dict[int, Compared]] = {_MEAN: {}, _SD: {}, _PERMUTATION: {}}
+    found: dict[Kind, dict[int, Compared]] = {_MEAN: {}, _SD: {}, _SHARE: {}, _PERMUTATION: {}}
     for row, one in enumerate(columns.found):
         for kind, compared in _of_record(one.record):
             found[kind][row] = compared
@@ -64,7 +84,12 @@ def possible_values(columns: Columns) -> tuple[Agreement, ...]:
 def _of_record(record: Record) -> list[tuple[Kind, Compared]]:
     groups = of_items(record)
     permuted = None if record.test is None else compare_permutation(record.test)
-    each = ((_MEAN, _worst(groups, compare_mean)), (_SD, _worst(groups, compare_sd)), (_PERMUTATION, permuted))
+    each = (
+        (_MEAN, _worst(groups, compare_mean)),
+        (_SD, _worst(groups, compare_sd)),
+        (_SHARE, compare_share(record)),
+        (_PERMUTATION, permuted),
+    )
     return [(kind, compared) for kind, compared in each if compared is not None]
 
 
@@ -165,6 +190,48 @@ def _nearest_sds(total: int, n: int, deviation: Fraction) -> tuple[float, float]
     below -= (below - total) % 2
     low, high = (math.sqrt((max(square, least) - mean_part) / (n - 1)) for square in (below, below + 2))
     return low, high
+
+
+def compare_share(record: Record) -> Compared | None:
+    """Whether a count of units can be this share of all of them; `low` and `high` are the nearest shares.
+
+    None where the events are given, or the record does not plainly say that it is a share of its units.
+    """
+    estimate, n = record.estimate, _units_counted(record)
+    if estimate is None or not n or estimate.value.relation != "=" or not _is_share_of_units(record, estimate):
+        return None
+    told_in_percent = says(_IN_PERCENT, estimate.unit or "") or (not estimate.unit and estimate.value.value > 1)
+    unit = _PERCENT if told_in_percent else 1
+    interval = estimate.interval
+    ends = ends_of(estimate.value, () if interval is None else (interval.low, interval.high))
+    exact = Fraction(estimate.value.value) * n / unit
+    fits = math.ceil(max(ends.low, Fraction(0)) * n / unit) <= math.floor(min(ends.high, Fraction(unit)) * n / unit)
+    return Compared(fits, unit * math.floor(exact) / n, unit * math.ceil(exact) / n)
+
+
+def _units_counted(record: Record) -> int:
+    """The units of a single group of which nothing but their number is given, or of all; 0 where it is not told."""
+    sample = record.sample
+    if sample is None or len(sample.groups) > 1 or sample.clusters is not None or sample.excluded:
+        return 0
+    bare = all((group.events, group.mean, group.sd) == (None, None, None) for group in sample.groups)
+    counted = {group.n for group in sample.groups} | ({sample.n} if sample.n is not None else set())
+    return counted.pop() if bare and len(counted) == 1 else 0
+
+
+def _is_share_of_units(record: Record, estimate: Estimate) -> bool:
+    """Whether the measure is a plain share, of the units of the sample if it says of what."""
+    test, unit = record.test or Test(), None if record.sample is None else record.sample.unit
+    name = f"{test.name or ''} {estimate.measure}"
+    other = (
+        test.statistic in {"t", "F", "r"} or says(T_TEST, name) or says(MODELLED, name) or says(_NOT_OF_UNITS, name)
+    )
+    in_other_unit = estimate.unit not in {None, "1"} and not says(_IN_PERCENT, estimate.unit or "")
+    rest = re.sub(_SHARE_WORDS, "", estimate.measure, flags=re.IGNORECASE)
+    if other or in_other_unit or rest == estimate.measure or estimate.scale == "log" or record.covariates:
+        return False
+    of_what = _OF_WHAT.match(rest)
+    return not rest or (of_what is not None and unit is not None and same_unit(of_what[1], unit))
 
 
 def compare_permutation(test: Test) -> Compared | None:

@@ -4,24 +4,26 @@ What a plan leaves out is not compared. A plan that speaks of its sample (`n`, `
 no rule of exclusion and no interim look promises that there are none; so does one that names its test and no
 covariates.
 
-What a record leaves out differs where the plan promises it and it shapes the result: outcome, test, population, n,
-covariates, family and looks; the rules on families and looks see only what a record tells. Left out and not
-compared are `alpha`, `alternative`, `margin`, `smallest_effect` and `prior`, for which the policy's or none stands
-then, and the `role` where it is `other`, as it is where nothing is said. Sides that are not told are two.
+What a record leaves out differs where the plan promises it and it shapes the result: outcome, test, alpha,
+population, n with its unit, covariates, family with its size, and looks; the rules on families and looks see only
+what a record tells. Left out and not compared are `alternative`, `margin`, `smallest_effect` and `prior`, for which
+the policy's or none stands then, and the `role` where it is `other`, as it is where nothing is said. Sides that are
+not told are two.
 """
 
 from __future__ import annotations
 
 import math
 from collections.abc import Iterable, Iterator
+from dataclasses import replace
 
 from gatecheck.compare.names import same_test, same_unit, same_words, shown, words_of
 from gatecheck.compare.one_test import effect_sign, p_with_sides
+from gatecheck.compare.promised_gaps import NOT_TOLD, Gap, Pair
+from gatecheck.compare.promised_hypotheses import members_of_family
 from gatecheck.model.numbers import Reported, exact
-from gatecheck.model.plan import Hypothesis, Plan
-from gatecheck.model.record import Estimate, Outcome, Record, Sample, Test
+from gatecheck.model.record import Estimate, Outcome, Sample
 from gatecheck.model.shown import decimal
-from gatecheck.model.struct import struct
 
 _SAME = 1e-9
 _TOWARD = {"increase": 1, "decrease": -1}
@@ -33,42 +35,6 @@ _PROMISED = {1: "one side was promised", 2: "both sides were promised"}
 _P = {1: "one-sided p", 2: "two-sided p"}
 _OF_EFFECTS = {"difference", "superiority"}
 _WITHOUT_SIDES = {"chi2", "F"}
-_NOT_TOLD = "not told"
-
-
-@struct
-class Pair:
-    """A record, and the hypothesis of a plan that it answers."""
-
-    record: Record
-    plan: Plan
-    hypothesis: Hypothesis
-
-    @property
-    def test(self) -> Test:
-        """The test of the record."""
-        return self.record.test or Test()
-
-    @property
-    def sample(self) -> Sample:
-        """The sample of the record."""
-        return self.record.sample or Sample()
-
-    @property
-    def speaks_of_sample(self) -> bool:
-        """Whether the plan says who is analysed."""
-        promised = self.hypothesis
-        return promised.n is not None or promised.population is not None or bool(promised.exclusions)
-
-
-@struct
-class Gap:
-    """One field in which a record is not as promised: what was planned, what was done, and both in a clause."""
-
-    field: str
-    planned: str
-    done: str
-    told: str
 
 
 def gaps(pair: Pair) -> Iterator[Gap]:
@@ -84,7 +50,7 @@ def _gap(field: str, label: str, planned: str, done: str) -> Gap:
 def _of_text(field: str, label: str, planned: str | None, done: str | None) -> Iterator[Gap]:
     """A text that a record must tell where the plan does."""
     if planned is not None and (done is None or not same_words(planned, done)):
-        yield _gap(field, label, planned, _NOT_TOLD if done is None else done)
+        yield _gap(field, label, planned, NOT_TOLD if done is None else done)
 
 
 def _of_number(field: str, label: str, planned: float | None, done: float | None) -> Iterator[Gap]:
@@ -98,7 +64,7 @@ def _outcome(pair: Pair) -> Iterator[Gap]:
     if planned is None:
         return
     if done is None:
-        yield _gap("outcome", "the outcome", _in_words(planned), _NOT_TOLD)
+        yield _gap("outcome", "the outcome", _in_words(planned), NOT_TOLD)
         return
     yield from _of_text("outcome.variable", "the variable measured", planned.variable, done.variable)
     yield from _of_text("outcome.metric", "the metric of the outcome", planned.metric, done.metric)
@@ -117,16 +83,21 @@ def _test(pair: Pair) -> Iterator[Gap]:
     allowed, name = pair.hypothesis.test, pair.test.name
     if allowed is None or (name is not None and any(same_test(each, name) for each in allowed)):
         return
-    yield _gap("test", "the test", " or ".join(allowed), _NOT_TOLD if name is None else name)
+    yield _gap("test", "the test", " or ".join(allowed), NOT_TOLD if name is None else name)
 
 
 def _sides(pair: Pair) -> Iterator[Gap]:
     planned, done = pair.hypothesis.sides, pair.test.sides or 2
     if planned is None or pair.record.test is None or pair.test.statistic in _WITHOUT_SIDES or planned == done:
         return
-    p = p_with_sides(pair.test, planned, _TOWARD.get(pair.hypothesis.direction, 0))
-    honest = "" if p is None else f" ({_P[planned]} = {decimal(p, pair.hypothesis.alpha or pair.test.alpha)})"
+    honest = _honest_p(pair, planned, _TOWARD.get(pair.hypothesis.direction, 0))
     yield Gap("sides", str(planned), str(done), f"{_TAKEN[done]}, and {_PROMISED[planned]}{honest}")
+
+
+def _honest_p(pair: Pair, sides: int, toward: int) -> str:
+    """The p of the test as it was promised, where the record tells enough."""
+    p = p_with_sides(pair.test, sides, toward)
+    return "" if p is None else f" ({_P[sides]} = {decimal(p, pair.hypothesis.alpha or pair.test.alpha)})"
 
 
 def _direction(pair: Pair) -> Iterator[Gap]:
@@ -137,7 +108,8 @@ def _direction(pair: Pair) -> Iterator[Gap]:
         return
     tail = pair.test.tail if pair.test.sides == 1 else None
     if tail is not None and _TOWARD_TAIL[tail] != wanted:
-        told = f"the side tested is {tail}, and {_AN_EFFECT[planned]} was promised"
+        honest = _honest_p(pair, 1, wanted)
+        told = f"the side tested is {tail}, and {_AN_EFFECT[planned]} was promised{honest}"
         yield Gap("direction", planned, tail, told)
     elif pair.record.aim in _OF_EFFECTS and effect_sign(pair.record) == -wanted:
         found = _DIRECTIONS[-wanted]
@@ -154,16 +126,26 @@ def _figure(pair: Pair) -> str:
 
 
 def _alpha(pair: Pair) -> Iterator[Gap]:
-    yield from _of_number("alpha", "alpha", pair.hypothesis.alpha, pair.test.alpha)
+    """The level of the hypothesis, else of its family, of which one test may have a share."""
+    own, family, done = pair.hypothesis.alpha, pair.planned_family, pair.test.alpha
+    planned = own if own is not None or family is None else family.alpha
+    if planned is None:
+        return
+    if done is None:
+        yield _gap("alpha", "alpha", f"{planned:.15g}", NOT_TOLD)
+    elif own is not None or done > planned * (1 + _SAME):
+        yield from _of_number("alpha", "alpha", planned, done)
 
 
 def _n(pair: Pair) -> Iterator[Gap]:
     promised, sample = pair.hypothesis.n, pair.sample
     if promised is None:
         return
-    if promised.unit is not None and sample.unit is not None and not same_unit(promised.unit, sample.unit):
-        yield _gap("n.unit", "the experimental unit", promised.unit, sample.unit)
-    elif promised.planned is not None:
+    other = promised.unit is not None and (sample.unit is None or not same_unit(promised.unit, sample.unit))
+    if promised.unit is not None and other:
+        yield _gap("n.unit", "the experimental unit", promised.unit, sample.unit or NOT_TOLD)
+    # A number of other units is another quantity.
+    if promised.planned is not None and (not other or sample.unit is None):
         yield from _number_of_units(pair, promised.planned)
 
 
@@ -171,10 +153,11 @@ def _number_of_units(pair: Pair, planned: int) -> Iterator[Gap]:
     """The number is kept where the analysed are as many as planned, alone or with those that were left out."""
     n, left_out = _analysed(pair.sample), sum(each.n for each in pair.sample.excluded)
     if n is None:
-        yield _gap("n", "the number of units", str(planned), _NOT_TOLD)
+        yield _gap("n", "the number of units", str(planned), NOT_TOLD)
     elif planned not in {n, n + left_out} and not (n < planned and _is_interim(pair)):
         done = f"{n} analysed and {left_out} left out" if left_out else f"{n}"
-        yield _gap("n", "the number of units", str(planned), done)
+        gap = _gap("n", "the number of units", str(planned), done)
+        yield replace(gap, unit=pair.sample.unit)
 
 
 def _analysed(sample: Sample) -> int | None:
@@ -208,7 +191,7 @@ def _exclusions(pair: Pair) -> Iterator[Gap]:
 def _covariates(pair: Pair) -> Iterator[Gap]:
     planned, done = pair.hypothesis.covariates, pair.record.covariates
     if done is None and planned:
-        yield _gap("covariates", "the set of covariates", _listed(planned), _NOT_TOLD)
+        yield _gap("covariates", "the set of covariates", _listed(planned), NOT_TOLD)
     speaks = bool(planned) or pair.hypothesis.test is not None
     if done is not None and speaks and set(map(words_of, planned)) != set(map(words_of, done)):
         yield _gap("covariates", "the set of covariates", _listed(planned), _listed(done))
@@ -262,9 +245,10 @@ def _family(pair: Pair) -> Iterator[Gap]:
     if name is None:
         return
     if family is None or not same_words(name, family.name):
-        yield _gap("family", "the family", name, _NOT_TOLD if family is None else family.name)
+        yield _gap("family", "the family", name, NOT_TOLD if family is None else family.name)
         return
-    planned = (pair.plan.families or {}).get(name)
+    yield from _family_size(pair, name, family.size)
+    planned = pair.planned_family
     if planned is None:
         return
     if planned.procedure != family.procedure:
@@ -274,19 +258,28 @@ def _family(pair: Pair) -> Iterator[Gap]:
         yield from _of_number("family.position", "the place in the family", place, family.position)
 
 
+def _family_size(pair: Pair, name: str, done: int | None) -> Iterator[Gap]:
+    """A family that the plan names and does not describe may have members beyond the plan."""
+    least, most = members_of_family(pair.plan, name)
+    if least > 1 if done is None else done < least:
+        yield _gap("family.size", "the size of the family", str(least), NOT_TOLD if done is None else str(done))
+    elif done is not None and pair.planned_family is not None and done > most:
+        yield _gap("family.size", "the size of the family", str(most), str(done))
+
+
 def _looks(pair: Pair) -> Iterator[Gap]:
     promised, look = pair.hypothesis.looks, pair.record.look
     planned = 1 if promised is None else promised.planned
     if look is None:
         if planned > 1:
-            yield _gap("looks", "the number of looks", str(planned), _NOT_TOLD)
+            yield _gap("looks", "the number of looks", str(planned), NOT_TOLD)
         return
     done = max(look.number, look.planned or planned)
     if done != planned and (promised is not None or pair.speaks_of_sample):
         yield _gap("looks", "the number of looks", str(planned), str(done))
     boundary = None if promised is None else promised.boundary
     if boundary is not None and look.boundary != boundary:
-        yield _gap("looks.boundary", "the boundary of the looks", boundary, look.boundary or _NOT_TOLD)
+        yield _gap("looks.boundary", "the boundary of the looks", boundary, look.boundary or NOT_TOLD)
 
 
 def _role(pair: Pair) -> Iterator[Gap]:
@@ -313,6 +306,6 @@ _COMPARISONS = (
 FIELDS = frozenset({
     "outcome", "outcome.variable", "outcome.metric", "outcome.aggregation", "outcome.time_point", "test", "sides",
     "direction", "alpha", "n", "n.unit", "population", "exclusions", "covariates", "alternative", "margin",
-    "smallest_effect", "prior", "family", "family.procedure", "family.position", "looks", "looks.boundary", "role",
-    "aim", "status",
+    "smallest_effect", "prior", "family", "family.size", "family.procedure", "family.position", "looks",
+    "looks.boundary", "role", "aim", "status",
 })  # fmt: skip

@@ -3,8 +3,9 @@
 A disclosed difference is an amendment where it was decided before the data, is flagged where it was decided before
 the results, and costs the claim its confirmatory status where it was decided after them; one that is not disclosed
 is undeclared (on how departures are disclosed, with the time of each: Willroth and Atherton, doi
-10.1177/25152459231213802). Which fields are compared, and what a silent plan or record means, stands in
-`gatecheck/compare/promised_fields.py`.
+10.1177/25152459231213802). A deviation that states other values than the plan and the record discloses nothing; see
+`gatecheck/compare/promised_deviations.py`. Which fields are compared, and what a silent plan or record means,
+stands in `gatecheck/compare/promised_fields.py`.
 """
 
 from __future__ import annotations
@@ -13,8 +14,11 @@ import posixpath
 from collections.abc import Collection, Sequence
 from typing import Literal
 
-from gatecheck.compare.names import same_words
-from gatecheck.compare.promised_fields import FIELDS, Gap, Pair, gaps
+from gatecheck.compare.names import same_words, shown
+from gatecheck.compare.promised_deviations import contradicts, covers, field_of
+from gatecheck.compare.promised_fields import FIELDS, gaps
+from gatecheck.compare.promised_gaps import Gap, Pair
+from gatecheck.compare.promised_hypotheses import promises_something
 from gatecheck.model.plan import Hypothesis
 from gatecheck.model.promise import PlanInTree, Promise
 from gatecheck.model.record import Deviation, Known, Record, Role
@@ -28,34 +32,6 @@ _STANDINGS: dict[Known, Standing] = {
     "after-results": "after-results",
 }
 _LATEST_LAST: tuple[Known, ...] = ("before-data", "before-results", "after-results")
-#: Fields as a record has them, and parts of fields, with the field of a plan that they are.
-_OTHER_NAMES = {
-    "alternative.effect": "alternative",
-    "alternative.scale": "alternative",
-    "estimate.margin": "margin",
-    "estimate.smallest_effect": "smallest_effect",
-    "family.name": "family",
-    "look": "looks",
-    "look.boundary": "looks.boundary",
-    "look.number": "looks",
-    "look.planned": "looks",
-    "looks.planned": "looks",
-    "n.planned": "n",
-    "prior.probability": "prior",
-    "sample.excluded": "exclusions",
-    "sample.n": "n",
-    "sample.unit": "n.unit",
-    "test.alpha": "alpha",
-    "test.name": "test",
-    "test.sides": "sides",
-    "test.tail": "direction",
-    "unit": "n.unit",
-}
-#: What fills a deferred hypothesis.
-_FILLED_IN = (
-    "outcome", "test", "sides", "alpha", "n", "population", "exclusions", "covariates", "alternative",
-    "smallest_effect", "margin", "prior", "looks",
-)  # fmt: skip
 
 
 @struct
@@ -63,7 +39,8 @@ class Difference:
     """One field in which a record is not as promised.
 
     `told` says in a clause what was done and what was promised, with the figure that the promise gives where there
-    is one. `disclosed` is the deviation that discloses it, the one decided latest where several do.
+    is one, and what a deviation says against it. `disclosed` is the deviation that discloses it, the one decided
+    latest where several do.
     """
 
     field: str
@@ -83,12 +60,6 @@ class NotReported:
     missing: tuple[Hypothesis, ...]
 
 
-def promises_something(hypothesis: Hypothesis) -> bool:
-    """Whether a hypothesis is settled: one that was deferred and says no more than its text promises nothing."""
-    settled = any(getattr(hypothesis, name) not in {None, ()} for name in _FILLED_IN)
-    return not hypothesis.deferred or settled or hypothesis.direction != "either"
-
-
 def differences(record: Record, promise: Promise) -> tuple[Difference, ...]:
     """Return every field in which `record` is not as promised; none where nothing was promised."""
     plan, hypothesis = promise.plan, promise.hypothesis
@@ -98,10 +69,17 @@ def differences(record: Record, promise: Promise) -> tuple[Difference, ...]:
 
 
 def _difference(gap: Gap, deviations: Sequence[Deviation]) -> Difference:
-    covering = [each for each in deviations if _covers(_field(each), gap.field)]
-    disclosed = max(covering, key=lambda each: _LATEST_LAST.index(each.known), default=None)
+    covering = [each for each in deviations if covers(each, gap.field)]
+    disclosing = [each for each in covering if not contradicts(each, gap)]
+    disclosed = max(disclosing, key=lambda each: _LATEST_LAST.index(each.known), default=None)
     standing: Standing = "undeclared" if disclosed is None else _STANDINGS[disclosed.known]
-    return Difference(gap.field, gap.planned, gap.done, gap.told, disclosed, standing)
+    told = gap.told if disclosed is not None or not covering else f"{gap.told}, while {_otherwise(covering[0])}"
+    return Difference(gap.field, gap.planned, gap.done, told, disclosed, standing)
+
+
+def _otherwise(deviation: Deviation) -> str:
+    planned, done = shown(deviation.planned), shown(deviation.done)
+    return f"its deviation says that {planned} was planned and {done} was done"
 
 
 def unused_deviations(record: Record, found: Sequence[Difference]) -> tuple[Deviation, ...]:
@@ -109,18 +87,8 @@ def unused_deviations(record: Record, found: Sequence[Difference]) -> tuple[Devi
     return tuple(
         each
         for each in record.deviations
-        if _field(each) in FIELDS and not any(_covers(_field(each), one.field) for one in found)
+        if field_of(each) in FIELDS and not any(covers(each, one.field) for one in found)
     )
-
-
-def _covers(named: str, field: str) -> bool:
-    return field == named or field.startswith(f"{named}.")
-
-
-def _field(deviation: Deviation) -> str:
-    """The field that a deviation names, as a plan names it."""
-    name = deviation.field.strip().casefold().replace(" ", "_").replace("-", "_")
-    return _OTHER_NAMES.get(name, name)
 
 
 def missing_hypotheses(
@@ -155,4 +123,5 @@ def _answers(record: Record, hypothesis: Hypothesis, *, alone: bool) -> bool:
     planned, done = hypothesis.outcome, record.outcome
     if planned is None or done is None or same_words(planned.variable, done.variable):
         return True
-    return any(_covers(_field(each), "outcome.variable") for each in record.deviations)
+    gap = Gap("outcome.variable", planned.variable, done.variable, "")
+    return any(covers(each, gap.field) and not contradicts(each, gap) for each in record.deviations)

@@ -41,6 +41,12 @@ _MOST_DF = Kind(
     (DF, GROUPS, UNITS),
     ("the model has units within units (name it)", "the units counted are groups of those analysed"),
 )
+_DF_BETWEEN = Kind(
+    "df-between",
+    (DF, "the number of groups"),
+    ("there are more groups than those named", "it is the F of a contrast or of another factor"),
+    (DF, "the number of groups"),
+)
 _SIZES = Kind(
     "sizes",
     (GROUPS, UNITS),
@@ -48,6 +54,9 @@ _SIZES = Kind(
     (GROUPS, UNITS),
 )
 _PAIR = 2
+#: Names of an F whose df within are those of all units less its terms, and of one that takes up a part of them.
+_ALL_TERMS = r"regress|linear model|\bols\b|\blm\b|ancova|analysis of covariance"
+_PART = r"planned|linear|quadratic|comparison|component"
 
 
 @struct
@@ -75,13 +84,19 @@ class _Sizes:
 
 def sizes_and_df(columns: Columns) -> tuple[Agreement, ...]:
     """Every comparison of numbers of units and df, of all rows; none where no record tells its units."""
-    found: dict[Kind, dict[int, Compared]] = {_SIZES: {}, _DF_GROUPS: {}, _DF_N: {}, _MOST_DF: {}}
+    kinds = _SIZES, _DF_GROUPS, _DF_N, _DF_BETWEEN, _MOST_DF
+    found: dict[Kind, dict[int, Compared]] = {kind: {} for kind in kinds}
     for row, one in enumerate(columns.found):
         if one.record.sample is None:
             continue
         sizes = _sizes(one.record.sample)
         of_design = _DF_GROUPS if len(sizes.groups) > 1 else _DF_N
-        for kind, compare in ((_SIZES, _independent_groups), (of_design, _df_of_design), (_MOST_DF, _df_of_units)):
+        for kind, compare in (
+            (_SIZES, _independent_groups),
+            (of_design, _df_of_design),
+            (_DF_BETWEEN, _df_between),
+            (_MOST_DF, _df_of_units),
+        ):
             compared = compare(columns, row, sizes)
             if compared is not None:
                 found[kind][row] = compared
@@ -157,9 +172,27 @@ def _df_of_r(_: Columns, __: int, sizes: _Sizes) -> tuple[float, ...]:
 
 def _df_of_f(columns: Columns, row: int, sizes: _Sizes) -> tuple[float, ...]:
     """The df within groups of a one-way analysis of variance."""
-    groups = len(sizes.groups)
-    one_way = says(ONE_WAY, test_name(columns, row)) and columns.test.df1.value[row] == groups - 1
-    return (sizes.in_groups - groups,) if one_way and not _fractional(columns.test.df2.value[row]) else ()
+    groups, name, df = len(sizes.groups), test_name(columns, row), columns.test.df2
+    one_way = says(ONE_WAY, name) and columns.test.df1.value[row] == groups - 1
+    # Df that are written with decimals, as 17.0, are Welch's and whole by chance.
+    of_welch = says(WELCH, name) or _fractional(df.value[row]) or 0 < df.high[row] - df.low[row] < 1
+    return (sizes.in_groups - groups,) if one_way and not of_welch else ()
+
+
+def _df_between(columns: Columns, row: int, sizes: _Sizes) -> Compared | None:
+    """The df between the groups of a one-way analysis of variance, where those named are plainly all of them."""
+    name, test, groups = test_name(columns, row), columns.test, len(sizes.groups)
+    one_way = (
+        test.statistic[row] == F and says(ONE_WAY, name) and not says(MODELLED, name) and not says(_PART, name)
+    )
+    if not one_way or groups < _PAIR or columns.found[row].record.covariates or np.isfinite(sizes.clusters):
+        return None
+    within = sizes.in_groups - groups
+    as_counted = test.df2.high[row] >= within - sizes.excluded and test.df2.low[row] <= within
+    if not np.isfinite(test.df1.value[row]) or not (as_counted or sizes.n == sizes.in_groups):
+        return None
+    expected = float(groups - 1)
+    return Compared(bool(test.df1.low[row] <= expected <= test.df1.high[row]), expected, expected)
 
 
 def _df_of_none(_: Columns, __: int, ___: _Sizes) -> tuple[float, ...]:
@@ -211,8 +244,12 @@ def _df_of_units(columns: Columns, row: int, sizes: _Sizes) -> Compared | None:
     plain = test.statistic[row] in {T, R, F} and not says(WITHIN_UNITS, name) and np.isfinite(sizes.most)
     if not plain or not np.isfinite(df.value[row]) or _fractional(df.value[row]):
         return None
-    covariates = columns.found[row].record.covariates or ()
+    covariates, between = columns.found[row].record.covariates or (), max(float(test.df1.value[row]), 1.0)
     most = sizes.most - 1 - (0 if np.isfinite(sizes.clusters) else len(covariates))
-    # Of measurements repeated within units, the df within are those of units times those between.
-    most *= max(float(test.df1.value[row]), 1.0) if of_f and not covariates else 1.0
+    if of_f and says(_ALL_TERMS, name):
+        # Each term takes at least a df of its own, and there may be no constant.
+        most = min(most, sizes.most - between) if np.isnan(sizes.clusters) else most
+    elif of_f and not covariates:
+        # Of measurements repeated within units, the df within are those of units times those between.
+        most *= between
     return Compared(bool(df.low[row] <= most), 0.0, max(most, 0.0))

@@ -23,6 +23,7 @@ Kind = Literal[
     "not-worse",
     "difference",
     "observed-power",
+    "p-as-probability",
     "hedge",
     "causal",
     "statistical-significance",

@@ -19,6 +19,10 @@ PlannedTest = Literal[
     "log-rank",
 ]
 
+#: Over more looks than this the integration would take long, at every size that is tried.
+MOST_LOOKS_COUNTED = 25
+_WITHOUT_DIRECTION = ("one-way-F", "chi-squared")
+
 
 @struct
 class DesignQuestion:
@@ -42,6 +46,14 @@ class DesignQuestion:
     groups: int | None = None
     df: int | None = None
     ratio: float | None = None
+
+    @property
+    def only_last_look(self) -> bool:
+        """Whether of several looks the last alone is reckoned with.
+
+        The others are where they are few enough to integrate over, and the statistic has a direction.
+        """
+        return self.looks > 1 and (self.looks > MOST_LOOKS_COUNTED or self.test in _WITHOUT_DIRECTION)
 
 
 @struct

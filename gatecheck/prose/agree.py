@@ -14,6 +14,7 @@ from gatecheck.prose.fields import Subject, fields_of, is_in_percent, number_of
 from gatecheck.prose.links import CLAIM, Link, links_in
 from gatecheck.prose.matching import Match, Matcher, differences, share_differs
 from gatecheck.prose.numbers_in_text import Shown, agrees, rewritten
+from gatecheck.prose.others import references, tells_of_others
 from gatecheck.prose.sentences import sentence_at
 from gatecheck.prose.source import Passage
 from gatecheck.prose.statistics_in_text import ShownShare, Statistic, may_hold_statistics, statistics
@@ -209,10 +210,10 @@ def _word_of_confirmation(record: Record, sentence: str) -> str:
 
 def _of_statistics(passage: Passage, ties: Sequence[_Tie], matcher: Matcher, *, unlinked: bool) -> Iterator[Fact]:
     found = tuple(statistics(passage.visible))
-    references = _references(passage.visible) if found else ()
+    listed = references(passage.visible) if found else ()
     for one in found:
         around = [tie for tie in ties if tie.link.start <= one.start < tie.link.end]
-        if (around or unlinked) and not any(start <= one.start < end for start, end in references):
+        if (around or unlinked) and not any(start <= one.start < end for start, end in listed):
             yield from _of_statistic(passage, one, around, matcher)
 
 
@@ -221,16 +222,16 @@ def _of_statistic(passage: Passage, one: Statistic, around: Sequence[_Tie], matc
         yield Fact(passage, one.start, False, ShareDiffers(one))
         return
     match = matcher.match(passage.visible, one)
+    start, end = sentence_at(passage.visible, one.start)
     if match is not None and not match.differences:
-        start, end = sentence_at(passage.visible, one.start)
         word = "" if around else _word_of_confirmation(match.record, passage.visible[start:end])
         if word:
             yield Fact(passage, one.start, False, CalledConfirmed(match.record, word))
         return
     tied = _tied(passage.visible, one, around)
-    if tied is None:
+    if tied is None and not tells_of_others(passage.body[start:end]):
         yield Fact(passage, one.start, False, StatisticDiffers(one, match))
-    elif tied.differences:
+    elif tied is not None and tied.differences:
         yield Fact(passage, one.start, True, StatisticDiffers(one, tied))
 
 
@@ -249,19 +250,3 @@ def _tied(text: str, one: Statistic, around: Sequence[_Tie]) -> Match | None:
 
 def _holds(one: Statistic, at: int) -> bool:
     return one.start <= at < one.end
-
-
-#: A list of references holds results of others.
-_REFERENCES = re.compile(
-    r"^(?P<marks>#{1,6})[ \t]+(?:\d[\d.]*[ \t]+)?(?:References|Bibliography|(?:Literature|Works)[ \t]cited)\b",
-    re.IGNORECASE | re.MULTILINE,
-)
-
-
-def _references(text: str) -> Sequence[tuple[int, int]]:
-    """The sections of a Markdown text that list references."""
-    sections = []
-    for found in _REFERENCES.finditer(text):
-        after = re.compile(rf"^#{{1,{len(found['marks'])}}}[ \t]", re.MULTILINE).search(text, found.end())
-        sections.append((found.start(), after.start() if after else len(text)))
-    return sections

@@ -29,6 +29,8 @@ _DIGITS = (
 _DECIMAL_COMMA = re.compile(r"\d+,(?:\d{1,2}|\d{4,})")
 _TEN = (
     r"[eE](?P<plain>[+-]?\d{1,3})(?![\d.])"
+    r"|(?<![\d.,]10)(?<=10)(?:\^\{?(?P<alone_raised>[\-−]\d{1,3})[}^]?|<sup>(?P<alone_sup>[\-−]\d{1,3})</sup>"
+    r"|(?P<alone_small>⁻[⁰¹²³⁴-⁹]{1,3}))"
     r"|[\s~$]{0,2}(?:×|\\times|\\cdot|·|&times;|x)[\s~$]{0,2}10"
     r"(?:\^\{?(?P<raised>[+\-−]?\d{1,3})[}^]?|<sup>(?P<sup>[+\-−]?\d{1,3})</sup>|(?P<small>[⁻⁺]?[⁰¹²³⁴-⁹]{1,3}))"
 )
@@ -97,7 +99,8 @@ class Shown:
 
     @property
     def _digits(self) -> Decimal:
-        return Decimal(("-" if self.found["sign"] in {"-", _MINUS} else "") + _bare(self.found["digits"]))
+        digits = "1" if _power_alone(self.found) else _bare(self.found["digits"])
+        return Decimal(("-" if self.found["sign"] in {"-", _MINUS} else "") + digits)
 
 
 def numbers(text: str, start: int, end: int) -> Iterator[Shown]:
@@ -118,8 +121,13 @@ def _bare(digits: str) -> str:
 
 
 def _power(found: re.Match[str]) -> int:
-    raised = found["plain"] or found["raised"] or found["sup"] or (found["small"] or "").translate(_SUPERSCRIPTS)
-    return int(raised.replace(_MINUS, "-")) if raised else 0
+    raised = _power_alone(found) or found["plain"] or found["raised"] or found["sup"] or found["small"]
+    return int(raised.translate(_SUPERSCRIPTS).replace(_MINUS, "-")) if raised else 0
+
+
+def _power_alone(found: re.Match[str]) -> str | None:
+    """The power of a number that is a power of ten and nothing else, such as `10^-4`."""
+    return found["alone_raised"] or found["alone_sup"] or found["alone_small"]
 
 
 def agrees(shown: Shown, reported: Reported, *, in_percent: bool = False) -> bool:
@@ -140,10 +148,10 @@ def agrees(shown: Shown, reported: Reported, *, in_percent: bool = False) -> boo
 def rewritten(shown: Shown, reported: Reported, *, in_percent: bool = False) -> str | None:
     """Return the record's number in the digits and the writing of the shown one, or `None` where that cannot be.
 
-    It cannot where either is a bound, where the record has fewer digits than are shown, and where a number that is
-    not zero would be shown as zero.
+    It cannot where either is a bound, where the record has fewer digits than are shown, where a number that is not
+    zero would be shown as zero, and where a power of ten is all that is shown.
     """
-    if shown.relation != "=" or reported.relation != "=":
+    if shown.relation != "=" or reported.relation != "=" or _power_alone(shown.found):
         return None
     scale = _scale(shown, in_percent=in_percent)
     low, high = _interval(reported)

@@ -1,10 +1,11 @@
 r"""Statistics as prose writes them: test statistics, p-values, intervals, and percentages with their counts.
 
-Recognised are the usual ways of the trade (common practice, no source), plain, in Markdown and in LaTeX:
-`t(34) = 2.21, p = .034`, `F(2, 57) = 3.4`, `χ²(1, N = 90) = 4.1`, `$\chi^2_1 = 4.1$`, `z = 2.1, p = .04`,
-`r(28) = .36`, `3.3 (95 % CI 0.3 to 8.1)`, `12/48 (25 %)`, `25 % (12 of 48)`. Letters that also stand for other
-things (t, z, r, F) count with degrees of freedom or a p alone. A bound on p by itself, such as p < 0.05, names no
-result and is left alone.
+Recognised are the usual ways of the trade (common practice, no source), plain, in Markdown, HTML and LaTeX:
+`t(34) = 2.21, p = .034`, `F(2, 57) = 3.4`, `F1,34 = 6.3`, `t₃₄ = 2.2`, `χ²(1, N = 90) = 4.1`,
+`$\chi^2_1 = 4.1$`, `z = 2.1, p = .04`, `r(28) = .36`, `p-value: 0.03`, `3.3 (95 % CI 0.3 to 8.1)`, `12/48 (25 %)`,
+`12 (25 %) of 48`, `25 % (12 of 48)`. Letters that also stand for other things (t, z, r, F) count with degrees of
+freedom or a p alone. A bound on p by itself, such as p < 0.05, names no result and is left alone, and so are a p
+that is called a threshold, a P that is a pressure or a power, and a fraction of a measure, such as 3/4 (75 %) cup.
 """
 
 from __future__ import annotations
@@ -19,7 +20,10 @@ from gatecheck.prose.numbers_in_text import Shown, number_at, numbers
 Kind = Literal["t", "z", "chi2", "F", "r", "p"]
 
 #: Each statistic has one of these in it; everything else is looked at only around them.
-ANCHOR = re.compile(r"[=<>≤≥%]|\\[lg](?:eq?|t)(?:slant)?\b|&[lg]t;")
+ANCHOR = re.compile(
+    r"[=<>≤≥%\\&v](?:(?<=[=<>≤≥%])|(?<=\\)[lg](?:eq?|t)(?:slant)?\b|(?<=&)[lg]t;"
+    r"|(?<=v)alue(?P<says>\s?:|\s(?:of|was|is)\b))"
+)
 #: How far around them, and how far behind its statistic a p may stand, in characters.
 _BEFORE, _FARTHEST_P = 64, 40
 #: How many degrees of freedom each statistic may show.
@@ -32,18 +36,27 @@ _DEGREES: dict[Kind, tuple[int, ...]] = {
     "p": (0,),
 }
 #: What markup may put between the parts of a statistic.
-_GAP = r"(?:[\s*_$~{}]|\\[,;:! ]|\\(?:left|right)|&nbsp;){0,8}"
+_GAP = r"(?:[\s*_$~{}]|\\[,;:! ]|\\(?:left|right)|&(?:nb|thin)sp;){0,8}"
+_CLOSED = r"(?:</(?:i|em|b|strong)>)?"
 _ONLY_GAP = re.compile(_GAP)
-_FIGURE = r"\d{1,9}(?:\.\d{1,6})?"
-_NAME = r"(?P<name>(?<!\\)[tFzZrpP]|χ|\\?chi|Χ|[xX](?=\s?[²^]))"
+_FIGURE = r"[\d₀-₉]{1,9}(?:\.\d{1,6})?"
+_SUBSCRIPTS = str.maketrans("₀₁₂₃₄₅₆₇₈₉", "0123456789")
+#: A letter at the head of a word; a search is faster where all that a pattern may begin with is plain.
+_AT_HEAD = {one: rf"{one}(?<![^\W_]{one})(?<!\\{one})" for one in "tFzZrpPχΧxX"}
+_NAME = (
+    rf"(?P<name>{'|'.join(_AT_HEAD[one] for one in 'tFzZrpPχΧ')}|\\chi(?<![^\W_]\\chi)|chi(?<![^\W_]chi)"
+    rf"|{_AT_HEAD['x']}(?=\s?[²^])|{_AT_HEAD['X']}(?=\s?[²^]))"
+)
 _SQUARED = r"(?P<squared>_?\}?\s?(?:²|\^\s?\{?2\}?\^?|2\b|[- ]?squared?|<sup>2</sup>)\*?)?"
 _N = r"[\s*_$]{0,3}[Nn][\s*_$]{0,3}=[\s*_$]{0,3}(?P<n>\d{1,9})"
 _DF = (
-    rf"(?:(?:\(|\[|_\{{?|~|<sub>)\s?(?:df\s?=\s?)?(?P<df>{_FIGURE})(?:\s?[,;](?:{_N}|\s?(?P<df2>{_FIGURE})))?"
+    r"(?:(?:\(|\[|_\{?|~|<sub>|(?=[₀-₉])|(?=\d{1,4},\s?\d))"
+    rf"\s?(?:df\s?=\s?)?(?P<df>{_FIGURE})(?:\s?[,;](?:{_N}|\s?(?P<df2>{_FIGURE})))?"
     r"\s?(?:\\right)?(?:\)|\]|\}|~|</sub>)?)?"
 )
-_SYMBOL = re.compile(rf"(?<![^\W_]){_NAME}{_SQUARED}(?:[- ]values?)?{_GAP}{_DF}{_GAP}\Z")
-_LAST_OF_SYMBOL = frozenset("tFzZrpPχΧ2²)]}~>ied0123456789")
+_VALUE = r"(?:[*_$}]{0,2}[- ]values?)?"
+_SYMBOL = re.compile(rf"{_NAME}{_CLOSED}{_SQUARED}{_CLOSED}{_VALUE}{_GAP}{_DF}{_GAP}\Z")
+_LAST_OF_SYMBOL = frozenset("tFzZrpPχΧ2²)]}~>;ied0123456789₀₁₂₃₄₅₆₇₈₉")
 _MARKUP = " \t\r\n*_$~{}\\\u00a0"
 _LEVEL = re.compile(r"(?P<ci>\bCI[\s~_{$:=]{0,3})?(?<![\w.])(?P<level>\d\d(?:\.\d{1,3})?)(?:[\s~]|\\,)?\\?\Z")
 _INTERVAL = re.compile(
@@ -57,8 +70,27 @@ _TO = re.compile(
 _COUNT = r"\d{1,3}(?:,\d{3})+|\d{1,12}"
 _OF = rf"(?P<part>{_COUNT})\s?(?:(?P<slash>/)|of(?:\sthe)?|out\sof(?:\sthe)?)\s?(?P<whole>{_COUNT})"
 _COUNTS_BEFORE = re.compile(rf"(?<![\w./,]){_OF}(?![\d/]|\.\d)[^\d.()%]{{0,30}}[(\[]\s?\Z")
+_PART_BEFORE = re.compile(rf"(?<![\w./,])(?P<part>{_COUNT})\s?[(\[]\s?\Z")
+_WHOLE_BEHIND = re.compile(rf"%\s?[)\]]\s(?:out\s)?of\s(?:the\s)?(?P<whole>{_COUNT})(?![\d/]|\.\d)")
 _COUNTS_BEHIND = re.compile(rf"%\s?[(\[]\s?{_OF}(?![\d/])[^\d()%]{{0,30}}[)\]]")
 _BESIDE_COUNTS = re.compile(r"%\s?[()\[\]]")
+#: What follows a fraction of a measure, which counts nothing.
+_MEASURE = re.compile(
+    r"[)\]]?\s(?:of\s(?:a|an|the)\s)?(?:cups?|inch(?:es)?|miles?|pints?|(?:tea|table)spoons?|hours?|full|way|strength"
+    r"|power|speed|load|throttle|capacity)\b"
+)
+#: A p that is a threshold, or a letter for the probability in a model, and a pressure or a power by that letter.
+_THRESHOLD_BEFORE = re.compile(
+    r"(?:\b(?:threshold|cut-?off|criterion)s?\b(?:[^.;!?()\n]|\.\d){0,40}\b(?:was|were|is|are|of)\s(?:set\s(?:at|to)\s)?"
+    r"|\b(?:significance|alpha|critical)\s(?:threshold|cut-?off|criterion|level|value)s?\b(?:[^.;!?\n]|\.\d){0,40}"
+    r"|\bwith(?: a)? probability\s)[*_$]{0,3}\Z",
+    re.IGNORECASE,
+)
+_THRESHOLD_BEHIND = re.compile(
+    r"[\s*_$)]{0,3}(?:or (?:less|lower|below|smaller|under)\b"
+    r"|(?:was|were|is|are) (?:considered|deemed|regarded|taken|used|set|chosen|judged|defined)\b"
+    r"|[kMGhm]?(?:Pa|bar|W)\b|atm\b|mmHg\b|torr\b|psi\b)"
+)
 _END_OF_SENTENCE = re.compile(r"[.!?]\s+[^\W\d_a-z]|\n[ \t\r]*\n")
 _ESTIMATE = re.compile(r"[^\d.;()\[\]]{0,24}[(\[,;:]\s?\Z")
 
@@ -157,10 +189,17 @@ def _alone(one: ShownTest | None) -> Iterator[Result]:
     """
     if one is None:
         return
+    text = one.value.found.string
     is_probability = one.kind == "p" and one.value.relation == "=" and not one.value.text.isdigit()
-    is_square = one.value.found.string[one.start] == "x"
-    if one.df or (one.kind == "chi2" and not is_square) or is_probability:
+    is_square = text[one.start] == "x"
+    if one.df or (one.kind == "chi2" and not is_square) or (is_probability and _is_of_result(text, one)):
         yield Result(one)
+
+
+def _is_of_result(text: str, p: ShownTest) -> bool:
+    """Whether a p alone is that of a result, as far as the words around it tell."""
+    before = _THRESHOLD_BEFORE.search(text, max(0, p.start - _BEFORE), p.start)
+    return before is None and _THRESHOLD_BEHIND.match(text, p.end) is None
 
 
 def _belongs(text: str, statistic: ShownTest, p: ShownTest) -> bool:
@@ -176,7 +215,7 @@ def _recognised(text: str) -> Iterator[ShownTest | ShownInterval | ShownShare]:
 
 
 def _at_relation(text: str, anchor: re.Match[str]) -> ShownTest | None:
-    at = anchor.start()
+    at = anchor.start("says") if anchor["says"] else anchor.start()
     least = max(0, at - _BEFORE)
     if text[least:at].rstrip(_MARKUP)[-1:] not in _LAST_OF_SYMBOL:
         return None
@@ -185,12 +224,12 @@ def _at_relation(text: str, anchor: re.Match[str]) -> ShownTest | None:
     kind = _kind(symbol) if symbol else None
     if symbol is None or value is None or kind is None:
         return None
-    df = tuple(each for each in (_inside(text, symbol, "df"), _inside(text, symbol, "df2")) if each is not None)
+    df = tuple(each for each in (_inside(symbol, "df"), _inside(symbol, "df2")) if each is not None)
     if len(df) not in _DEGREES[kind] or any(each.value == 0 for each in df):
         return None
     if kind == "p" and not 0 <= value.value <= 1:
         return None
-    return ShownTest(kind, symbol.start(), value.end, value, df, _inside(text, symbol, "n"))
+    return ShownTest(kind, symbol.start(), value.end, value, df, _inside(symbol, "n"))
 
 
 def _kind(symbol: re.Match[str]) -> Kind | None:
@@ -201,10 +240,10 @@ def _kind(symbol: re.Match[str]) -> Kind | None:
     return kind
 
 
-def _inside(text: str, symbol: re.Match[str], group: str) -> Shown | None:
+def _inside(symbol: re.Match[str], group: str) -> Shown | None:
     if symbol[group] is None:
         return None
-    return next(numbers(text, symbol.start(group), symbol.end(group)), None)
+    return number_at(symbol[group].translate(_SUBSCRIPTS), 0)
 
 
 def _behind(text: str, at: int) -> Shown | None:
@@ -248,14 +287,26 @@ def _share(text: str, at: int) -> ShownShare | None:
     last = _last_number(text, at + 1) if _BESIDE_COUNTS.match(text, at) else None
     if last is None or last.found.end() != at + 1:
         return None
-    before = _COUNTS_BEFORE.search(text, max(0, at - _BEFORE), last.start)
-    counts = before or _COUNTS_BEHIND.match(text, at)
+    counts = _counts(text, at, last.start)
     if counts is None:
         return None
-    part, whole = (int(counts[name].replace(",", "")) for name in ("part", "whole"))
-    # 12/10 may be a date or a ratio; "12 of 10" is a slip.
-    if whole == 0 or (part > whole and counts["slash"]):
-        return None
-    end = max(counts.end(), at + 1)
+    first, second = counts
+    part, whole = int(first["part"].replace(",", "")), int(second["whole"].replace(",", ""))
+    end = max(second.end(), at + 1)
     end += text[end : end + 1] in {")", "]"}
-    return ShownShare(min(counts.start(), last.start), end, part, whole, last)
+    # 12/10 may be a date or a ratio; "12 of 10" is a slip.
+    is_fraction = "slash" in first.groupdict() and first["slash"] is not None
+    if whole == 0 or (is_fraction and (part > whole or _MEASURE.match(text, end))):
+        return None
+    return ShownShare(min(first.start(), last.start), end, part, whole, last)
+
+
+def _counts(text: str, at: int, percent: int) -> tuple[re.Match[str], re.Match[str]] | None:
+    """The counts beside the percent sign at `at`, whose number begins at `percent`: where part and whole stand."""
+    least = max(0, at - _BEFORE)
+    both = _COUNTS_BEFORE.search(text, least, percent) or _COUNTS_BEHIND.match(text, at)
+    if both:
+        return both, both
+    whole = _WHOLE_BEHIND.match(text, at)
+    part = _PART_BEFORE.search(text, least, percent) if whole else None
+    return (part, whole) if part and whole else None

@@ -1,4 +1,4 @@
-"""What a verdict tells, one entry for each problem and each finding that is not simply met, worst first.
+"""What a verdict tells, one entry for each problem and each finding that is not met, worst first.
 
 The formats for machines are made of these: all show the same entries, and cut the same ones where room is short.
 """
@@ -69,12 +69,12 @@ def state_of(one: Judged) -> State:
 
 
 def told_of(one: Judged) -> list[tuple[Kind, Finding]]:
-    """Return the findings on a record that are not simply met, worst first."""
+    """Return the findings on a record that are not met, worst first."""
     told: list[tuple[Kind, Finding]] = [
         (_blocked_state(one, undecided=finding.outcome == "undecided"), finding)
         for finding in order.blocking_findings(one)
     ]
-    told += [("noted", finding) for finding in order.noted_findings(one)]
+    told += [("noted", finding) for finding in order.noted_findings(one) if finding.outcome != "met"]
     return told + [("waived", finding) for finding in order.waived_findings(one)]
 
 

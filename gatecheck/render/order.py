@@ -51,9 +51,18 @@ def blocking_findings(one: Judged) -> list[Finding]:
 
 
 def noted_findings(one: Judged) -> list[Finding]:
-    """Return the findings that the policy only notes although they are short or undecided, worst first."""
-    noted = (finding for finding in one.findings if finding.enforce == "note" and outcome_rank(finding) <= 1)
-    return sorted(by_rule(noted), key=outcome_rank)
+    """Return what is told and has no effect, worst first.
+
+    These are the findings that the policy only notes although they are short or undecided, and those that are met
+    and say something all the same.
+    """
+    return sorted(by_rule(finding for finding in one.findings if _is_noted(finding)), key=outcome_rank)
+
+
+def _is_noted(finding: Finding) -> bool:
+    if finding.outcome == "met":
+        return finding.message != ""
+    return finding.enforce == "note" and finding.outcome in {"short", "undecided"}
 
 
 def waived_findings(one: Judged) -> list[Finding]:

@@ -14,6 +14,7 @@ from gatecheck.render.layout import page, paragraph, section
 _CURVE = 41
 _DIGITS, _TRUE_DIGITS = 4, 12
 _LONGEST_LEVEL = 9
+_STANDS_WIDTH = 11
 #: From 10 to this power on, and below 10 to the other, a number is written with an exponent.
 _LARGE, _SMALL = 7, -5
 _PER_GROUP = {"two-sample-t", "two-proportions", "one-way-F"}
@@ -55,7 +56,8 @@ def _headline(answer: Design) -> str:
     asked, least = answer.question, answer.wanted
     size = f"More than 100,000,000 {_nouns(asked)}{_each(asked)}" if least is None else _size(asked, least.size)
     behind = f", as one of a family of {asked.family}" if asked.family > 1 else ""
-    looks = f", at the last of {asked.looks} looks ({asked.boundary})" if asked.looks > 1 else ""
+    which = "if it goes on to the last" if asked.only_last_look else "at one"
+    looks = f", {which} of {asked.looks} looks ({asked.boundary})," if asked.looks > 1 else ""
     return (
         f"{size} for a claim on a true effect of {asked.effect:g} ({_test(asked)}){behind}{looks} to stand "
         f"with {percent(asked.assurance, asked.assurance)} probability under the policy {answer.policy}, weighed "
@@ -71,7 +73,8 @@ def _wanted(answer: Design) -> str:
         ratio = _rounded(Decimal(need.log_likelihood_ratio).exp(), ROUND_CEILING)
         told.append(f"{'one' if told else 'a likelihood ratio'} of {ratio}{against}")
     if answer.log_p_limit < 0:
-        told.append(f"a p of at most {_rounded(Decimal(answer.log_p_limit).exp(), ROUND_FLOOR)}")
+        at_last = " at the last look" if answer.question.looks > 1 else ""
+        told.append(f"a p of at most {_rounded(Decimal(answer.log_p_limit).exp(), ROUND_FLOOR)}{at_last}")
     *others, last = told
     return f"{', '.join(others)} and {last} are wanted" if others else f"{last} is wanted"
 
@@ -114,17 +117,21 @@ class _Column:
 
 def _table(answer: Design) -> str:
     columns = [*_columns_of_size(answer.question), *_columns_of_result(answer)]
-    lines = [f"{'wanted':>9}" + "".join(f"{column.head:>{column.width}}" for column in columns)]
-    for level in answer.levels:
+    stands = [percent(each.least.assurance, each.wanted) if each.least else "" for each in answer.levels]
+    # An assurance close to 1 takes as many digits as tell it from 1.
+    last = max(_STANDS_WIDTH, *(len(each) + 2 for each in stands))
+    lines = [
+        f"{'wanted':>9}" + "".join(f"{column.head:>{column.width}}" for column in columns) + f"{'stands':>{last}}"
+    ]
+    for level, stand in zip(answer.levels, stands, strict=True):
         exact = percent(level.wanted, level.wanted)
         wanted = exact if len(exact) <= _LONGEST_LEVEL else percent(level.wanted)
         if level.least is None:
             lines.append(f"{wanted:>9}  above 100,000,000")
             continue
-        stands = percent(level.least.assurance, level.wanted)
         cells = "".join(f"{column.cell(level.least):>{column.width}}" for column in columns)
-        lines.append(f"{wanted:>9}{cells}{stands:>11}")
-    return "\n".join([f"{lines[0]}{'stands':>11}", *lines[1:]])
+        lines.append(f"{wanted:>9}{cells}{stand:>{last}}")
+    return "\n".join(lines)
 
 
 def _columns_of_size(asked: DesignQuestion) -> list[_Column]:
@@ -197,4 +204,18 @@ def _bare(answer: Design) -> str:
 def _assumed(answer: Design) -> str:
     test = answer.question.test
     counts = _BY_COUNTS if answer.alternative == "default-prior" and test in _MAY_HAVE_COUNTS else ""
-    return " ".join(filter(None, [_NOTES.get(test, ""), counts, _ASSUMED]))
+    looks = _looks(answer.question) if answer.question.looks > 1 else ""
+    return " ".join(filter(None, [_NOTES.get(test, ""), counts, looks, _ASSUMED]))
+
+
+def _looks(asked: DesignQuestion) -> str:
+    if asked.only_last_look:
+        return (
+            "What stands at a look before the last is not counted: over all looks the probability is no smaller, "
+            "if the study goes on where its claim does not stand yet."
+        )
+    return (
+        "The looks are equally spaced, the units are those up to the last one, and the statistic and the p in the "
+        "table are those wanted at it. A look ends the study where the claim stands at it, and not where it is "
+        "within its boundary alone."
+    )

@@ -147,6 +147,7 @@ def _row(one: Judged) -> str:
         risk, needed = _risk(one, one.evidence), _needed(one, one.evidence)
         # A risk without its prior misleads.
         risk += "" if risk == words.UNKNOWN else f", at prior {words.prior(one.evidence)}"
+        risk += f"; {one.evidence.pooled}" if one.evidence.pooled else ""
     return _cells([f"{one.claim or 'Nothing is claimed.'} ({one.id})", one.result, risk, needed, _allowed(one)])
 
 

@@ -245,7 +245,7 @@ def risk(one: Judged) -> str:
     if figures is None or figures.false_positive_risk is None:
         return ""
     value = percent(figures.false_positive_risk, limit_of(one, RISK_RULE))
-    chosen = f"prior {prior(figures)}, {alternative_words(figures.alternative)}"
+    chosen = f"prior {prior(figures)}, {alternative_words(figures.alternative)}{_pooled(figures)}"
     return f"false positive risk {value} ({chosen})"
 
 
@@ -273,7 +273,11 @@ def _odds(log_ratio: float) -> str:
 def assumptions(figures: Figures) -> str:
     """Return on what the figures rest."""
     origin = f", set by the {figures.prior_from}" if figures.prior_from else ""
-    return f"{alternative_words(figures.alternative)}, prior {prior(figures)}{origin}"
+    return f"{alternative_words(figures.alternative)}, prior {prior(figures)}{origin}{_pooled(figures)}"
+
+
+def _pooled(figures: Figures) -> str:
+    return f"; {figures.pooled}" if figures.pooled else ""
 
 
 def change(one: Change) -> str:

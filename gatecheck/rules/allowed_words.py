@@ -8,6 +8,7 @@ mention, from 3 to 20 the evidence is positive, from 20 to 150 strong, above tha
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Callable, Mapping, Sequence
 from typing import Literal
 
@@ -25,6 +26,7 @@ from gatecheck.rules.rule import Table
 
 Answer = Literal["met", "short", "undecided"]
 _USUAL_ALPHA = 0.05
+_NUMBER = re.compile(r"(?<![\w.])\d*\.?\d+")
 
 
 @struct
@@ -104,7 +106,13 @@ def answer(on: Grounds, row: int, wording: Wording) -> Answer:
 
 
 #: Words that a suggestion does not mend.
-_NEVER_SOFT: frozenset[Kind] = frozenset({"hedge", "observed-power", "statistical-significance", "significant"})
+_NEVER_SOFT: frozenset[Kind] = frozenset({
+    "hedge",
+    "observed-power",
+    "p-as-probability",
+    "statistical-significance",
+    "significant",
+})
 
 
 def _no_effect(on: Grounds, row: int, _: Wording) -> Answer:
@@ -151,9 +159,27 @@ def _hedge(on: Grounds, row: int, _: Wording) -> Answer:
 
 
 def _causal(on: Grounds, row: int, _: Wording) -> Answer:
-    design = on.record(row).design
-    wanting = design is None and bool(on.design_required[row])
-    return "short" if design == "observational" or wanting else "met"
+    record = on.record(row)
+    # Nobody needs a design to report a possible harm.
+    wanting = record.design is None and bool(on.design_required[row]) and not record.harm
+    return "short" if record.design == "observational" or wanting else "met"
+
+
+def _p_as_probability(on: Grounds, row: int, wording: Wording) -> Answer:
+    """Short where the number that the words give is p or the rest of 1, and where they give none."""
+    told = _NUMBER.findall(wording.quote)
+    if not told:
+        return "short"
+    if not np.isfinite(on.p[row]):
+        return "undecided"
+    return "short" if any(_is_of_p(each, float(on.p[row])) for each in told) else "met"
+
+
+def _is_of_p(told: str, p: float) -> bool:
+    """Whether a number, in percent or as a part of 1, is p or 1 - p within its last digit."""
+    number, half = float(told), 0.5 * 10.0 ** -len(told.partition(".")[2])
+    whole = (100.0, 1.0) if number < 1 else (100.0,)
+    return any(abs(number - scale * each) <= half * (1 + 1e-9) for scale in whole for each in (p, 1 - p))
 
 
 def _never(_: Grounds, __: int, ___: Wording) -> Answer:
@@ -190,6 +216,7 @@ _ANSWERS: Mapping[Kind, Callable[[Grounds, int, Wording], Answer]] = {
     "not-worse": _not_worse,
     "difference": _difference,
     "observed-power": _never,
+    "p-as-probability": _p_as_probability,
     "hedge": _hedge,
     "causal": _causal,
     "statistical-significance": _statistical,

@@ -20,7 +20,7 @@ Row = tuple[Finding, ...]
 def judge_all(rules: Sequence[Rule], table: Table, *, explain: frozenset[int] = frozenset()) -> list[Row]:
     """Judge every row of `table` by every rule that is on for it; findings stand in the order of `rules`.
 
-    Rows in `explain` carry words for every outcome, the others for what falls short or is undecided.
+    Rows in `explain` carry words for every outcome, the others for what falls short, is undecided or noted.
     """
     found: list[list[Finding]] = [[] for _ in table.applied]
     # What is not finite makes a row undecided; a warning beside that would tell nobody anything.
@@ -74,7 +74,7 @@ class _Judging:
                 return Finding(self.rule.name, "undecided", enforce, None, None, said.message, said.remedy)
         outcome = self.outcome(row)
         observed, limit = _at(self.judgement.observed, row), _at(self.judgement.limit, row)
-        if outcome == "met" and not wordy:
+        if outcome == "met" and not wordy and not self.noted(row):
             return Finding(self.rule.name, outcome, enforce, observed, limit)
         said = self.rule.explain(self.table, row, self.settings[row], self.judgement)
         remedy = "" if outcome == "met" else said.remedy
@@ -85,6 +85,10 @@ class _Judging:
         if self.judgement.known is not None and not self.judgement.known[row]:
             return "undecided"
         return "short" if self.judgement.short[row] else "met"
+
+    def noted(self, row: int) -> bool:
+        """Whether what the rule says of a row is to be told although it is met."""
+        return self.judgement.noted is not None and bool(self.judgement.noted[row])
 
 
 def _at(column: Floats | None, row: int) -> float | None:

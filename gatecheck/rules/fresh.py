@@ -4,7 +4,7 @@ A result was made from the files that are here: the SHA-256 digests in `provenan
 which `declare(..., inputs=[...])` writes) are those of the files in the tree. Line ends may differ, as a checkout
 may convert them, and of a file kept by Git LFS its pointer tells the digest. A file that differs or is gone falls
 short; an input without a digest, or outside of the repository, is undecided, and so is a claim that names no
-input. That the code (`provenance.code`) changed in a later commit than the record is only said, unless the policy
+input. That the code (`provenance.code`) changed in a later commit than the record is only noted, unless the policy
 has `code: true`.
 
 Common practice, no source.
@@ -56,7 +56,8 @@ def judge(table: Table, settings: Sequence[Settings | None]) -> Judgement:
     newer = [one.code_is_newer is True and asked for one, asked in zip(facts, with_code, strict=True)]
     ordered = [one.code_is_newer is not None or not asked for one, asked in zip(facts, with_code, strict=True)]
     short = np.array(gone, np.bool_) | np.array(newer, np.bool_)
-    return Judgement(short, known=short | (np.array(same, np.bool_) & np.array(ordered, np.bool_)))
+    known = short | (np.array(same, np.bool_) & np.array(ordered, np.bool_))
+    return Judgement(short, known=known, noted=np.array([one.code_is_newer is True for one in facts], np.bool_))
 
 
 def explain(table: Table, row: int, _: Settings, judgement: Judgement) -> Said:

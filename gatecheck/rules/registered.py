@@ -2,12 +2,14 @@
 
 A confirmatory claim names a hypothesis of a plan (`plan: {file, hypothesis}`), the evidence that the plan came
 before the data is of `grade` or better (`repository-order` unless the policy says otherwise), and the claim is as
-the plan had it when it was frozen: outcome, test, sides, direction, alpha, n, population, exclusions, covariates,
-effect designed for, margins, prior, family, looks, role and aim. Each difference is told with both values, and
-with the p that the promise gives where sides differ. A `deviations` entry that names the field turns it into an
-amendment (decided `before-data`) or a departure that is told (`before-results`); one decided `after-results`
-makes the claim exploratory (`after_results: keep` lets it stand). Safety outcomes are exempt: nobody needs a
-registration to report a possible harm.
+the plan had it when it was frozen: outcome, test, sides, direction, alpha (that of the family where the hypothesis
+has none), n and its unit, population, exclusions, covariates, effect designed for, margins, prior, family with its
+size, looks, role and aim. Each difference is told with both values, and with the p that the promise gives where
+sides or direction differ. A `deviations` entry that names the field turns it into an amendment (decided
+`before-data`) or a departure (`before-results`), and either is noted beside the claim; one decided `after-results`
+makes the claim exploratory (`after_results: keep` lets it stand). An entry that states other values as planned or
+done than the plan and the record have excuses nothing. Safety outcomes are exempt: nobody needs a registration to
+report a possible harm.
 """
 
 from __future__ import annotations
@@ -20,14 +22,14 @@ import numpy as np
 
 from gatecheck.columns import Booleans
 from gatecheck.compare.names import shown
-from gatecheck.compare.promises import Difference, differences, promises_something, unused_deviations
+from gatecheck.compare.promised_hypotheses import promises_something
+from gatecheck.compare.promises import Difference, differences, unused_deviations
 from gatecheck.model.promise import GRADES, Grade, Promise
 from gatecheck.model.record import Deviation, Record
 from gatecheck.model.struct import struct
 from gatecheck.policy import RuleSettings
 from gatecheck.rules.rule import Exemption, Judgement, Rule, Said, Table
 
-_MOST_TOLD = 3
 _COMMIT = 12
 _NEXT_TIME = "set status: exploratory, and register the next study before its data"
 _LATE = "set status: exploratory, or confirm the claim in a study of its own"
@@ -78,7 +80,8 @@ def judge(table: Table, settings: Sequence[Settings | None]) -> Judgement:
     ]
     short = np.array([case is not None and bool(case.against) for case in cases], np.bool_)
     known = np.array([case is None or case.is_known for case in cases], np.bool_)
-    return Judgement(short, known=known, facts=cases)
+    noted = np.array([case is not None and bool(table.record(row).deviations) for row, case in enumerate(cases)])
+    return Judgement(short, known=known, noted=noted, facts=cases)
 
 
 def _case(table: Table, row: int, settings: Settings) -> Case:
@@ -126,11 +129,9 @@ def _absent(promise: Promise) -> Said | None:
 def _undeclared(promise: Promise, found: Sequence[Difference], settings: Settings) -> Iterable[Said]:
     told = [each.told for each in found if each.standing == "undeclared"]
     if told:
-        more = f"; and {len(told) - _MOST_TOLD} more" if len(told) > _MOST_TOLD else ""
-        listed = "; ".join(told[:_MOST_TOLD]) + more
         cost = _AT_WHAT_COST if settings.after_results == "exploratory" else ""
         yield Said(
-            f"the claim differs from {_place(promise)}, without a deviation that says so: {listed}",
+            f"the claim differs from {_place(promise)}, without a deviation that says so: {'; '.join(told)}",
             f"{_DISCLOSE}{cost}",
         )
 
@@ -157,15 +158,17 @@ def _grade(promise: Promise, settings: Settings) -> Iterable[Said]:
 
 
 def explain(table: Table, row: int, _: Settings, judgement: Judgement) -> Said:
-    """What stands against the claim, or what it keeps and which departures it discloses."""
+    """What stands against the claim, or what it keeps, and which departures it discloses."""
     case: Case = judgement.facts[row]
+    record = table.record(row)
     if case.against:
         found = "; ".join(each.message for each in case.against)
         remedies = dict.fromkeys(each.remedy for each in case.against)
-        return Said(_sentence(found), _sentence("; ".join(remedies)))
+        return Said(_sentence(found) + _in_time(record, case), _sentence("; ".join(remedies)))
     if case.promise is None:
-        return _undecided(table.record(row), table.promises[row] if table.promises else None)
-    return Said(" ".join(_sentence(each) for each in _kept(table.record(row), case, case.promise)))
+        why = _undecided(record, table.promises[row] if table.promises else None)
+        return Said(why.message + _in_time(record, case), why.remedy)
+    return Said(" ".join(_sentence(each) for each in _kept(record, case, case.promise)))
 
 
 def _undecided(record: Record, promise: Promise | None) -> Said:
@@ -181,17 +184,28 @@ def _undecided(record: Record, promise: Promise | None) -> Said:
 def _kept(record: Record, case: Case, promise: Promise) -> Iterable[str]:
     """What a claim that stands keeps, and what it discloses."""
     grade = promise.grade or f"{promise.at_least} or better"
-    yield f"the claim keeps to {_place(promise)}; that the plan came first is {grade}"
+    because = f" ({_clause(promise.because)})" if promise.because else ""
+    yield f"the claim keeps to {_place(promise)}; that the plan came first is {grade}{because}"
     unused = unused_deviations(record, case.differences)
-    departures = [_departure(each) for each in record.deviations if each not in unused]
+    departures = [_departure(each, case.differences) for each in record.deviations if each not in unused]
     if departures:
-        yield f"it discloses {'; '.join(departures)}"
+        yield f"it discloses: {'; '.join(departures)}"
     if unused:
         yield f"in {', '.join(each.field for each in unused)} a deviation is disclosed and nothing differs"
 
 
-def _departure(deviation: Deviation) -> str:
-    return f"{shown(deviation.field)} (decided {deviation.known}: {shown(deviation.reason)})"
+def _in_time(record: Record, case: Case) -> str:
+    """What a claim that does not stand discloses of its differences in time: those do not stand against it."""
+    known = [one.disclosed for one in case.differences if one.standing in {"amendment", "flagged"}]
+    disclosed = [each for each in record.deviations if each in known]
+    departures = [_departure(each, case.differences) for each in disclosed]
+    return f" The claim discloses: {'; '.join(departures)}." if departures else ""
+
+
+def _departure(deviation: Deviation, found: Sequence[Difference]) -> str:
+    """What a deviation discloses, with both values where the field is compared, and when and why it was decided."""
+    told = "; ".join(each.told for each in found if each.disclosed is deviation)
+    return f"{told or shown(deviation.field)} (decided {deviation.known}: {shown(deviation.reason)})"
 
 
 def _place(promise: Promise) -> str:

@@ -45,8 +45,9 @@ class Judgement:
     """A rule's outcome for all rows: where it falls short, and what was observed against which limit.
 
     `would_do` is the least number of units per group that would mend a row, for the rules that can tell it.
-    Where `known` is false the row is undecided, and the rule explains why. `facts` is what the rule worked out for
-    all rows and needs again to explain one.
+    Where `known` is false the row is undecided, and the rule explains why. Where `noted` is true, what the rule
+    says of the row is told although it is met. `facts` is what the rule worked out for all rows and needs again to
+    explain one.
     """
 
     short: Booleans
@@ -54,6 +55,7 @@ class Judgement:
     limit: Floats | None = None
     would_do: Floats | None = None
     known: Booleans | None = None
+    noted: Booleans | None = None
     facts: Any = None
 
 

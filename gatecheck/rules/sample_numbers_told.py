@@ -8,13 +8,17 @@ from typing import TYPE_CHECKING
 
 from gatecheck.columns import F
 from gatecheck.compare.agreement import Agreement
-from gatecheck.model.record import Sample
-from gatecheck.rules.numbers_told import Tell, ends, estimate_of, sample_of, test_of
+from gatecheck.compare.written import places
+from gatecheck.model.record import Sample, Test
+from gatecheck.rules.numbers_told import Explained, Tell, either, ends, estimate_of, sample_of, test_of
 from gatecheck.rules.rule import Said, Table
 from gatecheck.rules.words import plural, tell_number, tell_statistic
 
 _NORMAL = 1.959964
 _MOST_EXACT = 10_000
+_LEAST_PLACES = 2
+#: What a form of chi-squared is called where it is a z.
+_OF_Z = {"Pearson": "pooled"}
 
 if TYPE_CHECKING:
     from gatecheck.compare.proportion_numbers import Proportion
@@ -111,11 +115,27 @@ def _tell_exact_binomial(found: Proportion, null: float) -> str:
 
 def _tell_group_statistic(table: Table, row: int, agreement: Agreement) -> Said:
     test = test_of(table, row)
-    return Said(
+    message = (
         f"the summaries of the groups give {test.statistic} = {ends(agreement, row)} in size, "
-        f"and {tell_number(test.value)} is reported",
-        "Take statistic and summaries from the same units, and name the test.",
+        f"and {tell_number(test.value)} is reported"
     )
+    hint = _errors_for_deviations(table, row, agreement.name)
+    if hint:
+        return Explained(message, hint)
+    return Said(message, "Take statistic and summaries from the same units, and name the test.")
+
+
+def _errors_for_deviations(table: Table, row: int, name: str) -> str:
+    """What to do where standard errors stand for standard deviations; empty where that would not fit."""
+    from gatecheck.compare.group_numbers import as_errors  # noqa: PLC0415  # rarely told
+
+    deviations = as_errors(table.columns.found[row], name)
+    if not deviations:
+        return ""
+    sizes = [group.n for group in sample_of(table, row).groups]
+    by = f"times √{sizes[0]}" if len(set(sizes)) == 1 else "times the root of n"
+    given = " and ".join(f"{deviation:.2g}" for deviation in deviations)
+    return f"Give the standard deviations: these look like standard errors, which {by} are {given}."
 
 
 def _tell_welch_df(table: Table, row: int, agreement: Agreement) -> Said:
@@ -159,13 +179,24 @@ def _tell_counts(table: Table, row: int, _: Agreement) -> Said:
     )
 
 
-def _tell_count_statistic(table: Table, row: int, agreement: Agreement) -> Said:
+def _tell_count_statistic(table: Table, row: int, _: Agreement) -> Said:
+    from gatecheck.compare.count_numbers import usual_forms  # noqa: PLC0415  # rarely told
+
     test = test_of(table, row)
+    forms = [_tell_form(test, *form) for form in usual_forms(table.record(row))]
     return Said(
-        f"{_tell_events(table, row)} give {test.statistic} = {ends(agreement, row)} in size by every form, and "
-        f"{tell_number(test.value)} is reported",
+        f"{_tell_events(table, row)} give {test.statistic} = {either(forms)}, and {tell_number(test.value)} is "
+        "none of these nor another form in use",
         "Check the counts, and name the test.",
     )
+
+
+def _tell_form(test: Test, name: str, square: float) -> str:
+    """One form of the statistic, in the digits that tell it from the one reported."""
+    digits = max(_LEAST_PLACES, (places(test.value) if test.value is not None else None) or 0)
+    if test.statistic == "z":
+        return f"{math.sqrt(square):.{digits}f} ({_OF_Z.get(name, name)})"
+    return f"{square:.{digits}f} ({name})"
 
 
 def _tell_events(table: Table, row: int) -> str:

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
 
 import numpy as np
 
@@ -14,19 +13,12 @@ from gatecheck.model.record import Estimate, Record
 from gatecheck.model.shown import percent
 from gatecheck.rules.allowed_words import Grounds, has_margin
 from gatecheck.rules.words import describe_result, tell_number, tell_sample
-from gatecheck.rules.words_not_allowed import difference_told, tell_margin_interval
+from gatecheck.rules.words_not_allowed import difference_told, tell_margin_interval, tell_risk
 
 _NO_EFFECT_WORDS: frozenset[Kind] = frozenset({"no-effect", "safe", "not-worse"})
 #: Means and their difference are reported in few digits (common practice, no source).
 _SAME_DIFFERENCE = 0.05
 _PAIR = 2
-_EVEN = 0.5
-_UNDER: Mapping[str, str] = {
-    "observed-effect": "against the effect as observed, which errs in its favour",
-    "design-effect": "against the effect planned",
-    "default-prior": "under the default prior of its test",
-    "bound": "by the calibration of its p-value",
-}
 
 
 def suggest(on: Grounds, row: int, kind: Kind) -> str:
@@ -83,7 +75,7 @@ def _sentence(on: Grounds, row: int, kind: Kind) -> str:
         estimate = on.record(row).estimate
         smallest = tell_number(estimate.smallest_effect if estimate else None)
         return f"{outcome}: a difference smaller than we care about ({smallest})"
-    ending = [_risk(on, row)]
+    ending = [tell_risk(on, row)]
     if on.p[row] > on.alpha[row]:
         ending.append("the data do not settle whether there is an effect")
     return "; ".join([outcome, *filter(None, ending)])
@@ -143,18 +135,6 @@ def _higher(record: Record, estimate: Estimate) -> str:
     if abs(first.mean.value - second.mean.value - value) > _SAME_DIFFERENCE * value:
         return ""
     return f"{variable} was {_with_unit(estimate)} higher in {shown(first.name)} than in {shown(second.name)}"
-
-
-def _risk(on: Grounds, row: int) -> str:
-    """The false positive risk with the prior and the alternative that it rests on; empty where there is none."""
-    evidence, columns = on.table.evidence, on.table.columns
-    risk, under = float(evidence.false_positive_risk[row]), evidence.alternative[row]
-    own = columns.no_effect_aim[row] or columns.estimation_aim[row] or evidence.on_all[row]
-    if own or under is None or not math.isfinite(risk):
-        return ""
-    prior = float(evidence.prior[row])
-    at = "an even prior" if prior == _EVEN else f"a prior of {prior:.4g}"
-    return f"with {at} the risk that there is no effect is {percent(risk)} ({_UNDER[under]})"
 
 
 def _two_effects(on: Grounds, fact: Interaction) -> str:

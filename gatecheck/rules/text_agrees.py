@@ -23,9 +23,9 @@ Statistics without a link are recognised as they are usually written (t, F, χ²
 their level, percentages with counts) and looked for among the records; what none has is listed with the nearest,
 and blocks with `unlinked: block` (`note` unless the policy says otherwise, or `off`). A percentage that is not
 that of its own counts is listed as well. A sentence that calls a result confirmed or registered whose record is
-not confirmatory is said. Code, comments, addresses and lists of references are left alone; a cell of a table is
-read like other text, a bare number in it only where it has a link. A link that leads nowhere, and a file that is
-no UTF-8, cannot be judged.
+not confirmatory is said. Code, comments, addresses and lists of references are left alone, and so are the results
+of others in a sentence that cites them and speaks of no own work; a cell of a table is read like other text, a bare
+number in it only where it has a link. A link that leads nowhere, and a file that is no UTF-8, cannot be judged.
 
 > The text says 3.8 for estimate.value of yield/spring, and the record says 3.3; the policy wants the record's
 > number within the digits shown. Write 3.3; `gatecheck refresh --write` does so for every link.

@@ -2,22 +2,26 @@
 
 It looks for words that need more than a result has: "no effect", "safe" or "not worse" without a margin and an
 interval inside it; a difference in significance read as a difference between effects, without a test of that
-difference; "trend" and "marginally" where p is above alpha; causal verbs where the design does not allow them;
-observed power as an argument; "significant" that does not say how; words of importance without a smallest effect of
-interest; words of strength above the likelihood ratio. The phrases and their exceptions are data, one list a
-language. Sources: the statement on p-values of the American Statistical Association (2016), SAMPL guidelines (Lang
-and Altman 2013), and those beside each kind.
+difference; "trend" and "marginally" where p is above alpha; causal verbs where no design that allows them is
+declared; observed power as an argument; p read as the probability of chance, of a hypothesis or of an error;
+"significant" that does not say how; words of importance without a smallest effect of interest; words of strength
+above the likelihood ratio. The phrases and their exceptions are data, one list a language. Sources: the statement
+on p-values of the American Statistical Association (2016), SAMPL guidelines (Lang and Altman 2013), and those
+beside each kind.
 
 A claim that is softened ("may", "suggests") is let be where the record is not confirmatory, and softened causal
 words are let be always.
 
 A claim of a difference between two results names both in `compares: [ID, ID]`, and the message gives their
-difference. With `design: required` in the policy causal words need a `design` in the record; without it only an
-`observational` one forbids them. Strength words follow Kass and Raftery (20 for "strong"), and "proves" is never
-met. The remedy is a sentence built from the record. `allow` names kinds of words to let be: `no-effect`, `safe`,
-`not-worse`, `difference`, `observed-power`, `hedge`, `causal`, `statistical-significance`, `importance`,
-`significant`, `strength`; `linked: false` leaves sentences in prose alone. The phrases, with what only looks like
-them, are lists in `gatecheck/compare/phrases`, one a `language`.
+difference. Causal words need the `design` in the record, `randomised` or `quasi-experimental`; with `design: open`
+in the policy, and where the record reports a harm (`harm: true`), only an `observational` one forbids them. A
+probability of chance or of a hypothesis falls short unless its number is neither p nor 1 - p; the message gives the
+risk that the gate computes. Strength words follow Kass and Raftery (20 for "strong"), and "proves" is never met.
+
+The remedy is a sentence built from the record. `allow` names kinds of words to let be: `no-effect`, `safe`,
+`not-worse`, `difference`, `observed-power`, `p-as-probability`, `hedge`, `causal`, `statistical-significance`,
+`importance`, `significant`, `strength`; `linked: false` leaves sentences in prose alone. The phrases, with what
+only looks like them, are lists in `gatecheck/compare/phrases`, one a `language`.
 """
 
 from __future__ import annotations
@@ -54,7 +58,7 @@ class Settings(RuleSettings):
     design: Annotated[
         Literal["open", "required"],
         "required: causal words also fall short where the record declares no design; open: they are then let be",
-    ] = "open"
+    ] = "required"
     linked: Annotated[bool, "judge sentences that are linked to a record like its claim"] = True
 
 
@@ -165,9 +169,8 @@ def _said(whose: str, on: Grounds, row: int, short: Sequence[Wording], undecided
 def _tell(on: Grounds, row: int, wording: Wording) -> str:
     from gatecheck.rules.words_not_allowed import tell_ground  # noqa: PLC0415  # loaded where something is said
 
-    ground = tell_ground(on, row, wording)
     quote = _quoted(wording.quote) if wording.quote else "that two effects differ"
-    return f"{quote}, which {wording.phrase.needs}{f': {ground}' if ground else ''}"
+    return f"{quote}, which {wording.phrase.needs}{tell_ground(on, row, wording)}"
 
 
 def _quoted(text: str) -> str:

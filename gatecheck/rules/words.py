@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import math
 
+import numpy as np
+
 from gatecheck.columns import Columns
 from gatecheck.evidence import Evidence
 from gatecheck.model.numbers import Reported
@@ -166,7 +168,7 @@ def tell_n(evidence: Evidence, row: int, n: float, unit: str | None) -> str:
 def as_reported(columns: Columns, row: int, shift: float) -> str:
     """A shift from no effect on the scale of the estimate as it is reported."""
     null = float(columns.estimate.null[row])
-    value = null * math.exp(shift) if columns.estimate.log_scale[row] else null + float(shift)
+    value = null * float(np.exp(shift)) if columns.estimate.log_scale[row] else null + float(shift)
     return f"{value:.3g}" if math.isfinite(value) else "unbounded"
 
 

@@ -15,11 +15,19 @@ from gatecheck.rules.words import tell_number
 
 _LARGEST_LOG_TOLD = 60.0
 _TWO_DIGITS_FROM = 0.1
+_EVEN = 0.5
+_UNDER: Mapping[str, str] = {
+    "observed-effect": "against the effect as observed, which errs in its favour",
+    "design-effect": "against the effect planned",
+    "default-prior": "under the default prior of its test",
+    "bound": "by the calibration of its p-value",
+}
 
 
 def tell_ground(on: Grounds, row: int, wording: Wording) -> str:
-    """What the record has where words need something: `the record gives no margin`; may be empty."""
-    return _GROUNDS[wording.phrase.kind](on, row)
+    """What the record has where words need something, as it goes on behind that; may be empty."""
+    ground = _GROUNDS[wording.phrase.kind](on, row)
+    return ground if ground.startswith(",") or not ground else f": {ground}"
 
 
 def tell_missing(kind: Kind) -> str:
@@ -70,10 +78,10 @@ def _tell_interaction(on: Grounds, row: int) -> str:
         p = _tell_p(on, row) if np.isfinite(on.p[row]) else "no p"
         return f"its own test of that difference has {p}"
     if fact is None:
-        return "no interaction record: this one does not test that difference"
+        return ", and no record gives one"
     if fact.apart:
         return f"the two that it compares cannot be set against each other: {fact.apart}"
-    return f"no interaction record: {tell_difference(on, fact)}"
+    return f", and no record gives one: {tell_difference(on, fact)}"
 
 
 def tell_difference(on: Grounds, fact: Interaction) -> str:
@@ -112,6 +120,23 @@ def _tell_p_and_alpha(on: Grounds, row: int) -> str:
 def _tell_design(on: Grounds, row: int) -> str:
     design = on.record(row).design
     return "the record declares no design" if design is None else f"the record's design is {design}"
+
+
+def _tell_risk_beside_p(on: Grounds, row: int) -> str:
+    p = _tell_p(on, row) if np.isfinite(on.p[row]) else "the record gives no p"
+    return ", and ".join(filter(None, [p, tell_risk(on, row)]))
+
+
+def tell_risk(on: Grounds, row: int) -> str:
+    """The false positive risk with the prior and the alternative that it rests on; empty where there is none."""
+    evidence, columns = on.table.evidence, on.table.columns
+    risk, under = float(evidence.false_positive_risk[row]), evidence.alternative[row]
+    own = columns.no_effect_aim[row] or columns.estimation_aim[row] or evidence.on_all[row]
+    if own or under is None or not math.isfinite(risk):
+        return ""
+    prior = float(evidence.prior[row])
+    at = "an even prior" if prior == _EVEN else f"a prior of {prior:.4g}"
+    return f"with {at} the risk that there is no effect is {percent(risk)} ({_UNDER[under]})"
 
 
 def _tell_power(on: Grounds, row: int) -> str:
@@ -166,6 +191,7 @@ _GROUNDS: Mapping[Kind, Callable[[Grounds, int], str]] = {
     "not-worse": _tell_margin,
     "difference": _tell_interaction,
     "observed-power": _tell_power,
+    "p-as-probability": _tell_risk_beside_p,
     "hedge": _tell_p_and_alpha,
     "causal": _tell_design,
     "statistical-significance": _tell_p_and_alpha,
@@ -178,6 +204,7 @@ _MISSING: Mapping[Kind, str] = {
     "safe": "Give estimate.standard_error, or estimate.interval",
     "not-worse": "Give estimate.standard_error, or estimate.interval",
     "difference": "Name in compares two records that report the same measure and unit with their standard errors",
+    "p-as-probability": "Give test.p, or the statistic with its df",
     "statistical-significance": "Give test.p, or the statistic with its df",
     "importance": "Give estimate.interval with two limits",
     "strength": "Give the statistic with its df, or the raw p",

@@ -18,6 +18,7 @@ from gatecheck.weigh.default_prior import log_bf_r, log_bf_t, log_bf_unit_inform
 from gatecheck.weigh.mixed import Statistic, at_noncentrality, log_p, observed_effect, value_from_log_p
 from gatecheck.weigh.noncentral import upper_tail_chi2, upper_tail_f, upper_tail_r, upper_tail_t
 from gatecheck.weigh.planned import About
+from gatecheck.weigh.quantiles import z_from_log_p
 from gatecheck.weigh.risk import log_lr_bound, log_p_for_bound
 from gatecheck.weigh.t import r_from_t
 
@@ -97,6 +98,13 @@ def value_at(planned: Planned, log_p_value: float) -> FloatArray:
     return value_from_log_p(planned.kind, log_p_value, planned.df1, planned.df2, planned.one_sided)
 
 
+def as_z(planned: Planned, value: FloatArray) -> FloatArray:
+    """The z with the p-values of these values, not negative; infinite where they are."""
+    finite = np.isfinite(value)
+    z = z_from_log_p(log_p_of(planned, np.where(finite, value, 0.0)), one_sided=planned.one_sided)
+    return np.where(finite, np.maximum(z, 0.0), np.inf)
+
+
 def assurance(planned: Planned, least: FloatArray) -> FloatArray:
     """Probability that the statistic is at least ``least`` under the true effect; zero where that is infinite."""
     finite = np.where(np.isinf(least), 0.0, least)
@@ -118,14 +126,14 @@ def assurance(planned: Planned, least: FloatArray) -> FloatArray:
 
 def _log_bf_default(planned: Planned, value: FloatArray) -> FloatArray:
     if planned.about == About.MEANS:
-        return log_bf_t(value, planned.df1, planned.n, planned.scale, one_sided=planned.one_sided)
+        by_f = planned.kind == Statistic.F
+        t, df = (np.sqrt(value), planned.df2) if by_f else (value, planned.df1)
+        return log_bf_t(t, df, planned.n, planned.scale, one_sided=planned.one_sided)
     if planned.about == About.CORRELATION:
         r = r_from_t(value, planned.df1)
         return log_bf_r(r, planned.df1 + 2, UNIFORM, one_sided=planned.one_sided)
     if planned.about == About.SEVERAL_EFFECTS or planned.one_sided:
         return np.full_like(value, np.nan)
-    if planned.kind == Statistic.F:
-        return log_bf_unit_information(planned.n / 2 * np.log1p(value / planned.df2), planned.n)
     return log_bf_unit_information(value / 2 if planned.kind == Statistic.CHI2 else value**2 / 2, planned.n)
 
 

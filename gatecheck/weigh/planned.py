@@ -99,11 +99,15 @@ def two_proportions(h: float, n1: FloatArray, n2: FloatArray, *, one_sided: bool
     return Planned(Statistic.Z, About.ONE_EFFECT, one_sided, _none(n1), _none(n1), ncp, n1 + n2)
 
 
-def one_way_f(f: float, groups: int, n_each: FloatArray) -> Planned:
-    """The F test of equal groups; ``f`` is the spread of their means (divisor: groups) over that within."""
-    n = groups * n_each
-    about = About.ONE_EFFECT if groups == 2 else About.SEVERAL_EFFECTS  # noqa: PLR2004
-    return Planned(Statistic.F, about, False, np.full_like(n, groups - 1.0), n - groups, f * f * n, n)
+def one_way_f(f: float, groups: int, n_each: FloatArray, *, scale: float) -> Planned:
+    """The F test of equal groups; ``f`` is the spread of their means (divisor: groups) over that within.
+
+    That of two groups is the square of their t, and about means as this is.
+    """
+    n, df1 = groups * n_each, np.full_like(n_each, groups - 1.0)
+    if groups == 2:  # noqa: PLR2004
+        return Planned(Statistic.F, About.MEANS, False, df1, n - 2, f * f * n, n_each / 2, scale)
+    return Planned(Statistic.F, About.SEVERAL_EFFECTS, False, df1, n - groups, f * f * n, n)
 
 
 def chi_squared(w: float, df: int, n: FloatArray) -> Planned:

@@ -108,7 +108,123 @@ CORRECT: dict[str, dict[str, Any]] = {
         "test": {"name": "Spearman correlation", "statistic": "r", "value": "0.40", "df": 30, "p": "0.023"},
         "estimate": {"measure": "Spearman correlation", "value": "0.40", "interval": interval("0.04", "0.67")},
     },
+    # Ratios that do not say their scale, and relative changes.
+    "a rate ratio with the interval and z of its logarithm": {
+        "test": {"name": "Poisson regression", "statistic": "z", "value": "1.57", "p": "0.12"},
+        "estimate": {"measure": "incidence rate ratio", "value": "1.30", "interval": interval("0.94", "1.81")},
+    },
+    "an abbreviated ratio": {
+        "test": {"name": "Poisson regression", "statistic": "z", "value": "1.57", "p": "0.12"},
+        "estimate": {"measure": "IRR", "value": "1.30", "null": 1, "interval": interval("0.94", "1.81")},
+    },
+    "an odds ratio with its own standard error": {
+        "test": {"name": "logistic regression", "statistic": "z", "value": "3.34", "p": "<0.001"},
+        "estimate": {
+            "measure": "odds ratio", "value": "2.19", "standard_error": "0.51",
+            "interval": interval("1.38", "3.47"),
+        },
+    },
+    "a ratio of means with a linear interval": {
+        "test": {"name": "t test", "statistic": "t", "value": "2.00", "df": 40, "p": "0.052"},
+        "estimate": {"measure": "ratio of means", "value": "1.30", "interval": interval("1.00", "1.60")},
+    },
+    "a ratio of means that says it is on the linear scale": {
+        "test": {"name": "t test", "statistic": "t", "value": "2.00", "df": 40, "p": "0.052"},
+        "estimate": {
+            "measure": "ratio of means", "value": "1.30", "scale": "linear", "interval": interval("1.00", "1.60"),
+        },
+    },
+    "a ratio of means with a linear interval below 0": {
+        "test": {"name": "t test", "statistic": "t", "value": "0.40", "df": 40, "p": "0.69"},
+        "estimate": {"measure": "ratio of means", "value": "1.30", "interval": interval("-0.22", "2.82")},
+    },
+    "a difference of log ratios": {
+        "test": {"name": "z", "statistic": "z", "value": "2.00", "p": "0.046"},
+        "estimate": {"measure": "difference of log ratios", "value": "0.40", "interval": interval("0.01", "0.79")},
+    },
+    "a mean that is a ratio, against 0": {
+        "test": {"name": "one-sample t", "statistic": "t", "value": "3.00", "df": 20, "p": "0.007"},
+        "estimate": {"measure": "gain ratio", "value": "0.60", "interval": interval("0.18", "1.02")},
+    },
+    "a ratio below 0": {
+        "test": {"name": "one-sample t", "statistic": "t", "value": "-3.00", "df": 20, "p": "0.007"},
+        "estimate": {"measure": "rate ratio, centred", "value": "-0.60", "interval": interval("-1.02", "-0.18")},
+    },
+    "a percent change computed on logarithms": {
+        "test": {"name": "t-test on logarithms", "statistic": "t", "value": "1.62", "df": 60, "p": "0.11"},
+        "estimate": {
+            "measure": "percent change", "value": "16.4", "unit": "%", "interval": interval("-3.5", "40.5"),
+        },
+    },
+    "a relative reduction computed on logarithms": {
+        "test": {"name": "Cox regression", "statistic": "z", "value": "-2.00", "p": "0.046"},
+        "estimate": {
+            "measure": "relative hazard reduction", "value": "0.220", "unit": "1",
+            "interval": interval("0.005", "0.389"),
+        },
+    },
+    "a percent change without an interval": {
+        "test": {"name": "z", "statistic": "z", "value": "1.62", "p": "0.105"},
+        "estimate": {"measure": "percent change", "value": "16.4", "unit": "%", "null": 0, "standard_error": "2.1"},
+    },
+    "a relative risk reduction beside its counts": {
+        "test": {"name": "chi-squared test", "statistic": "chi2", "value": "9.52", "df": 1, "p": "0.002"},
+        "estimate": {"measure": "relative risk reduction", "value": "50", "unit": "%", "standard_error": "12"},
+        "sample": {"groups": [{"name": "a", "n": 100, "events": 20}, {"name": "b", "n": 100, "events": 40}]},
+    },
+    "a relative risk increase beside its counts": {
+        "test": {"name": "chi-squared test", "statistic": "chi2", "value": "9.52", "df": 1, "p": "0.002"},
+        "estimate": {"measure": "relative risk increase", "value": "1.00", "unit": "1"},
+        "sample": {"groups": [{"name": "a", "n": 100, "events": 40}, {"name": "b", "n": 100, "events": 20}]},
+    },
+    "a change in odds beside its counts": {
+        "test": {"name": "chi-squared test", "statistic": "chi2", "value": "9.52", "df": 1, "p": "0.002"},
+        "estimate": {"measure": "reduction of the odds ratio", "value": "63", "unit": "%"},
+        "sample": {"groups": [{"name": "a", "n": 100, "events": 20}, {"name": "b", "n": 100, "events": 40}]},
+    },
+    "the error of a risk ratio itself beside its counts": {
+        "test": {"name": "two-proportion z"},
+        "estimate": {"measure": "risk ratio", "value": "0.50", "standard_error": "0.12"},
+        "sample": {"groups": [{"name": "a", "n": 100, "events": 20}, {"name": "b", "n": 100, "events": 40}]},
+    },
+    # Two methods, each said or shown by the counts.
+    "chi-squared corrected for continuity beside Wald's interval": {
+        "test": {"name": "chi-squared test", "statistic": "chi2", "value": "3.11", "df": 1, "p": "0.078"},
+        "estimate": {"measure": "risk difference", "value": "0.25", "interval": interval("0.015", "0.485")},
+        "sample": {"groups": [{"name": "a", "n": 32, "events": 22}, {"name": "b", "n": 32, "events": 14}]},
+    },
+    "its p alone beside Wald's interval": {
+        "test": {"name": "chi-squared test", "p": "0.078"},
+        "estimate": {"measure": "risk difference", "value": "0.25", "interval": interval("0.015", "0.485")},
+        "sample": {"groups": [{"name": "a", "n": 32, "events": 22}, {"name": "b", "n": 32, "events": 14}]},
+    },
+    "a correction for continuity that is named": {
+        "test": {
+            "name": "chi-squared test with continuity correction", "statistic": "chi2", "value": "3.11", "df": 1,
+            "p": "0.078",
+        },
+        "estimate": {"measure": "risk difference", "value": "0.25", "interval": interval("0.015", "0.485")},
+    },
+    "its p alone, and named": {
+        "test": {"name": "chi-squared test with continuity correction", "p": "0.078"},
+        "estimate": {"measure": "risk difference", "value": "0.25", "interval": interval("0.015", "0.485")},
+    },
+    "a bootstrap interval beside Welch's t": {
+        "test": {"name": "Welch t", "statistic": "t", "value": "2.02", "df": "9.8", "p": "0.072"},
+        "estimate": {
+            "measure": "mean difference (bootstrap interval)", "value": "3.16",
+            "interval": interval("0.22", "6.10"),
+        },
+    },
     # Df and sizes.
+    "an analysis of variance by Welch, its df whole by chance": {
+        "test": {"name": "one-way ANOVA (Welch)", "statistic": "F", "value": "1.50", "df": [4, 17], "p": "0.246"},
+        "sample": {"n": 52, "groups": [{"name": f"g{n}", "n": n} for n in (10, 10, 5, 9, 18)]},
+    },
+    "one that does not name Welch and writes its df with a decimal": {
+        "test": {"name": "one-way ANOVA", "statistic": "F", "value": "1.50", "df": [4, "17.0"], "p": "0.246"},
+        "sample": {"n": 52, "groups": [{"name": f"g{n}", "n": n} for n in (10, 10, 5, 9, 18)]},
+    },
     "Welch": {
         "test": {"name": "t test", "statistic": "t", "value": "2.03", "df": "43.7", "p": "0.048"},
         "sample": two((24, 24)),

@@ -12,13 +12,8 @@ from scipy import stats
 from support import Document, changed
 
 from gatecheck.compare.promised_fields import FIELDS
-from gatecheck.compare.promises import (
-    Difference,
-    differences,
-    missing_hypotheses,
-    promises_something,
-    unused_deviations,
-)
+from gatecheck.compare.promised_hypotheses import promises_something
+from gatecheck.compare.promises import Difference, differences, missing_hypotheses, unused_deviations
 from gatecheck.model.plan import Plan
 from gatecheck.model.promise import PlanInTree, Promise
 from gatecheck.model.record import Record, Role
@@ -38,11 +33,13 @@ CHANGES: tuple[tuple[Document, str], ...] = (
     ({"estimate__value": -4.2}, "direction"),
     ({"estimate": ..., "test__value": -2.21}, "direction"),
     ({"test__alpha": 0.1}, "alpha"),
+    ({"test__alpha": ...}, "alpha"),
     ({"sample__n": 30}, "n"),
     ({"sample__n": 50}, "n"),
     ({"sample__excluded": []}, "n"),
     ({"sample__n": ..., "sample__groups": []}, "n"),
     ({"sample__unit": "pit"}, "n.unit"),
+    ({"sample__unit": ...}, "n.unit"),
     ({"population": "plots that were drained"}, "population"),
     ({"population": ...}, "population"),
     ({"sample__excluded": [{"n": 4, "reason": "low yield"}]}, "exclusions"),
@@ -57,6 +54,9 @@ CHANGES: tuple[tuple[Document, str], ...] = (
     ({"prior__probability": 0.3}, "prior"),
     ({"family": ...}, "family"),
     ({"family__name": "yield"}, "family"),
+    ({"family__size": 1}, "family.size"),
+    ({"family__size": 3}, "family.size"),
+    ({"family__size": ...}, "family.size"),
     ({"family__procedure": "none"}, "family.procedure"),
     ({"family__position": 2}, "family.position"),
     ({"look": ...}, "looks"),
@@ -75,20 +75,18 @@ KEEPS: tuple[Document, ...] = (
     {"test__name": "t test"},
     {"test__name": "two-sided t-test"},
     {"test__sides": ...},
-    {"test__alpha": ...},
     {"estimate__value": "0.0"},
     {"estimate__value": "-0", "estimate__interval": ...},
     {"estimate__margin": ["-2", "2"]},
     {"estimate__margin": ...},
     {"estimate__smallest_effect": ...},
     {"estimate": ...},
-    {"estimate": ..., "test": {"name": "Welch t", "p": 0.03}},
-    {"estimate": ..., "test": {"name": "Welch t", "statistic": "F", "value": 3, "df": [1, 34]}},
+    {"estimate": ..., "test": {"name": "Welch t", "p": 0.03, "alpha": 0.05}},
+    {"estimate": ..., "test": {"name": "Welch t", "statistic": "F", "value": 3, "df": [1, 34], "alpha": 0.05}},
     {"sample__n": ...},
     {"sample__n": 40},
     {"sample__n": 40, "sample__excluded": []},
     {"sample__unit": "Plots"},
-    {"sample__unit": ...},
     {"sample__excluded": [{"n": 3, "reason": "flooded"}, {"n": 1, "reason": "marker-lost"}]},
     {"sample__n": 40, "sample__excluded": [{"n": 0, "reason": "low yield"}]},
     {"look__number": 2, "sample__n": 24},
@@ -210,7 +208,15 @@ def told(record: Record, plan: Plan | None = None) -> str:
 
 def test_one_side_of_a_two_sided_promise_is_told_with_the_two_sided_p() -> None:
     """t(46) = 1.78, one-sided p = .041: the two-sided p is .082 (twice scipy's upper tail)."""
-    test = {"name": "two-sample t", "statistic": "t", "value": 1.78, "df": 46, "p": "0.041", "sides": 1}
+    test = {
+        "name": "two-sample t",
+        "statistic": "t",
+        "value": 1.78,
+        "df": 46,
+        "p": "0.041",
+        "sides": 1,
+        "alpha": 0.05,
+    }
 
     said = told(kept(test=test))
 
@@ -228,7 +234,9 @@ def test_one_side_of_a_two_sided_promise_is_told_with_the_two_sided_p() -> None:
     ],
 )
 def test_the_two_sided_p_is_that_of_the_statistic(test: Document, p: float) -> None:
-    said = told(kept(estimate=..., test={"name": "Welch t", "sides": 1, **test}), planned(direction="either"))
+    tested = {"name": "Welch t", "sides": 1, "alpha": 0.05, **test}
+
+    said = told(kept(estimate=..., test=tested), planned(direction="either"))
 
     assert float(said.rpartition(" = ")[2].removesuffix(")")) == pytest.approx(p, abs=5e-4)
 
@@ -247,7 +255,7 @@ def test_the_two_sided_p_is_that_of_the_statistic(test: Document, p: float) -> N
     ],
 )
 def test_a_p_that_cannot_be_told_is_not_told(test: Document) -> None:
-    said = told(kept(test={"name": "Welch t", "sides": 1, **test}))
+    said = told(kept(test={"name": "Welch t", "sides": 1, "alpha": 0.05, **test}))
 
     assert said == "one side of the test is taken, and both sides were promised"
 
@@ -263,7 +271,7 @@ def test_a_p_that_cannot_be_told_is_not_told(test: Document) -> None:
 )
 def test_both_sides_of_a_one_sided_promise(direction: str, test: Document, honest: str) -> None:
     """Only a statistic with its sign gives the p of the side that was promised."""
-    record = kept(estimate=..., test={"name": "Welch t", "statistic": "t", "df": 34, **test})
+    record = kept(estimate=..., test={"name": "Welch t", "statistic": "t", "df": 34, "alpha": 0.05, **test})
 
     assert told(record, planned(direction=direction, sides=1)) == (
         f"both sides of the test are taken, and one side was promised{honest}"
@@ -272,7 +280,8 @@ def test_both_sides_of_a_one_sided_promise(direction: str, test: Document, hones
 
 @pytest.mark.parametrize("statistic", [{"statistic": "chi2", "df": 1}, {"statistic": "F", "df": [1, 34]}])
 def test_a_test_without_sides_keeps_any(statistic: Document) -> None:
-    record = kept(estimate=..., test={"name": "Welch t", "value": 4.9, "sides": 1, **statistic})
+    tested = {"name": "Welch t", "value": 4.9, "sides": 1, "alpha": 0.05, **statistic}
+    record = kept(estimate=..., test=tested)
 
     assert found(record) == []
 
@@ -281,7 +290,12 @@ def test_the_side_tested_against_a_promised_direction() -> None:
     record = kept(test__sides=1, test__tail="less")
     plan = planned(sides=1)
 
-    assert told(record, plan) == "the side tested is less, and an increase was promised"
+    p = stats.t.sf(2.21, 34)
+    assert told(record, plan) == (f"the side tested is less, and an increase was promised (one-sided p = {p:.3g})")
+    other_way = kept(test__sides=1, test__tail="less", test__value=-2.21)
+    assert told(other_way, plan).endswith(f" was promised (one-sided p = {1 - p:.3g})")
+    without_value = kept(test__sides=1, test__tail="less", test__value=..., test__p="0.98")
+    assert told(without_value, plan) == "the side tested is less, and an increase was promised"
     assert found(kept(test__sides=1, test__tail="less"), planned(sides=1, direction="decrease")) == ["direction"]
     assert found(kept(test__sides=1, test__tail="greater"), plan) == []
 
@@ -366,7 +380,7 @@ def test_a_family_that_the_plan_does_not_describe_is_compared_by_name(families: 
 def test_a_place_in_the_family_is_compared_where_the_plan_orders_the_hypothesis() -> None:
     plan = planned(changed(PLAN, families={"growth": {"procedure": "fixed-sequence"}}))
 
-    assert found(kept(family__position=7), plan) == []
+    assert found(kept(family__position=7, family__size=1), plan) == []
 
 
 def test_one_planned_look_need_not_be_told() -> None:

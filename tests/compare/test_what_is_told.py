@@ -17,6 +17,12 @@ PROPORTIONS = {
     "groups": [{"name": "new", "n": 100, "events": 30}, {"name": "old", "n": 100, "events": 18}],
 }
 
+FIFTH_AND_TWO = {
+    "unit": "user",
+    "n": 200,
+    "groups": [{"name": "new", "n": 100, "events": 20}, {"name": "old", "n": 100, "events": 40}],
+}
+
 
 def said(folder: Path, record: Document) -> dict[str, Any]:
     return judge(folder, record).rule("numbers-agree")
@@ -148,7 +154,8 @@ TOLD = [
         bare(
             test={"name": "two-proportion z", "statistic": "z", "value": "2.90", "p": "0.0037"}, sample=PROPORTIONS
         ),
-        "30 of 100 and 18 of 100 give z = 1.82 to 2.01 in size by every form, and 2.90 is reported",
+        "30 of 100 and 18 of 100 give z = 1.82 (continuity), 1.99 (pooled), 2.00 (likelihood ratio) or 2.01 "
+        "(unpooled), and 2.90 is none of these nor another form in use; the",
         "Check the counts, and name the test.",
     ),
     (
@@ -362,8 +369,113 @@ TOLD = [
             },
             estimate={"measure": "difference", "value": "-4.20", "standard_error": "1.90"},
         ),
-        "estimate and standard error give t = 2.21 in size, and 2.21 is reported",
+        "the estimate is -4.20, but the test toward greater has t = 2.21: the signs differ; the policy",
+        "Give estimate and statistic the sign of the same difference.",
+    ),
+    (
+        bare(
+            test={
+                "name": "t",
+                "statistic": "t",
+                "value": "-2.21",
+                "df": 34,
+                "p": "0.017",
+                "sides": 1,
+                "tail": "less",
+            },
+            estimate={"measure": "difference", "value": "9.20", "standard_error": "1.90"},
+        ),
+        "estimate and standard error give t = 4.84 in size, and -2.21 is reported",
         "Take estimate and statistic from the same test",
+    ),
+    (
+        bare(
+            test={"name": "chi-squared test", "statistic": "chi2", "value": "9.64", "df": 1, "p": "0.002"},
+            sample=FIFTH_AND_TWO,
+        ),
+        "20 of 100 and 40 of 100 give chi2 = 8.60 (continuity), 9.52 (Pearson), 9.66 (likelihood ratio) or 10.00 "
+        "(unpooled), and 9.64 is none of these nor another form in use",
+        "Check the counts, and name the test.",
+    ),
+    (
+        bare(
+            test={"name": "chi-squared test", "statistic": "chi2", "value": "9.52", "df": 1, "p": "0.002"},
+            estimate={"measure": "relative risk reduction", "value": "40", "unit": "%"},
+            sample=FIFTH_AND_TWO,
+        ),
+        "20 of 100 and 40 of 100 give -100 or 50 as relative risk reduction, by the order of the groups, and 40 is",
+        "Check the counts and the estimate.",
+    ),
+    (
+        bare(
+            test={"name": "logistic regression", "statistic": "z", "value": "3.34", "p": "<0.001"},
+            estimate={
+                "measure": "odds ratio",
+                "value": "2.19",
+                "scale": "log",
+                "standard_error": "0.51",
+                "interval": {"level": 0.95, "low": "1.38", "high": "3.47"},
+            },
+        ),
+        "which is 0.904 standard errors of 0.51; estimate and standard error on the log scale give z = 1.54",
+        "Give the standard error of the logarithm: 0.51 is that of the ratio itself (0.51 / 2.19 = 0.23 fits).",
+    ),
+    (
+        bare(
+            test={"name": "logistic regression", "statistic": "z", "value": "3.34", "p": "<0.001"},
+            estimate={"measure": "odds ratio", "value": "2.19", "scale": "log", "standard_error": "0.91"},
+        ),
+        "estimate and standard error on the log scale give z = 0.861 in size, and 3.34 is reported",
+        "Take estimate and statistic from the same test",
+    ),
+    (
+        bare(
+            test={"name": "two-sample t", "statistic": "t", "value": "2.21", "df": 34, "p": "0.034"},
+            sample=groups((18, "21.1", "1.39"), (18, "16.9", "1.30")),
+        ),
+        "the summaries of the groups give t = 9.11 to 9.62 in size, and 2.21 is reported",
+        "Give the standard deviations: these look like standard errors, which times √18 are 5.9 and 5.5.",
+    ),
+    (
+        bare(
+            test={"name": "two-sample t", "statistic": "t", "value": "2.23", "df": 36, "p": "0.032"},
+            sample=groups((18, "21.1", "1.39"), (20, "16.9", "1.25")),
+        ),
+        "the summaries of the groups give t =",
+        "these look like standard errors, which times the root of n are 5.9 and 5.6.",
+    ),
+    (
+        bare(
+            test={"name": "two-sample t", "statistic": "t", "value": "2.21", "df": 118, "p": "0.029"},
+            sample={"unit": "pupil", "clusters": 6, **groups((60, "21.1", "5.9"), (60, "18.8", "5.5"))}
+            | {"n": 120},
+        ),
+        "than the 6 clusters that there are, which allow 5 at most; the policy",
+        "Analyse the units that were assigned or sampled",
+    ),
+    (
+        bare(
+            test={"name": "Wald", "p": "0.03"},
+            estimate={
+                "measure": "hazard ratio",
+                "value": "0.78",
+                "interval": {"level": 0.95, "low": "0.60", "high": "1.01"},
+            },
+        ),
+        "the interval 0.60 to 1.01 includes 1, which goes with p = 0.061 on the log scale, and 0.03 is reported",
+        "; say in estimate.scale on which scale the ratio is. Rule out first",
+    ),
+    (
+        bare(
+            test={"name": "Cox regression", "statistic": "z", "value": "2.20", "p": "0.028"},
+            estimate={
+                "measure": "hazard ratio",
+                "value": "2.15",
+                "interval": {"level": 0.95, "low": "1.052", "high": "2.408"},
+            },
+        ),
+        "statistic and interval 1.052 to 2.408 fit an estimate of 1.59 on the log scale, and 2.15 is reported",
+        "Take estimate and interval from the same run and on the same scale; say in estimate.scale",
     ),
     (
         bare(
@@ -406,6 +518,21 @@ def test_a_disagreement_is_told_with_what_would_fit(
                 estimate__interval={"level": 0.95, "low": -0.8, "high": 9.2, "adjusted": True},
             ),
             "; the interval is adjusted and p is not, so these two are not compared.",
+        ),
+        (
+            bare(
+                test={"name": "Wald", "p": "0.061"},
+                estimate={
+                    "measure": "hazard ratio",
+                    "value": "0.78",
+                    "interval": {"level": 0.95, "low": "0.60", "high": "1.01"},
+                },
+            ),
+            "; estimate.scale does not say the scale of the ratio, so it was read on those that it may be on.",
+        ),
+        (
+            bare(estimate={"measure": "percent change", "value": "16.4", "unit": "%"}),
+            "no two of its figures determine each other.",
         ),
         (bare(test={"name": "rank test", "p": 0.03}), "no two of its figures determine each other."),
     ],

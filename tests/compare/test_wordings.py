@@ -80,6 +80,14 @@ FLAGGED = [
     ("THERE WAS NO DIFFERENCE BETWEEN THE TWO SOILS.", "no-effect", "NO DIFFERENCE"),
     ("Mulch doesn’t affect germination.", "no-effect", "doesn’t affect"),
     ("The two doses are the same.", "no-effect", "are the same"),
+    ("Yield was the same in both groups.", "no-effect", "was the same"),
+    ("Yields were similar.", "no-effect", "were similar"),
+    ("Yields were comparable between arms.", "no-effect", "were comparable"),
+    ("Yield was no different on drained plots.", "no-effect", "was no different"),
+    ("Both arms had similar survival.", "no-effect", "had similar survival"),
+    ("The two models performed equally well.", "no-effect", "performed equally"),
+    ("From baseline to week 12 there was no change.", "no-effect", "no change"),
+    ("After adjusting for baseline values there was no difference.", "no-effect", "no difference"),
     ("Seedling height is unaffected by shade.", "no-effect", "is unaffected"),
     ("Programme and control areas did not differ.", "no-effect", "did not differ"),
     ("The old and the new index are statistically equivalent.", "no-effect", "statistically equivalent"),
@@ -98,6 +106,7 @@ FLAGGED = [
     ("Observed power was 25 %, so the null result is unreliable.", "observed-power", "Observed power"),
     ("The post-hoc power of 0.31 explains the result.", "observed-power", "post-hoc power"),
     ("There was a trend towards higher biomass.", "hedge", "trend towards"),
+    ("Yield was marginally higher (p = .143).", "hedge", "marginally higher"),
     (
         "Yield was marginally significantly higher; it was marginally significant.",
         "hedge",
@@ -106,15 +115,72 @@ FLAGGED = [
     ("The difference approached statistical significance.", "hedge", "approached statistical significance"),
     ("The result just failed to reach significance.", "hedge", "just failed to reach significance"),
     ("Drainage increases earthworm biomass.", "causal", "increases"),
+    ("Drainage prevents loss.", "causal", "prevents"),
+    ("Biomass was reduced by drainage.", "causal", "reduced"),
     ("Wet soil leads to fewer seedlings.", "causal", "leads to"),
     ("The gain is due to drainage.", "causal", "due to"),
     ("The effect of drainage on biomass is 4.2 g/m2.", "causal", "effect of drainage on"),
     ("Yield was statistically significantly higher.", "statistical-significance", "statistically significantly"),
+    (
+        "The probability that the result is due to chance is 3.4 %.",
+        "p-as-probability",
+        "probability that the result is due to chance",
+    ),
+    (
+        "The likelihood of it being due to pure luck is small.",
+        "p-as-probability",
+        "likelihood of it being due to pure luck",
+    ),
+    ("There is little risk that it arose by chance.", "p-as-probability", "risk that it arose by chance"),
+    (
+        "The probability of this occurring by chance is 3.4 %.",
+        "p-as-probability",
+        "probability of this occurring by chance",
+    ),
+    ("The odds that it is a fluke are small.", "p-as-probability", "odds that it is a fluke"),
+    ("The probability of a chance finding is 3.4 %.", "p-as-probability", "probability of a chance finding"),
+    (
+        "The rise is due to chance with a probability of 3.4 %.",
+        "p-as-probability",
+        "due to chance with a probability",
+    ),
+    (
+        "The probability that the null hypothesis is true is 3.4 %.",
+        "p-as-probability",
+        "probability that the null hypothesis is true",
+    ),
+    ("The probability of H0 is 3.4 %.", "p-as-probability", "probability of H0 is"),
+    (
+        "The null hypothesis is false with a probability of 96.6 %.",
+        "p-as-probability",
+        "null hypothesis is false with a probability",
+    ),
+    (
+        "The null hypothesis has a 3.4 % chance of being true.",
+        "p-as-probability",
+        "null hypothesis has a 3.4 % chance of being true",
+    ),
+    (
+        "The probability that there is no effect is 3.4 %.",
+        "p-as-probability",
+        "probability that there is no effect",
+    ),
+    (
+        "The probability that the effect is real is 96.6 %.",
+        "p-as-probability",
+        "probability that the effect is real",
+    ),
+    ("The risk of error is 3.4 %.", "p-as-probability", "risk of error is 3.4"),
+    ("The chance of being wrong is only 3.4 %.", "p-as-probability", "chance of being wrong is only 3.4"),
+    ("There is a 3.4 % risk of error.", "p-as-probability", "a 3.4 % risk of error"),
+    ("We are 96.6 % confident that drainage works.", "p-as-probability", "are 96.6 % confident that"),
+    ("There is a 96.6 % probability that drainage works.", "p-as-probability", "a 96.6 % probability that"),
     ("A worthwhile lift in conversion.", "importance", "worthwhile"),
     ("The reduction is clinically relevant.", "importance", "clinically relevant"),
     ("Biomass differed significantly.", "significant", "significantly"),
     ("The difference is highly significant.", "significant", "highly significant"),
     ("This proves that drainage works.", "strength", "proves"),
+    ("There is no doubt that drainage matters.", "strength", "no doubt that"),
     ("There is overwhelming evidence for a rise.", "strength", "overwhelming evidence"),
     ("We have strong evidence that yields rose.", "strength", "strong evidence"),
     ("There is moderate evidence of a rise.", "strength", "moderate evidence"),
@@ -190,6 +256,43 @@ CAREFUL = [
     "Non-significant results are listed in the appendix.",
     "Biomass was 4.2 g/m2 higher in drained plots (95 % interval 0.34 to 8.06).",
     "The waterproof sensor was cheaper.",
+    "No difference in soil type existed at baseline; biomass was higher by 4.2.",
+    "At baseline there was no difference in soil type, and biomass rose.",
+    "The groups were similar at baseline.",
+    "Baseline characteristics were similar in both groups.",
+    "Before treatment the two groups did not differ.",
+    "Age and sex were comparable between arms.",
+    "The sample sizes were equal in all arms.",
+    "The device is similar to a rain gauge.",
+    "Yields were similar to those of earlier studies.",
+    "Results were similar when plots by the road were left out.",
+    "In the sensitivity analysis yields were similar.",
+    "With an even prior the risk that there is no effect is 17 %.",
+    "The p-value is not the probability that the result is due to chance.",
+    "The probability that such a result is due to chance if there were no effect is 3.4 %.",
+    "If nothing was done, the probability that it is a fluke is high.",
+    "The chance that data this extreme arise by chance is 3.4 %.",
+    "The posterior probability that the null hypothesis is true is 3.4 %.",
+    "The probability that the null hypothesis is true was set at 0.5.",
+    "The risk of error was set at 5 %.",
+    "The probability of rejecting the null hypothesis was 80 %.",
+    "We are 95 % confident that the interval contains the mean.",
+    "Drained plots had 4.2 g more, due to chance or to drainage.",
+    "The odds ratio was 1.2, which may be due to chance.",
+    "The risk of death was lower, possibly due to chance.",
+    "The false positive risk is 20.7 %.",
+    "Biomass increased by 4.2 g.",
+    "Biomass increased 4.2 g on drained plots.",
+    "Yield improved considerably.",
+    "Yield was reduced by about 4.2 g.",
+    "Survival was improved in spring.",
+    "Reduced tillage plots had more worms. Increased light went with more.",
+    "Because of missing data two plots were left out.",
+    "Wet soil causes no rot and leads to nothing.",
+    "It resulted in little change.",
+    "The proven reserves were 4.2.",
+    "The proved and probable reserves were 4.2.",
+    "Marginal means differed by 4.2 g.",
     "Sinceritas causa valet.",
 ]
 
@@ -331,7 +434,15 @@ def test_a_pattern_begins_with_a_word(pattern: str) -> None:
     ],
 )
 def test_elements_of_a_pattern(pattern: str, text: str, expected: list[tuple[int, int]]) -> None:
-    assert index_of([pattern]).spans(tokens_of(text)) == expected
+    """The tokens are counted from the first word."""
+    assert [(start - 1, end - 1) for start, end in index_of([pattern]).spans(tokens_of(text))] == expected
+
+
+def test_a_pattern_may_ask_for_the_head_of_a_sentence() -> None:
+    tokens = tokens_of("Reduced doses; reduced, reduced doses. Reduced again")
+
+    assert index_of([".|;|: reduced"]).spans(tokens) == [(0, 2), (3, 5), (8, 10)]
+    assert tokens.quote(0, 2) == "Reduced"
 
 
 def test_the_phrase_of_a_kind() -> None:

@@ -469,6 +469,40 @@ Here t(34) = 9.7.
     assert says_nothing(held("# Bibliography\n\nt(34) = 9.9"))
 
 
+@pytest.mark.parametrize(
+    "text",
+    [
+        "Smith et al. (2031) reported t(20) = 3.10, p = .006.",
+        "Earlier work found r = .30, p = .02 [@smith2031].",
+        "As @smith2031 says, t(20) = 3.10.",
+        r"Others \citep{smith} have t(20) = 3.10.",
+        "Others :cite:p:`smith` have t(20) = 3.10.",
+        "Smith (2031) has p = .006.",
+        "It was found before (Smith & Jones, 2031; p = .006).",
+        "It was seen in 12/48 (25 %) plots (see Jones 2031).",
+    ],
+)
+def test_results_of_others_beside_a_citation_are_left_alone(text: str) -> None:
+    assert says_nothing(held(f"One thing.\n\n{text} More.", record(id="x", test__df=20, test__value=3.2)))
+
+
+@pytest.mark.parametrize(
+    "text",
+    [
+        "Unlike Smith et al. (2031), we found t(20) = 3.10, p = .006.",
+        "Smith et al. (2031) saw it. It was so, t(20) = 3.10, p = .006.",
+        "In Spring (2031) it was so, t(20) = 3.10.",
+        "In the plots (May 2031) it was so, t(20) = 3.10.",
+        "Mail to a@b.org, t(20) = 3.10.",
+        "As in Smith (2031), this sample has t(20) = 3.10.",
+        f"Smith et al. (2031) reported t(34) = 3.10. {link('claim')}",
+        "Smith et al. (2031) saw it in 12/48 (26 %).",
+    ],
+)
+def test_own_results_beside_a_citation_are_held_against_the_records(text: str) -> None:
+    assert len(held(f"One thing.\n\n{text}").facts) == 1
+
+
 def test_values_that_are_odd_do_no_harm() -> None:
     assert number_of(known()[ID], "estimate.measure") is None
     assert number_of(known()[ID], "no..thing") is None

@@ -50,6 +50,11 @@ def reported(number: float | str) -> Reported:
         ("2.1×10⁻⁵", "0.000021", "0.000001"),
         ("2.1 &times; 10<sup>-5</sup>", "0.000021", "0.000001"),
         ("3 x 10^3", "3000", "1000"),
+        ("10^-4", "0.0001", "0.0001"),
+        ("10^{-4}", "0.0001", "0.0001"),
+        ("10^−4^", "0.0001", "0.0001"),
+        ("10⁻⁴", "0.0001", "0.0001"),
+        ("10<sup>-4</sup>", "0.0001", "0.0001"),
     ],
 )
 def test_a_number_is_read_with_its_digits(text: str, value: str, unit: str) -> None:
@@ -68,6 +73,7 @@ def test_a_number_is_read_with_its_digits(text: str, value: str, unit: str) -> N
         ("$2.21$ **3.3** _4.4_ [0.3,8.1]", ["2.21", "3.3", "4.4", "0.3", "8.1"]),
         ("3.3g of 5mg", ["3.3", "5"]),
         ("9" * 50, []),
+        ("110^-4 and 2.10^-4", ["110", "4", "2.10", "4"]),
     ],
 )
 def test_digits_within_words_are_no_numbers(text: str, found: list[str]) -> None:
@@ -127,6 +133,8 @@ def test_a_number_is_told_with_its_bound() -> None:
         ("−2.1", -2.1, True),
         ("2.1", -2.1, False),
         ("p < .001", 0.0004, True),
+        ("p < 10^-4", 0.00004, True),
+        ("p < 10^-4", 0.0004, False),
         ("p < .001", 0.001, False),
         ("p < .001", "<0.001", True),
         ("p < .001", "<0.01", False),
@@ -183,6 +191,7 @@ def test_percent_may_be_the_unit_of_the_record() -> None:
         ("3.30 × 10^5", "3.4e5", None),
         ("3.3 × 10^5", 0.0, None),
         ("p < .001", 0.002, None),
+        ("10^-4", 0.002, None),
         ("p = .03", "<0.001", None),
         ("0.1", 1e300, "1" + "0" * 300 + ".0"),
     ],

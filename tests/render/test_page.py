@@ -266,7 +266,7 @@ def test_where_plans_looks_families_and_waivers_matter() -> None:
     look = Finding("looks", "met", "block")
     family = Finding("family", "undecided", "note", message="a member is missing")
     one = replace(LIMING, findings=(plan, look))
-    two = waived(replace(DRAINAGE, id="two", findings=(*DRAINAGE.findings, replace(plan, outcome="met"))))
+    two = waived(replace(DRAINAGE, id="two", findings=(*DRAINAGE.findings, replace(look, rule="registered"))))
     three = replace(LIMING, id="three", findings=(family,))
     told = read(Verdict(POLICY, (one, two, three))).text
     assert in_order(

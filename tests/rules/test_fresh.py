@@ -193,6 +193,21 @@ def test_newer_code_is_said_and_is_no_shortfall(tmp_path: Path) -> None:
     assert short[2] == "Rerun analysis.py, and commit the record that it writes."
 
 
+def test_newer_code_is_noted_without_being_asked_for(tmp_path: Path) -> None:
+    with_code(tmp_path)
+    later = only(judged(tmp_path))
+    write(tmp_path, drainage(provenance={"code": "analysis.py", "inputs": [plots()], "made_at": "again"}))
+    commit_all(tmp_path, "rerun")
+
+    assert later == (
+        "met",
+        "The inputs (data/plots_2031.csv) are as the record says. Its code, analysis.py, changed in a later commit "
+        "than the record.",
+        "",
+    )
+    assert only(judged(tmp_path)) == ("met", "", "")
+
+
 def test_newer_code_is_a_shortfall_where_the_policy_says_so(tmp_path: Path) -> None:
     with_code(tmp_path)
 

@@ -8,6 +8,7 @@ from hypothesis import strategies as st
 from promising import FROZEN_AT, HYPOTHESIS, deviation, kept, planned, promise, table
 from support import Document
 
+from gatecheck.compare.promises import differences
 from gatecheck.model.promise import GRADES, Grade, Promise
 from gatecheck.model.record import Record
 from gatecheck.model.verdict import Finding
@@ -43,6 +44,12 @@ def finding(record: Record, promised: Promise | None, settings: Settings | None 
     return one
 
 
+def told(record: Record) -> str:
+    """How the only difference of a record from its promise is told."""
+    (one,) = differences(record, promise())
+    return one.told
+
+
 def sentences(one: Finding) -> int:
     """How many sentences the finding has."""
     return sum(text.count(". ") + text.endswith(".") for text in (one.message, one.remedy))
@@ -52,7 +59,9 @@ def test_a_claim_that_keeps_its_promise() -> None:
     one = finding(kept(), promise())
 
     assert (one.outcome, one.remedy) == ("met", "")
-    assert one.message == f"The claim keeps to {H1}; that the plan came first is repository-order."
+    assert one.message == (
+        f"The claim keeps to {H1}; that the plan came first is repository-order (its commit comes before the data)."
+    )
 
 
 @pytest.mark.parametrize("changes", [{"status": "exploratory"}, {"status": "descriptive"}, {"claim": ...}])
@@ -136,7 +145,9 @@ def test_a_grade_that_is_not_known_does_where_what_is_known_is_enough(least: Gra
 
     enough = GRADES.index("repository-order") >= GRADES.index(least)
     assert one.outcome == ("met" if enough else "undecided")
-    assert ("that the plan came first is repository-order or better." in one.message) is enough
+    assert (
+        "that the plan came first is repository-order or better (no signers are given)." in one.message
+    ) is enough
 
 
 def test_a_difference_is_short_although_the_grade_is_not_known() -> None:
@@ -173,7 +184,8 @@ def test_undeclared_differences_are_told_with_the_frozen_version() -> None:
         f"The claim differs from {H1}, which was changed later, without a deviation that says so: the time point "
         "of the outcome is 7 days, and 90 days was promised; one side of the test is taken, and both sides were "
         "promised (two-sided p = 0.0339); the number of units is 20 analysed and 4 left out, and 40 was promised; "
-        "and 2 more."
+        "the population is not told, and all plots as assigned was promised; the role of the outcome is secondary, "
+        "and primary was promised."
     )
     assert one.remedy == REMEDY
     assert sentences(one) == 2
@@ -196,8 +208,8 @@ def test_disclosing_a_difference_in_time_removes_the_shortfall(change: tuple[str
 
     assert (undeclared.outcome, disclosed.outcome) == ("short", "met")
     assert disclosed.message == (
-        f"The claim keeps to {H1}; that the plan came first is repository-order. It discloses {field} (decided "
-        f"{known}: a flood)."
+        f"The claim keeps to {H1}; that the plan came first is repository-order (its commit comes before the "
+        f"data). It discloses: {told(kept(**changes))} (decided {known}: a flood)."
     )
 
 
@@ -215,7 +227,7 @@ def test_a_departure_after_the_results_makes_a_claim_exploratory(change: tuple[s
     )
     assert one.remedy == "Set status: exploratory, or confirm the claim in a study of its own."
     assert left.outcome == "met"
-    assert f"{field} (decided after-results: a flood)" in left.message
+    assert left.message.endswith(f"It discloses: {told(kept(**changes))} (decided after-results: a flood).")
 
 
 def test_a_late_departure_in_what_is_not_compared_counts_too() -> None:
@@ -240,10 +252,93 @@ def test_a_deviation_where_nothing_differs_is_told() -> None:
 
     assert one.outcome == "met"
     assert one.message.endswith(
-        ". It discloses missing data (decided before-results: a flood). In alpha a deviation is disclosed and "
+        ". It discloses: missing data (decided before-results: a flood). In alpha a deviation is disclosed and "
         "nothing differs."
     )
     assert sentences(one) == 3
+
+
+def noted(record: Record, promised: Promise | None, settings: Settings | None = None) -> Finding:
+    """What the rule says of a record where nobody asked for an explanation."""
+    ((one,),) = judge_all([RULE], table([record], [promised], RULE.name, settings or Settings()))
+    return one
+
+
+@pytest.mark.parametrize("known", ["before-data", "before-results"])
+def test_what_a_claim_discloses_is_noted_without_being_asked_for(known: str) -> None:
+    record = kept(population="drained plots", deviations=[deviation("population", known)])
+
+    one = noted(record, promise())
+
+    assert (one.outcome, one.remedy) == ("met", "")
+    assert one.message == finding(record, promise()).message
+    assert one.message.endswith(
+        "It discloses: the population is drained plots, and all plots as assigned was promised (decided "
+        f"{known}: a flood)."
+    )
+
+
+def test_a_claim_that_discloses_nothing_is_not_noted() -> None:
+    assert (noted(kept(), promise()).outcome, noted(kept(), promise()).message) == ("met", "")
+
+
+def test_a_departure_in_what_is_not_compared_is_noted_by_its_field() -> None:
+    one = noted(kept(deviations=[deviation("missing data", "before-results")]), promise())
+
+    assert one.message.endswith("It discloses: missing data (decided before-results: a flood).")
+
+
+def test_one_deviation_in_two_fields_is_told_once_with_both() -> None:
+    record = kept(outcome__metric="x", outcome__time_point="7 days", deviations=[deviation("outcome")])
+
+    assert noted(record, promise()).message.endswith(
+        "It discloses: the metric of the outcome is x, and change from baseline was promised; the time point of "
+        "the outcome is 7 days, and 90 days was promised (decided before-data: a flood)."
+    )
+
+
+def test_what_is_disclosed_in_time_is_told_beside_what_is_not() -> None:
+    changes: Document = {"population": "x", "deviations": [deviation("population")]}
+
+    short = noted(kept(**changes, test__sides=1), promise())
+    unknown = noted(kept(**changes), promise(grade=None))
+
+    disclosed = (
+        " The claim discloses: the population is x, and all plots as assigned was promised (decided before-data: "
+        "a flood)."
+    )
+    assert (short.outcome, unknown.outcome) == ("short", "undecided")
+    assert short.message.endswith(f"both sides were promised (two-sided p = 0.0339).{disclosed}")
+    assert unknown.message.endswith(f"its commit comes before the data.{disclosed}")
+    assert sentences(short) == 3
+
+
+def test_a_deviation_that_states_other_values_excuses_nothing() -> None:
+    reverse = {**deviation("sides"), "planned": "1", "done": "2"}
+
+    one = noted(kept(test__sides=1, deviations=[reverse]), promise())
+
+    assert one.outcome == "short"
+    assert one.message == (
+        f"The claim differs from {H1}, without a deviation that says so: one side of the test is taken, and both "
+        "sides were promised (two-sided p = 0.0339), while its deviation says that 1 was planned and 2 was done."
+    )
+
+
+def test_every_difference_is_told() -> None:
+    record = kept(
+        outcome=...,
+        test__name="sign test",
+        test__alpha=...,
+        population=...,
+        covariates=[],
+        role="secondary",
+        look=...,
+    )
+
+    one = noted(record, promise())
+
+    assert one.message.count(" was promised") == len(differences(record, promise())) == 7
 
 
 def test_a_possible_harm_is_reported_without_a_registration() -> None:

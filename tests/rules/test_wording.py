@@ -50,8 +50,7 @@ def test_it_is_off_unless_it_is_named(tmp_path: Path) -> None:
 
 
 def test_a_plain_claim_stands(tmp_path: Path) -> None:
-    """Causal words are let be where the record declares no design."""
-    answer = judge(tmp_path, drainage(), policy=ON)
+    answer = judge(tmp_path, drainage(design="randomised"), policy=ON)
 
     assert (answer.status, answer.rule(RULE)["outcome"]) == (0, "met")
 
@@ -254,8 +253,8 @@ def test_a_difference_in_significance_is_no_difference(tmp_path: Path) -> None:
     found = answer.rule(RULE, "yield/where")
     assert (answer.status, found["outcome"]) == (1, "short")
     assert found["message"] == (
-        "The claim says “works only on”, which needs a test of the difference between the two effects: no "
-        "interaction record: the difference of yield/drained and yield/undrained is 0.25, SE 0.35, p = 0.48 (95 % "
+        "The claim says “works only on”, which needs a test of the difference between the two effects, and no "
+        "record gives one: the difference of yield/drained and yield/undrained is 0.25, SE 0.35, p = 0.48 (95 % "
         "interval -0.44 to 0.94)."
     )
     assert found["remedy"] == (
@@ -296,16 +295,16 @@ def test_the_record_that_tests_the_difference_itself(
 @pytest.mark.parametrize(
     ("changes", "ground"),
     [
-        ({"compares": ...}, "no interaction record: this one does not test that difference"),
+        ({"compares": ...}, "the difference between the two effects, and no record gives one"),
         (
             {"test__name": "interaction", "test__p": 0.06},
-            "its own test of that difference has p = 0.06",
+            "two effects: its own test of that difference has p = 0.06",
         ),
-        ({"test": {"name": "interaction"}}, "its own test of that difference has no p"),
+        ({"test": {"name": "interaction"}}, "two effects: its own test of that difference has no p"),
     ],
 )
 def test_the_ground_of_a_difference_is_told(tmp_path: Path, changes: Document, ground: str) -> None:
-    assert compare(tmp_path, **changes).rule(RULE, "yield/where")["message"].endswith(f": {ground}.")
+    assert compare(tmp_path, **changes).rule(RULE, "yield/where")["message"].endswith(f" {ground}.")
 
 
 def test_without_names_the_remedy_asks_for_them(tmp_path: Path) -> None:
@@ -446,6 +445,9 @@ CAUSE = "Drainage increases earthworm biomass."
     [
         (..., "open", CAUSE, "met"),
         (..., "required", CAUSE, "short"),
+        (..., "open", "Drainage prevents rot.", "met"),
+        (..., "required", "Drainage prevents rot.", "short"),
+        (..., "required", "Drainage may increase biomass.", "met"),
         ("randomised", "required", CAUSE, "met"),
         ("quasi-experimental", "required", CAUSE, "met"),
         ("observational", "open", CAUSE, "short"),
@@ -465,7 +467,7 @@ def test_what_is_said_of_a_cause(tmp_path: Path) -> None:
     (tmp_path / "b").mkdir()
 
     observed = said(tmp_path / "a", CAUSE, design="observational", prior={"probability": 0.25, "basis": "earlier"})
-    untold = said(tmp_path / "b", CAUSE, with_settings(design="required"))
+    untold = said(tmp_path / "b", CAUSE)
 
     assert observed["message"] == (
         "The claim says “increases”, which speaks of cause, and needs a design that allows it: the record's design "
@@ -478,6 +480,13 @@ def test_what_is_said_of_a_cause(tmp_path: Path) -> None:
     )
     assert untold["message"].endswith(": the record declares no design.")
     assert untold["remedy"].startswith("Declare the design, or say for instance: “The mean difference was 4.2 g/m2")
+
+
+@pytest.mark.parametrize(("design", "expected"), [(..., "met"), ("observational", "short")])
+def test_a_possible_harm_is_reported_without_a_word_on_the_design(
+    tmp_path: Path, design: object, expected: str
+) -> None:
+    assert outcome(tmp_path, "The dressing causes bleeding.", harm=True, design=design) == expected
 
 
 @pytest.mark.parametrize(
@@ -543,6 +552,73 @@ def test_the_planned_power_of_a_normal_test(tmp_path: Path) -> None:
 
     assert "the power for the effect planned, 85 %, or say" in found["remedy"]
     assert stats.norm.sf(stats.norm.isf(0.025) - 3) == pytest.approx(0.851, abs=5e-4)
+
+
+CHANCE = "The probability that the result is due to chance is 3.4 %."
+
+
+@pytest.mark.parametrize(
+    ("claim", "changes", "expected"),
+    [
+        (CHANCE, {}, "short"),
+        (CHANCE, {"test": ...}, "short"),
+        (
+            CHANCE,
+            {"status": "exploratory", "claim": "Perhaps the probability that it is a fluke is 3.4 %."},
+            "short",
+        ),
+        ("The risk of error is 3.4 %.", {}, "short"),
+        ("The risk of error is 3 %.", {}, "short"),
+        ("The risk of error is .034.", {}, "short"),
+        ("The risk of error is 0.96.", {"test__p": "0.04", "test__value": ...}, "short"),
+        ("The risk of error is 0.5 %.", {"test__p": "0.0053", "test__value": ...}, "short"),
+        ("The risk of error is 3.5 %.", {}, "met"),
+        ("The risk of error is 5 %.", {}, "met"),
+        ("The risk of error is 1 %.", {}, "met"),
+        ("The risk of error is 3.4 %.", {"test": ...}, "undecided"),
+        ("We are 96.6 % confident that drainage works.", {}, "short"),
+        ("There is a 97 % chance that drainage works.", {}, "short"),
+        ("There is a 90 % chance that drainage works.", {}, "met"),
+        ("The probability that the null hypothesis H0 is true is small.", {}, "short"),
+    ],
+)
+def test_p_is_no_probability_of_chance_or_of_a_hypothesis(
+    tmp_path: Path, claim: str, changes: Document, expected: str
+) -> None:
+    """Where a number is told it is p or 1 - p within its digits, here of p = 0.034."""
+    assert outcome(tmp_path, **{"claim": claim, **changes}) == expected
+
+
+def test_what_is_said_of_p_as_a_probability(tmp_path: Path) -> None:
+    """The risk is the record's own, 20.7 % against the effect planned; without one p stands alone."""
+    for name in "abc":
+        (tmp_path / name).mkdir()
+
+    planned = said(tmp_path / "a", CHANCE, changed(ON, evidence__alternative="design-effect"))
+    no_p = said(tmp_path / "b", CHANCE, test=...)
+    untold = said(tmp_path / "c", "The risk of error is 3.4 %.", test=...)
+
+    assert planned["message"] == (
+        "The claim says “probability that the result is due to chance”, which no p-value gives: p = 0.034, and "
+        "with an even prior the risk that there is no effect is 21 % (against the effect planned)."
+    )
+    assert planned["remedy"].endswith("the risk that there is no effect is 21 % (against the effect planned).”")
+    assert no_p["message"].endswith("which no p-value gives: the record gives no p.")
+    assert untold["remedy"] == "Give test.p, or the statistic with its df."
+
+
+@pytest.mark.parametrize("changes", [{}, {"test__p": "0.20", "test__value": ...}, {"design": "observational"}])
+@pytest.mark.parametrize("claim", [CHANCE, "There was a trend towards more.", "It has no effect.", "It proves it."])
+def test_the_sentence_that_is_suggested_stands(tmp_path: Path, changes: Document, claim: str) -> None:
+    for name in "ab":
+        (tmp_path / name).mkdir()
+
+    remedy = str(
+        said(tmp_path / "a", **{"claim": claim, "test__p": "0.08", "test__value": ..., **changes})["remedy"]
+    )
+    suggested = remedy[remedy.index("“") + 1 : remedy.index("”")]
+
+    assert outcome(tmp_path / "b", suggested, **{"test__p": "0.08", "test__value": ..., **changes}) == "met"
 
 
 @pytest.mark.parametrize(
@@ -739,13 +815,14 @@ def test_a_language_without_a_list_is_refused(tmp_path: Path) -> None:
     ("claim", "told"),
     [
         (CAUSE, "The claim says “increases”, which its evidence allows."),
+        ("The risk of error is 5 %.", "The claim says “risk of error is 5”, which its evidence allows."),
         ("Biomass was higher.", "The claim has no words that need more than its evidence gives."),
     ],
 )
 def test_explain_says_why_it_is_met(
     tmp_path: Path, claim: str, told: str, capsys: pytest.CaptureFixture[str]
 ) -> None:
-    write_tree(tmp_path, drainage(claim=claim), policy=ON)
+    write_tree(tmp_path, drainage(claim=claim, design="randomised"), policy=ON)
 
     assert main(["explain", DRAINAGE["id"], str(tmp_path)]) == 0
 

@@ -139,3 +139,116 @@ def test_a_holm_adjusted_p_beside_its_raw_statistic_stands(tmp_path: Path) -> No
         "by holm in a family of 2 the raw result gives an adjusted p of 0.00799 to 0.016"
         in two["numbers-agree"]["message"]
     )
+
+
+RATIO = {"unit": "1", "interval": {"level": 0.95, "low": "0.60", "high": "1.01"}}
+
+
+def counted(*events: tuple[int, int]) -> Document:
+    return {"unit": "patient", "groups": [{"name": f"arm {n}", "events": e, "n": n} for e, n in events]}
+
+
+def test_a_hazard_ratio_that_does_not_say_its_scale_is_caught(tmp_path: Path) -> None:
+    """The interval includes 1 and p is below .05; the interval is symmetric on the log scale."""
+    estimate = {"measure": "hazard ratio", "value": "0.78", **RATIO}
+    told = drainage(test={"name": "Wald", "p": "0.03"}, estimate=estimate, sample=...)
+    right = drainage(test={"name": "Wald", "p": "0.061"}, estimate=estimate, sample=...)
+
+    status, rules = gate(tmp_path, told)
+
+    assert (status, gate(tmp_path, right)[0]) == (1, 0)
+    assert rules["numbers-agree"]["message"] == (
+        "the interval 0.60 to 1.01 includes 1, which goes with p = 0.061 on the log scale, and 0.03 is reported; "
+        "the policy wants figures that fit together."
+    )
+    assert "; say in estimate.scale on which scale the ratio is. Rule out" in rules["numbers-agree"]["remedy"]
+
+
+@pytest.mark.parametrize(
+    ("test", "estimate", "sample"),
+    [
+        pytest.param(
+            {"name": "Poisson regression", "statistic": "z", "value": "1.57", "p": "0.12"},
+            {
+                "measure": "incidence rate ratio",
+                "value": "1.30",
+                "interval": {"level": 0.95, "low": "0.94", "high": "1.81"},
+            },
+            {"unit": "person", "n": 210},
+            id="a rate ratio on the log scale that does not say so",
+        ),
+        pytest.param(
+            {"name": "chi-squared test", "statistic": "chi2", "value": "9.52", "df": 1, "p": "0.002"},
+            {"measure": "relative risk reduction", "value": "50", "unit": "%"},
+            counted((20, 100), (40, 100)),
+            id="a relative risk reduction",
+        ),
+        pytest.param(
+            {"name": "one-way ANOVA (Welch)", "statistic": "F", "value": "1.50", "df": [4, "17.0"], "p": "0.246"},
+            None,
+            {"unit": "plot", "n": 52, "groups": [{"name": f"g{n}", "n": n} for n in (10, 11, 5, 9, 17)]},
+            id="an analysis of variance by Welch",
+        ),
+        pytest.param(
+            {"name": "chi-squared test", "statistic": "chi2", "value": "3.11", "df": 1, "p": "0.078"},
+            {
+                "measure": "risk difference",
+                "value": "0.25",
+                "unit": "1",
+                "interval": {"level": 0.95, "low": "0.015", "high": "0.485"},
+            },
+            counted((22, 32), (14, 32)),
+            id="a correction for continuity beside an interval without",
+        ),
+        pytest.param(
+            {"name": "Welch t", "statistic": "t", "value": "2.02", "df": "9.8", "p": "0.072"},
+            {
+                "measure": "mean difference (bootstrap interval)",
+                "value": "3.16",
+                "unit": "g",
+                "interval": {"level": 0.95, "low": "0.22", "high": "6.10"},
+            },
+            {"unit": "plot"},
+            id="a bootstrap interval beside Welch's t",
+        ),
+    ],
+)
+def test_right_output_of_another_form_stands(
+    tmp_path: Path, test: Document, estimate: Document | None, sample: Document
+) -> None:
+    record = drainage(test=test, estimate=... if estimate is None else estimate, sample=sample, alternative=...)
+
+    status, rules = gate(tmp_path, record)
+
+    assert (status, rules["numbers-agree"]["outcome"]) == (0, "met")
+
+
+@pytest.mark.parametrize(
+    ("test", "estimate", "told"),
+    [
+        (
+            {"name": "chi-squared test", "statistic": "chi2", "value": "9.52", "df": 1, "p": "0.002"},
+            {"measure": "relative risk reduction", "value": "40", "unit": "%"},
+            "20 of 100 and 40 of 100 give -100 or 50 as relative risk reduction",
+        ),
+        (
+            {"name": "chi-squared test", "statistic": "chi2", "value": "7.90", "df": 1, "p": "0.005"},
+            {
+                "measure": "risk difference",
+                "value": "-0.20",
+                "unit": "1",
+                "interval": {"level": 0.95, "low": "-0.45", "high": "0.05"},
+            },
+            "the interval -0.45 to 0.05 includes 0, which goes with p = 0.12, and 0.005 is reported",
+        ),
+    ],
+)
+def test_wrong_figures_of_the_same_forms_fall_short(
+    tmp_path: Path, test: Document, estimate: Document, told: str
+) -> None:
+    sample = counted((20, 100), (40, 100))
+
+    status, rules = gate(tmp_path, drainage(test=test, estimate=estimate, sample=sample, alternative=...))
+
+    assert status == 1
+    assert told in rules["numbers-agree"]["message"]

@@ -65,6 +65,27 @@ def test_without_a_link_the_policy_says_whether_it_blocks(
     assert rows(folder) == (status, [("report.md:3", 3, verdict)])
 
 
+@pytest.mark.parametrize(
+    ("text", "status"),
+    [
+        ("It rose, <i>t</i>(80)&nbsp;=&nbsp;3.51.", 1),
+        ("It rose, t₈₀ = 3.51.", 1),
+        ("It rose (p-value: 0.017).", 1),
+        ("It rose in 12 (45.5%) of 22.", 1),
+        ("It rose, F1,80 = 6.30.", 1),
+        ("It rose, t(80) = 3.01, p < 10^{-4}.", 1),
+        ("It rose, <i>t</i>(80)&nbsp;=&nbsp;3.01 (p-value: 0.0035).", 0),
+        ("It rose, t₈₀ = 3.01.", 0),
+        ("Smith et al. (2031) reported t(20) = 3.10, p = .006.", 0),
+        ("The significance threshold was p = 0.05.", 0),
+        ("The pressure was P = 0.9 bar.", 0),
+        ("Take 3/4 (75 %) cup of sugar.", 0),
+    ],
+)
+def test_statistics_in_other_writings_are_held_against_the_record(tmp_path: Path, text: str, status: int) -> None:
+    assert rows(tree(tmp_path, text, 3.3, unlinked="block"))[0] == status
+
+
 def test_the_line_is_annotated(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     folder = tree(tmp_path, f"Yield rose by 3.8 g {VALUE}.", 3.3)
 

@@ -31,7 +31,9 @@ def mean_difference(value: str, error: float) -> Document:
 def test_a_small_sample_says_what_it_found(tmp_path: Path) -> None:
     """The claim is short on evidence, and its words are plain: this rule lets it be."""
     answer = weighed(
-        tmp_path, drainage(), policy=changed(ON, rules={RULE: {}, "false-positive-risk": {"limit": 0.05}})
+        tmp_path,
+        drainage(design="randomised"),
+        policy=changed(ON, rules={RULE: {}, "false-positive-risk": {"limit": 0.05}}),
     )
 
     assert answer.status == 1
@@ -63,7 +65,7 @@ def test_a_difference_in_significance_is_read_as_a_difference(tmp_path: Path) ->
     said = answer.rule(RULE, "lime/where")
     assert (answer.status, said["outcome"]) == (1, "short")
     assert said["message"].endswith(
-        "no interaction record: the difference of lime/drained and lime/undrained is 0.25, SE 0.35, p = 0.48 "
+        ", and no record gives one: the difference of lime/drained and lime/undrained is 0.25, SE 0.35, p = 0.48 "
         "(95 % interval -0.44 to 0.94)."
     )
 
@@ -122,6 +124,58 @@ def test_power_after_the_fact(tmp_path: Path) -> None:
     assert said["remedy"].startswith(
         "Give the interval, or the power for the effect planned, 83 %, or say for instance"
     )
+
+
+@pytest.mark.parametrize(
+    ("claim", "told"),
+    [
+        (
+            "The probability that the result is due to chance is 3.4 %.",
+            "“probability that the result is due to chance”",
+        ),
+        (
+            "The null hypothesis is false with a probability of 96.6 %.",
+            "“null hypothesis is false with a probability”",
+        ),
+        ("The risk of error is 3.4 %.", "“risk of error is 3.4”"),
+    ],
+)
+def test_p_is_read_as_the_probability_of_chance(tmp_path: Path, claim: str, told: str) -> None:
+    """At p = .034 the risk against the effect as observed is 16.5 %, and the message says so."""
+    answer = weighed(tmp_path, drainage(claim=claim))
+
+    said = answer.rule(RULE)
+    assert (answer.status, said["outcome"]) == (1, "short")
+    assert said["message"] == (
+        f"The claim says {told}, which no p-value gives: p = 0.034, and with an even prior the risk that there is "
+        "no effect is 17 % (against the effect as observed, which errs in its favour)."
+    )
+
+
+@pytest.mark.parametrize(
+    "claim", ["Yield was the same in both groups.", "Yields were similar.", "Yield was marginally higher."]
+)
+def test_what_a_large_p_does_not_say(tmp_path: Path, claim: str) -> None:
+    """t(34) = 1.50, p = .143, and nobody set a margin."""
+    record = drainage(
+        claim=claim,
+        test={"name": "two-sample t", "statistic": "t", "value": "1.50", "df": 34, "p": "0.143", "sides": 2},
+        estimate={"measure": "mean difference", "value": "2.9", "unit": "g/m2"},
+        sample__groups=[],
+    )
+
+    answer = weighed(tmp_path, record)
+
+    assert (answer.status, answer.rule(RULE)["outcome"]) == (1, "short")
+
+
+@pytest.mark.parametrize("design", ["randomised", "quasi-experimental", "observational", ...])
+def test_a_cause_needs_a_design_that_allows_it(tmp_path: Path, design: object) -> None:
+    """Without a word on the design it is not declared causal."""
+    answer = weighed(tmp_path, drainage(claim="Drainage causes higher biomass.", design=design))
+
+    allowed = design in {"randomised", "quasi-experimental"}
+    assert (answer.status, answer.rule(RULE)["outcome"]) == ((0, "met") if allowed else (1, "short"))
 
 
 def test_exploratory_work_is_left_alone(tmp_path: Path) -> None:
@@ -183,6 +237,10 @@ def test_the_recipe_of_claims_that_are_careful(tmp_path: Path) -> None:
         "The safety outcome was rarer in the new arm.",
         "To three significant figures the slope is 0.123.",
         "We found no difference in pH, and biomass was higher.",
+        "No difference in soil type existed at baseline; biomass was higher.",
+        "The groups were similar in age; biomass was higher by 4.2 g/m2.",
+        "Biomass increased by 4.2 g/m2.",
+        "The proven reserves were larger.",
     ]
     records = [drainage(id=f"careful/{number}", claim=claim) for number, claim in enumerate(claims)]
 

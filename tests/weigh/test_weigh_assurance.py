@@ -45,8 +45,8 @@ def every_test(one_sided: bool) -> dict[str, tests.Planned]:
         "correlation": tests.correlation(0.3, N + 1, one_sided=one_sided),
         "one-proportion": tests.one_proportion(0.4, N, one_sided=one_sided),
         "two-proportions": tests.two_proportions(0.4, N, 2 * N, one_sided=one_sided),
-        "F of 2": tests.one_way_f(0.2, 2, N),
-        "F of 5": tests.one_way_f(0.2, 5, N),
+        "F of 2": tests.one_way_f(0.2, 2, N, scale=SCALE),
+        "F of 5": tests.one_way_f(0.2, 5, N, scale=SCALE),
         "chi-squared on 1": tests.chi_squared(0.3, 1, N),
         "chi-squared on 4": tests.chi_squared(0.3, 4, N),
         "log-rank": tests.log_rank(0.4, 2.0, N, one_sided=one_sided),
@@ -90,7 +90,7 @@ def test_at_the_least_value_the_ratio_is_the_wanted_one(name: str, one_sided: bo
             power_proportions_arcsine(0.4, N, 2 * N, 0.05, one_sided=True),
         ),
         (tests.one_proportion(0.4, N, one_sided=True), power_two_sample_z(0.4, 2 * N, 2 * N, 0.05, one_sided=True)),
-        (tests.one_way_f(0.2, 5, N), power_anova(0.2, 5, N, 0.05)),
+        (tests.one_way_f(0.2, 5, N, scale=SCALE), power_anova(0.2, 5, N, 0.05)),
         (tests.chi_squared(0.3, 4, N), power_chi2(0.3, N, 4, 0.05)),
         (
             tests.log_rank(math.log(1.5), 2.0, N, one_sided=True),
@@ -106,14 +106,14 @@ def test_for_a_p_alone_the_assurance_is_the_power(planned: tests.Planned, power:
 
 
 @settings(max_examples=25, deadline=None)
-@given(st.floats(0.05, 2), st.integers(3, 5000), st.floats(0.5, 8), st.sampled_from([0, 1, 3]))
+@given(st.floats(0.05, 2), st.integers(3, 5000), st.floats(0.5, 8), st.sampled_from([0, 1, 2, 3]))
 def test_two_groups_compared_by_f_are_two_groups_compared_by_t(
     d: float, n: int, target: float, weighing: int
 ) -> None:
     """F = t^2 and f = d/2; F also counts the direction that t leaves out."""
     sizes = np.array([float(n)])
     by_t = tests.two_sample_t(d, sizes, sizes, one_sided=False, scale=SCALE)
-    by_f = tests.one_way_f(d / 2, 2, sizes)
+    by_f = tests.one_way_f(d / 2, 2, sizes, scale=SCALE)
     wanted = [(Weighing(weighing), target)]
 
     t, f = least_value(by_t, wanted, NO_P), least_value(by_f, wanted, NO_P)
@@ -197,7 +197,7 @@ def test_the_assurance_of_a_correlation_is_exact_and_not_that_of_a_noncentral_t(
     [
         lambda n: tests.two_sample_t(0.3, n, n, one_sided=False, scale=SCALE),
         lambda n: tests.correlation(0.2, n + 2, one_sided=True),
-        lambda n: tests.one_way_f(0.2, 4, n),
+        lambda n: tests.one_way_f(0.2, 4, n, scale=SCALE),
         lambda n: tests.chi_squared(0.2, 3, n),
         lambda n: tests.log_rank(0.3, 1.0, n, one_sided=False),
     ],
