@@ -296,7 +296,7 @@ def permutation(generator: Generator) -> Document:
 
 
 def adjusted(generator: Generator) -> Document:
-    """A raw z with its p adjusted over a family, which is larger than the few spellings of the record told together."""
+    """A raw z with its p adjusted over a family, larger than the few spellings of it that are told together."""
     size = int(generator.integers(4, 30))
     z = generator.normal(1, 1.5, size)
     raw = 2 * stats.norm.sf(np.abs(z))
