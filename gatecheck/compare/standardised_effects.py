@@ -110,7 +110,10 @@ def _factors(name: str, measure: str, df: float, units: _Units) -> _Range | None
         return _of_differences(name, measure, df + 1)
     if len(groups) == _PAIR:
         return _of_two(name, measure, df, groups, units.excluded)
-    return (2 / math.sqrt(in_all), math.inf) if math.isfinite(in_all) and df == in_all - 2 else None
+    if df != in_all - 2 or says(_ONE_GROUP, measure):
+        return None
+    # Least of groups of one size; by the average of variances however unlike, over sizes however unlike, less.
+    return math.sqrt(2 / in_all), math.inf
 
 
 def _of_differences(name: str, measure: str, n: float) -> _Range | None:

@@ -40,7 +40,7 @@ def size(measure: str, value: str, **more: Any) -> Document:
             "t(34) = 2.21 with groups of 18 and 18 gives 0.697 to 0.782 as Cohen's d by every usual form, and 1.74",
         ),
         (T34, size("Hedges' g", "0.32"), pair(), "as Hedges' g by every usual form, and 0.32 is reported"),
-        (T34, size("d", "0.34"), {"unit": "plot", "n": 36}, "gives 0.697 or more as d by every usual form"),
+        (T34, size("d", "0.34"), {"unit": "plot", "n": 36}, "gives 0.493 or more as d by every usual form"),
         (
             {**T34, "name": "Welch t", "df": "33.8"},
             size("Cohen's d", "1.74"),
@@ -109,6 +109,7 @@ def test_an_effect_size_that_its_statistic_does_not_give(
         ({**T34, "value": "0.00"}, size("Cohen's d", "0.00"), {"sample": pair()}),
         (T34, size("Hedges' g", "0.72"), {"sample": pair()}),
         (T34, size("Cohen's d", "2.74"), {"sample": {"n": 36}}),
+        (T34, size("Glass's delta", "0.34"), {"sample": {"n": 36}}),
         # What the df or the name leave open is not compared: another design, a model, clusters, three groups.
         (T34, size("Cohen's d", "1.74"), {}),
         ({**T34, "df": 20}, size("Cohen's d", "1.74"), {"sample": {"n": 36, "excluded": LOST}}),
