@@ -72,3 +72,18 @@ def test_many_threads_may_make_the_first_ones() -> None:
             start = Barrier(threads)
             made = list(pool.map(make, [start] * threads, [cls] * threads, range(threads)))
             assert made == [0, 1, 2, 3]
+
+
+def test_who_was_about_to_make_the_first_one_makes_the_second() -> None:
+    """As a thread does that comes to it when another has written the class."""
+
+    @struct
+    class Fresh:
+        first: str
+
+    about_to = Fresh.__init__
+    assert Fresh("a").first == "a"
+    second = Fresh.__new__(Fresh)
+    about_to(second, "b")
+    assert second.first == "b"
+    assert Fresh.__init__ is not about_to
