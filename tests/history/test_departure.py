@@ -128,13 +128,13 @@ def test_files_differ_by_what_the_work_tree_holds(repository: Path) -> None:
 
 def test_a_file_is_named_from_the_judged_folder_or_from_the_top(repository: Path) -> None:
     commit(repository, "study/data/plots.csv")
-    before = commit(repository, "shared.csv")
+    before = commit(repository, "common.csv")
     (repository / "study" / "data" / "plots.csv").write_text("2\n", encoding="utf-8")
-    (repository / "shared.csv").write_text("2\n", encoding="utf-8")
+    (repository / "common.csv").write_text("2\n", encoding="utf-8")
 
     files = changed_files(repository / "study", before)
 
-    named = ["data/plots.csv", "study/data/plots.csv", "shared.csv", "../shared.csv", "plots.csv"]
+    named = ["data/plots.csv", "study/data/plots.csv", "common.csv", "../common.csv", "plots.csv"]
     assert [files.at(path) for path in named] == ["changed", "changed", "changed", "changed", None]
 
 
